@@ -1,0 +1,35 @@
+# The chart bundle of the report. STILLMASS_PLOTLY names a file; without it npm fetches the version that
+# scripts/charts/package-lock.json pins, into the build folder.
+
+if(STILLMASS_PLOTLY)
+  if(NOT EXISTS "${STILLMASS_PLOTLY}")
+    message(FATAL_ERROR "STILLMASS_PLOTLY: there is no file ${STILLMASS_PLOTLY}")
+  endif()
+  set(bundle "${STILLMASS_PLOTLY}")
+else()
+  set(charts "${CMAKE_BINARY_DIR}/charts")
+  set(bundle "${charts}/node_modules/plotly.js-cartesian-dist-min/plotly-cartesian.min.js")
+  file(SHA256 "${CMAKE_SOURCE_DIR}/scripts/charts/package-lock.json" lock)
+  set(stamp "${charts}/installed-${lock}")
+  if(NOT EXISTS "${bundle}" OR NOT EXISTS "${stamp}")
+    find_program(NPM npm)
+    if(NOT NPM)
+      message(FATAL_ERROR "npm is not installed and STILLMASS_PLOTLY names no chart bundle: "
+        "install npm, or give the bundle with -DSTILLMASS_PLOTLY=FILE")
+    endif()
+    message(STATUS "Fetching the chart bundle with npm ci")
+    file(MAKE_DIRECTORY "${charts}")
+    foreach(file package.json package-lock.json .npmrc)
+      file(COPY "${CMAKE_SOURCE_DIR}/scripts/charts/${file}" DESTINATION "${charts}")
+    endforeach()
+    execute_process(COMMAND "${NPM}" ci --no-audit --no-fund --ignore-scripts
+      WORKING_DIRECTORY "${charts}" RESULT_VARIABLE failed OUTPUT_VARIABLE said ERROR_VARIABLE said)
+    if(failed)
+      message(FATAL_ERROR "npm ci failed (no network?): give the chart bundle with -DSTILLMASS_PLOTLY=FILE\n${said}")
+    endif()
+    file(WRITE "${stamp}" "")
+  endif()
+endif()
+# One name inside the program, whatever the file is called outside.
+configure_file("${bundle}" "${CMAKE_BINARY_DIR}/embedded/plotly.js" COPYONLY)
+set(STILLMASS_CHART_BUNDLE "${CMAKE_BINARY_DIR}/embedded/plotly.js")

@@ -1,0 +1,5 @@
+#include <cstdio>
+
+#include "stillmass/base/version.hpp"
+
+int main() { std::puts(stillmass::base::version().data()); }

@@ -1,0 +1,9 @@
+// Catch2 version 2 (Debian 12) or 3, whichever is there.
+#pragma once
+
+#if __has_include(<catch2/catch_test_macros.hpp>)
+#include <catch2/catch_all.hpp>
+using Catch::Approx;
+#else
+#include <catch2/catch.hpp>
+#endif
