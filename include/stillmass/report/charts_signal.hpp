@@ -1,0 +1,26 @@
+#pragma once
+
+#include <optional>
+
+#include "stillmass/report/chart.hpp"
+#include "stillmass/step/check.hpp"
+#include "stillmass/step/spectrum.hpp"
+
+namespace stillmass::report {
+
+/// The recording at a glance: least and largest sample against time, one panel a channel (at most eight).
+Chart overview_chart(const step::CheckResult& result);
+
+/// One channel: amplitude (in the trade's unit and the result's detector) or density against frequency, with forcing
+/// frequencies, peaks and their causes.
+Chart spectrum_chart(const step::SpectrumResult& result, const step::ChannelSpectrum& channel, bool density = false);
+
+/// Broad-band r.m.s. velocity of every point against the zones and the target, mm/s. `after` may be null. Nothing where
+/// no channel has a velocity.
+std::optional<Chart> severity_chart(const step::SpectrumResult& before, const step::SpectrumResult* after,
+                                    std::optional<double> target_m_s);
+
+/// The same channel before and after the absorber was fitted, r.m.s. velocity against frequency.
+Chart before_after_chart(const step::ChannelSpectrum& before, const step::ChannelSpectrum& after, double to_hz);
+
+}  // namespace stillmass::report

@@ -1,0 +1,30 @@
+#pragma once
+
+#include <string>
+#include <vector>
+
+#include "stillmass/step/absorber.hpp"
+#include "stillmass/step/bump.hpp"
+#include "stillmass/step/check.hpp"
+#include "stillmass/step/runup.hpp"
+#include "stillmass/step/spectrum.hpp"
+#include "stillmass/survey/survey.hpp"
+
+namespace stillmass::report {
+
+/// Results as plain text for a terminal of 80 columns or more: UTF-8, every line ended.
+std::string text(const step::CheckResult& result);
+std::string text(const step::SpectrumResult& result, bool density = false);
+std::string text(const step::BumpResult& result);
+std::string text(const step::RunupResult& result);
+std::string text(const step::AbsorberResult& result);
+/// One screen: the verdict and the lines to act on, what is not known, cautions.
+std::string text(const survey::SurveyResult& result);
+
+/// Rows under a header, columns as wide as they must be; columns of numbers to the right.
+std::string aligned(const std::vector<std::string>& header, const std::vector<std::vector<std::string>>& rows);
+
+/// Broken at blanks so that no line is longer than `width`; lines after the first begin with `indent` blanks.
+std::string wrapped(const std::string& text, std::size_t width, std::size_t indent);
+
+}  // namespace stillmass::report

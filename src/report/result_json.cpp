@@ -1,0 +1,466 @@
+#include "stillmass/report/result_json.hpp"
+
+#include <cmath>
+#include <complex>
+#include <optional>
+#include <set>
+
+#include <nlohmann/json.hpp>
+
+#include "stillmass/base/version.hpp"
+#include "stillmass/report/sentences.hpp"
+
+namespace stillmass::report {
+namespace {
+
+using base::Detector;
+using base::Estimate;
+using base::Quantity;
+using Json = nlohmann::ordered_json;
+
+constexpr double to_mm_s = 1e3;
+constexpr double to_rpm = 60.0;
+
+Json number(double value) { return std::isfinite(value) ? Json(value) : Json(nullptr); }
+Json number(std::optional<double> value, double factor = 1.0) {
+  return value ? number(*value * factor) : Json(nullptr);
+}
+
+Json estimate(const Estimate& value, double factor, std::string_view unit) {
+  return {{"value", number(value.value * factor)}, {"u", number(value.u, std::abs(factor))}, {"unit", unit}};
+}
+Json estimate(const Estimate& value) { return estimate(value, 1.0, base::si_unit(value.quantity).name); }
+Json estimate(const std::optional<Estimate>& value) { return value ? estimate(*value) : Json(nullptr); }
+Json velocity(const Estimate& value) { return estimate(value, to_mm_s, "mm/s"); }
+Json velocity(const std::optional<Estimate>& value) { return value ? velocity(*value) : Json(nullptr); }
+
+// Vibration in the trade's unit of its quantity and in the detector asked for.
+struct Shown {
+  std::string_view unit;
+  double factor = 1.0;
+};
+Shown shown(Quantity quantity, Detector detector) {
+  const base::Unit unit = base::trade_unit(quantity);
+  return {unit.name, base::from_rms(detector) / unit.to_si};
+}
+
+Json finding(const base::Finding& each) {
+  Json out = {{"code", base::text(each.code).name}, {"text", each.text}};
+  if (!each.channel.empty()) out["channel"] = each.channel;
+  if (each.from_s) out["from_s"] = number(*each.from_s);
+  if (each.to_s) out["to_s"] = number(*each.to_s);
+  return out;
+}
+
+Json findings(const std::vector<base::Finding>& all) {
+  Json out = Json::array();
+  for (const base::Finding& each : all) out.push_back(finding(each));
+  return out;
+}
+
+Json refusal(const base::Refusal& each) {
+  return {{"code", each.code}, {"seen", each.seen}, {"measure", each.measure}};
+}
+
+Json input(const recording::Recording& recording, const std::string& hash) {
+  Json channels = Json::array();
+  for (const recording::Channel& channel : recording.channels) {
+    channels.push_back({{"index", channel.index},
+                        {"name", channel.name},
+                        {"role", name(channel.role)},
+                        {"unit", channel.unit_known ? Json(channel.unit.name) : Json(nullptr)}});
+  }
+  Json out = {{"file", recording.file.string()},
+              {"format", recording.format},
+              {"rate_hz", number(recording.rate_hz)},
+              {"duration_s", number(recording.duration_s())},
+              {"channels", channels}};
+  if (!hash.empty()) out["sha256"] = hash;
+  return out;
+}
+
+std::string wrapped(const Envelope& envelope, Json result) {
+  Json out;
+  out["schema"] = "stillmass.result/1";
+  out["command"] = envelope.command;
+  out["version"] = base::version();
+  out["settings"] = Json::object();
+  for (const auto& [key, value] : envelope.settings) {
+    Json& place = out["settings"][key];
+    if (place.is_null()) {
+      place = value;
+    } else {
+      if (!place.is_array()) place = Json::array({place});
+      place.push_back(value);
+    }
+  }
+  out["inputs"] = Json::array();
+  for (std::size_t i = 0; i < envelope.inputs.size(); ++i) {
+    out["inputs"].push_back(input(envelope.inputs[i], i < envelope.hashes.size() ? envelope.hashes[i] : ""));
+  }
+  out["warnings"] = findings(envelope.warnings);
+  out["result"] = std::move(result);
+  return out.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
+}
+
+Json mode(const modal::Mode& each) {
+  Json out = {{"frequency", estimate(each.frequency)},
+              {"damping_ratio", estimate(each.damping_ratio)},
+              {"modal_mass", estimate(each.modal_mass)},
+              {"point", each.point},
+              {"state", each.state},
+              {"correlation", each.correlation}};
+  out["shape"] = Json::array();
+  for (const modal::ShapeRatio& ratio : each.shape) {
+    out["shape"].push_back(
+        {{"point", ratio.point}, {"ratio", number(ratio.ratio)}, {"phase_deg", number(ratio.phase_deg)}});
+  }
+  out["masked_by"] = each.masked_by ? Json(*each.masked_by) : Json(nullptr);
+  out["methods"] = Json::array();
+  for (const modal::MethodResult& method : each.methods) {
+    out["methods"].push_back({{"name", method.name},
+                              {"frequency", estimate(method.frequency)},
+                              {"damping_ratio", estimate(method.damping_ratio)}});
+  }
+  return out;
+}
+
+Json modes(const std::vector<modal::Mode>& all) {
+  Json out = Json::array();
+  for (const modal::Mode& each : all) out.push_back(mode(each));
+  return out;
+}
+
+Json check(const step::CheckResult& result) {
+  Json channels = Json::array();
+  for (const step::ChannelCheck& each : result.channels) {
+    const recording::ChannelQuality& quality = each.quality;
+    channels.push_back({{"file", result.recording.file.string()},
+                        {"name", each.channel.name},
+                        {"verdict", name(each.verdict)},
+                        {"unit", base::si_unit(each.channel.unit.quantity).name},
+                        {"rms", number(quality.rms)},
+                        {"peak", number(quality.peak)},
+                        {"mean", number(quality.mean)},
+                        {"crest_factor", number(quality.crest_factor)},
+                        {"findings", findings(each.findings)}});
+  }
+  return channels;
+}
+
+Json severity(const step::ChannelSpectrum& channel) {
+  if (!channel.severity) return nullptr;
+  const step::Severity& found = *channel.severity;
+  Json limits = Json::array();
+  for (const double limit : found.limits.velocity) limits.push_back(number(limit * to_mm_s));
+  return {{"standard", found.limits.standard},
+          {"category", found.limits.category},
+          {"zone", machine::name(found.zone)},
+          {"value_mm_s", number(found.velocity * to_mm_s)},
+          {"limits_mm_s", limits},
+          {"source", found.limits.source}};
+}
+
+Json spectrum(const step::SpectrumResult& result) {
+  Json channels = Json::array();
+  for (const step::ChannelSpectrum& each : result.channels) {
+    const Shown unit = shown(each.shown.quantity, result.detector);
+    Json overall = nullptr;
+    if (each.overall) {
+      overall = {{"quantity", base::name(each.shown.quantity)},
+                 {"detector", base::name(result.detector)},
+                 {"band_hz", {number(each.band_hz.lo), number(each.band_hz.hi)}},
+                 {"unit", unit.unit},
+                 {"value", number(each.overall->value * unit.factor)},
+                 {"u", number(each.overall->u, unit.factor)}};
+    }
+    Json peaks = Json::array();
+    for (const step::SpectralPeak& peak : each.peaks) {
+      peaks.push_back({{"frequency", estimate(peak.tone.frequency)},
+                       {"amplitude", estimate(peak.tone.amplitude_rms, unit.factor, unit.unit)},
+                       {"quantity", base::name(each.shown.quantity)},
+                       {"detector", base::name(result.detector)},
+                       {"cause", peak.cause.text}});
+    }
+    Json out = {{"name", each.channel.name}, {"point", each.channel.point}, {"overall", overall}, {"peaks", peaks}};
+    out["severity"] = severity(each);
+    if (!each.severity) out["severity_refused"] = refusal(each.severity.refusal());
+    out["findings"] = findings(each.findings);
+    channels.push_back(out);
+  }
+  Json out;
+  out["channels"] = channels;
+  out["speed"] = result.speed ? estimate(*result.speed, to_rpm, "rpm") : Json(nullptr);
+  out["resolution_hz"] = result.channels.empty() ? Json(nullptr) : number(result.channels.front().measured.line_hz);
+  out["blocks"] = result.channels.empty() ? Json(nullptr) : Json(result.channels.front().measured.blocks);
+  return out;
+}
+
+Json bump(const step::BumpResult& result) {
+  Json out;
+  out["hits"] = Json::array();
+  for (const step::FileHit& each : result.hits) {
+    out["hits"].push_back({{"file", each.file},
+                           {"time_s", number(each.hit.time_s)},
+                           {"peak", number(each.hit.peak)},
+                           {"used", each.hit.used},
+                           {"verdict", modal::name(each.hit.verdict)},
+                           {"reason", each.hit.reason}});
+  }
+  out["modes"] = modes(result.modes);
+  if (result.refusal) out["refused"] = refusal(*result.refusal);
+  out["findings"] = findings(result.findings);
+  return out;
+}
+
+Json runup(const step::RunupResult& result) {
+  Json out;
+  if (result.runup) {
+    const base::Interval range = result.runup->speed.speed_range();
+    out["speed"] = {{"from_rpm", number(range.lo * to_rpm)},
+                    {"to_rpm", number(range.hi * to_rpm)},
+                    {"trend", rotation::name(result.runup->speed.trend())},
+                    {"pulses", result.runup->pulses.time_s.size()},
+                    {"source", "tacho"}};
+  } else {
+    out["speed"] = nullptr;
+  }
+  out["orders"] = Json::array();
+  for (const rotation::OrderTrack& track : result.tracks) {
+    const Shown unit = shown(track.quantity, Detector::rms);
+    Json speed = Json::array();
+    Json amplitude = Json::array();
+    Json phase = Json::array();
+    for (std::size_t i = 0; i < track.value.size(); ++i) {
+      speed.push_back(number(track.speed_hz[i] * to_rpm));
+      amplitude.push_back(number(track.amplitude_rms(i) * unit.factor));
+      phase.push_back(number(track.phase_lag_deg(i)));
+    }
+    out["orders"].push_back({{"order", number(track.order)},
+                             {"channel", track.channel},
+                             {"quantity", base::name(track.quantity)},
+                             {"detector", "rms"},
+                             {"unit", unit.unit},
+                             {"speed_rpm", speed},
+                             {"amplitude", amplitude},
+                             {"phase_deg", phase}});
+  }
+  out["critical_speeds"] = Json::array();
+  for (const step::CriticalSpeedFound& each : result.critical_speeds) {
+    out["critical_speeds"].push_back({{"speed_rpm", estimate(each.speed, to_rpm, "rpm")},
+                                      {"peak_speed_rpm", number(each.peak_speed_hz * to_rpm)},
+                                      {"order", number(each.order)},
+                                      {"channel", each.channel},
+                                      {"amplification_factor", number(each.amplification_factor)},
+                                      {"mode", each.mode ? mode(*each.mode) : Json(nullptr)}});
+  }
+  if (result.refusal) out["refused"] = refusal(*result.refusal);
+  out["findings"] = findings(result.findings);
+  return out;
+}
+
+Json reason(const absorber::Reason& each) {
+  Json numbers = Json::object();
+  for (const absorber::Number& value : each.numbers) {
+    numbers[std::string(value.name)] = {{"value", number(value.value)}, {"unit", base::si_unit(value.quantity).name}};
+  }
+  return {{"code", absorber::name(each.code)}, {"text", sentence(each)}, {"numbers", numbers}};
+}
+
+Json predicted(const absorber::Predicted& each) {
+  return {{"point", each.point},
+          {"quantity", "velocity"},
+          {"unit", "mm/s"},
+          {"band_hz", {number(each.band_hz.lo), number(each.band_hz.hi)}},
+          {"before", velocity(each.before)},
+          {"after", velocity(each.after)},
+          {"component_before", velocity(each.component_before)},
+          {"component_after", velocity(each.component_after)},
+          {"at_duty", velocity(each.at_duty)},
+          {"worst_case", number(each.worst_case * to_mm_s)},
+          {"outside_model", number(each.outside_model * to_mm_s)},
+          {"probability_meets_target", number(each.probability_meets_target)}};
+}
+
+Json hardware(const absorber::Specification& specification) {
+  Json out = Json::array();
+  for (const absorber::BladeOption& each : specification.blades) {
+    out.push_back({{"kind", "blade"},
+                   {"material", each.material},
+                   {"count", each.count},
+                   {"free_length_mm", number(each.blade.length_m * 1e3)},
+                   {"width_mm", number(each.blade.width_m * 1e3)},
+                   {"thickness_mm", number(each.blade.thickness_m * 1e3)},
+                   {"tip_mass_kg", number(each.tip_mass_kg)},
+                   {"stress_mpa", number(each.stress_pa * 1e-6)},
+                   {"endurance_factor", number(each.endurance_factor)},
+                   {"sag_mm", number(each.sag_m * 1e3)},
+                   {"second_mode_hz", number(each.second_mode_hz)},
+                   {"hz_per_mm", number(each.frequency_per_m * 1e-3)}});
+  }
+  for (const absorber::SpringOption& each : specification.springs) {
+    out.push_back({{"kind", "helical spring"},
+                   {"material", each.material},
+                   {"count", each.count},
+                   {"wire_mm", number(each.spring.wire_m * 1e3)},
+                   {"coil_mm", number(each.spring.coil_m * 1e3)},
+                   {"active_coils", number(each.spring.active_coils)},
+                   {"rate_n_per_m", number(each.spring.rate())},
+                   {"stress_mpa", number(each.stress_pa * 1e-6)},
+                   {"endurance_factor", number(each.endurance_factor)},
+                   {"surge_hz", number(each.surge_hz)}});
+  }
+  return out;
+}
+
+Json remedies(const absorber::Specification& specification) {
+  Json out = Json::array();
+  for (const absorber::Remedy& each : specification.remedies) {
+    out.push_back({{"remedy", absorber::name(each.kind)},
+                   {"text", sentence(each)},
+                   {"amount", number(each.amount)},
+                   {"unit", base::si_unit(each.quantity).name},
+                   {"component_after", number(each.component_rms * to_mm_s)}});
+  }
+  return out;
+}
+
+Json absorber_result(const step::AbsorberResult& result) {
+  Json out;
+  out["mode"] = mode(result.question.mode);
+  if (result.refusal) out["refused"] = refusal(*result.refusal);
+  if (!result.specification) {
+    out["recommendation"] = "none";
+    out["reason"] = nullptr;
+    return out;
+  }
+  const absorber::Specification& found = *result.specification;
+  out["recommendation"] = absorber::name(found.recommendation);
+  out["reason"] = reason(found.reason);
+  out["notes"] = Json::array();
+  for (const absorber::Reason& note : found.notes) out["notes"].push_back(reason(note));
+  const auto put = [&](const absorber::AbsorberData& data) {
+    out["mass_kg"] = number(data.mass_kg);
+    out["mass_ratio"] = number(data.mass_ratio);
+    out["frequency_hz"] = number(data.frequency_hz);
+    out["stiffness_n_per_m"] = number(data.stiffness);
+    out["damping_ratio"] = number(data.damping_ratio);
+    out["damping_n_s_per_m"] = number(data.damping_constant);
+    out["split_frequencies_hz"] = {number(data.split_frequencies_hz[0]), number(data.split_frequencies_hz[1])};
+  };
+  if (found.absorber) put(*found.absorber);
+  out["predicted"] = found.predicted ? predicted(*found.predicted) : Json(nullptr);
+  out["others"] = Json::array();
+  for (const absorber::Predicted& other : found.others) out["others"].push_back(predicted(other));
+  out["travel_mm"] = found.predicted ? estimate(found.predicted->travel_m, 1e3, "mm") : Json(nullptr);
+  out["travel_passing_mm"] =
+      found.passing ? number(found.passing->passing_m.value_or(found.passing->steady_m) * 1e3) : Json(nullptr);
+  out["hardware"] = hardware(found);
+  out["tuning"] = Json::array();
+  for (const absorber::TuningPoint& point : found.tuning) {
+    out["tuning"].push_back(
+        {{"free_length_mm", number(point.free_length_m * 1e3)}, {"frequency_hz", number(point.frequency_hz)}});
+  }
+  out["frequency_per_kelvin"] = number(found.frequency_per_kelvin);
+  out["remedies"] = remedies(found);
+  out["spread_by"] = Json::array();
+  for (const numeric::Driver& driver : found.drivers) {
+    out["spread_by"].push_back({{"input", driver.input}, {"share", number(driver.share)}});
+  }
+  return out;
+}
+
+Json after_point(const survey::AfterPoint& each) {
+  return {{"point", each.point},
+          {"band_hz", {number(each.band_hz.lo), number(each.band_hz.hi)}},
+          {"before", velocity(each.before)},
+          {"after", velocity(each.after)},
+          {"predicted", velocity(each.predicted)},
+          {"component_before", velocity(each.component_before)},
+          {"component_after", velocity(each.component_after)},
+          {"deviation", number(each.achieved.deviation)},
+          {"meets_target", each.meets_target ? Json(*each.meets_target) : Json(nullptr)}};
+}
+
+Json machine_findings(const std::vector<base::Finding>& all) {
+  Json out = Json::array();
+  for (const base::Finding& each : all) {
+    Json row = finding(each);
+    row["strength"] = base::name(each.strength);
+    row["evidence"] = each.evidence;
+    out.push_back(row);
+  }
+  return out;
+}
+
+}  // namespace
+
+std::string json(const Envelope& envelope, const std::vector<step::CheckResult>& results) {
+  Json channels = Json::array();
+  for (const step::CheckResult& result : results) {
+    for (Json& channel : check(result)) channels.push_back(std::move(channel));
+  }
+  return wrapped(envelope, {{"channels", channels}});
+}
+
+std::string json(const Envelope& envelope, const step::SpectrumResult& result) {
+  return wrapped(envelope, spectrum(result));
+}
+
+std::string json(const Envelope& envelope, const step::BumpResult& result) { return wrapped(envelope, bump(result)); }
+
+std::string json(const Envelope& envelope, const step::RunupResult& result) { return wrapped(envelope, runup(result)); }
+
+std::string json(const Envelope& envelope, const step::AbsorberResult& result) {
+  return wrapped(envelope, absorber_result(result));
+}
+
+std::string json(const Envelope& envelope, const survey::SurveyResult& result) {
+  Json out;
+  const auto file = [&](std::size_t index) { return result.survey.recordings[index].written; };
+  out["machine"] = result.survey.machine.name;
+  out["target_mm_s"] = number(result.target_m_s, to_mm_s);
+  out["summary"] = summary(result);
+  out["quality"] = Json::array();
+  for (const auto& [index, each] : result.quality) {
+    out["quality"].push_back({{"file", file(index)}, {"verdict", name(each.verdict)}, {"channels", check(each)}});
+  }
+  out["spectra"] = Json::array();
+  for (const auto& [index, each] : result.spectra) {
+    Json row = {{"file", file(index)}, {"stage", survey::name(result.survey.recordings[index].stage)}};
+    row.update(spectrum(each));
+    out["spectra"].push_back(row);
+  }
+  out["bumps"] = Json::array();
+  for (const step::BumpResult& each : result.bumps) out["bumps"].push_back(bump(each));
+  out["modes"] = modes(result.modes);
+  out["runups"] = Json::array();
+  for (const auto& [index, each] : result.runups) {
+    Json row = {{"file", file(index)}};
+    row.update(runup(each));
+    out["runups"].push_back(row);
+  }
+  out["findings"] = machine_findings(result.findings);
+  out["refusals"] = Json::array();
+  for (const base::Refusal& each : result.refusals) out["refusals"].push_back(refusal(each));
+  out["remedies"] = Json::array();
+  out["absorber"] = nullptr;
+  if (!result.absorbers.empty()) {
+    const survey::AbsorberAim& first = result.absorbers.front();
+    out["absorber"] = absorber_result(first.result);
+    out["absorber"]["point"] = first.site.point;
+    out["absorber"]["forcing"] = {{"name", first.forcing_name}, {"frequency", estimate(first.forcing)}};
+    if (first.result.specification) out["remedies"] = remedies(*first.result.specification);
+  }
+  out["other_absorbers"] = Json::array();
+  for (std::size_t i = 1; i < result.absorbers.size(); ++i) {
+    Json row = absorber_result(result.absorbers[i].result);
+    row["point"] = result.absorbers[i].site.point;
+    out["other_absorbers"].push_back(row);
+  }
+  out["after"] = Json::array();
+  for (const survey::AfterPoint& each : result.after) out["after"].push_back(after_point(each));
+  return wrapped(envelope, out);
+}
+
+}  // namespace stillmass::report

@@ -1,0 +1,116 @@
+#include "stillmass/step/check.hpp"
+
+#include <algorithm>
+#include <optional>
+#include <span>
+
+#include "stillmass/base/error.hpp"
+#include "stillmass/recording/pass.hpp"
+#include "stillmass/spectral/spectral_quality.hpp"
+
+namespace stillmass::step {
+namespace {
+
+using base::Code;
+using base::Finding;
+
+bool identical(const recording::ChannelQuality& a, const recording::ChannelQuality& b, const spectral::Spectrum& sa,
+               const spectral::Spectrum& sb) {
+  return a.rms && b.rms && *a.rms > 0.0 && a.rms == b.rms && a.peak == b.peak && sa.density == sb.density;
+}
+
+Finding identical_channels(const std::string& a, const std::string& b) {
+  return {Code::identical_channels, "channels '" + a + "' and '" + b + "' carry the same samples", b};
+}
+
+Verdict worst(Verdict verdict, const std::vector<Finding>& findings) {
+  for (const Finding& finding : findings) verdict = std::max(verdict, weight(finding));
+  return verdict;
+}
+
+}  // namespace
+
+std::string_view name(Verdict verdict) {
+  switch (verdict) {
+    case Verdict::good:
+      return "good";
+    case Verdict::doubtful:
+      return "doubtful";
+    case Verdict::unusable:
+      return "unusable";
+  }
+  return "";
+}
+
+Verdict weight(const Finding& finding) {
+  switch (finding.code) {
+    case Code::no_signal:
+    case Code::flat_line:
+    case Code::identical_channels:
+      return Verdict::unusable;
+    case Code::clipped:
+    case Code::overload:
+    case Code::dropout:
+      return finding.strength == base::Strength::strong ? Verdict::unusable : Verdict::doubtful;
+    default:
+      return Verdict::doubtful;
+  }
+}
+
+CheckResult check(const recording::Reader& reader, const CheckRequest& request, const base::Context& context) {
+  CheckResult result;
+  result.recording = reader.recording();
+  result.range = frames_of(result.recording, request.part);
+
+  recording::SampleQuality samples(reader.recording());
+  recording::Overview overview(reader.recording(), result.range, request.overview_columns);
+  std::optional<spectral::SpectrumConsumer> spectra;
+  try {
+    spectra.emplace(reader.recording(), result.range, spectral::SpectrumOptions{});
+  } catch (const base::Error&) {
+    // Too short for a spectrum: the samples are judged all the same.
+  }
+  std::vector<recording::Consumer*> consumers = {&samples, &overview};
+  if (spectra) consumers.push_back(&*spectra);
+  recording::run_pass(reader, result.range, consumers, context, "reading " + result.recording.file.filename().string());
+
+  result.overview = overview.result();
+  if (spectra) result.spectra = spectra->spectra();
+  const std::vector<recording::ChannelQuality> qualities = samples.result();
+  for (std::size_t c = 0; c < result.recording.channels.size(); ++c) {
+    ChannelCheck each{result.recording.channels[c], Verdict::good, qualities[c], qualities[c].findings};
+    if (!result.spectra.empty() && each.channel.role == recording::Role::vibration &&
+        !result.spectra[c].density.empty()) {
+      for (Finding& finding : spectral::spectral_findings(result.spectra[c], each.channel, request.line_frequency_hz)) {
+        each.findings.push_back(std::move(finding));
+      }
+    }
+    for (std::size_t other = 0; other < c && !result.spectra.empty(); ++other) {
+      if (identical(qualities[other], qualities[c], result.spectra[other], result.spectra[c])) {
+        each.findings.push_back(identical_channels(qualities[other].channel, qualities[c].channel));
+      }
+    }
+    each.verdict = worst(Verdict::good, each.findings);
+    result.channels.push_back(std::move(each));
+  }
+  for (const Finding& finding : result.recording.findings) {
+    const auto owner = std::find_if(result.channels.begin(), result.channels.end(), [&](const ChannelCheck& each) {
+      return !finding.channel.empty() && each.channel.name == finding.channel;
+    });
+    if (owner == result.channels.end()) {
+      result.findings.push_back(finding);
+    } else {
+      owner->findings.push_back(finding);
+      owner->verdict = std::max(owner->verdict, weight(finding));
+    }
+  }
+  result.verdict = worst(Verdict::good, result.findings);
+  for (ChannelCheck& each : result.channels) {
+    std::stable_sort(each.findings.begin(), each.findings.end(),
+                     [](const Finding& a, const Finding& b) { return weight(a) > weight(b); });
+    result.verdict = std::max(result.verdict, each.verdict);
+  }
+  return result;
+}
+
+}  // namespace stillmass::step

@@ -1,0 +1,153 @@
+#include <vector>
+
+#include "stillmass/survey/survey_file.hpp"
+
+namespace stillmass::survey {
+namespace {
+
+using base::Interval;
+using base::KeyType;
+
+constexpr Interval positive{1e-9, 1e9};
+constexpr Interval fraction{0.0, 1.0};
+constexpr Interval celsius{-80.0, 400.0};
+
+const std::vector<base::Key>& keys() {
+  static const std::vector<base::Key> all = {
+      {"machine", KeyType::table, "", true, "", "the machine: write [machine] with a name"},
+      {"machine.name", KeyType::text, "", true, "", "what the site calls it"},
+      {"machine.kind", KeyType::text, "", false, "general", "what it is", "pump|fan|motor|general"},
+      {"machine.power_kw", KeyType::number, "kW", false, "", "rated power", "", positive},
+      {"machine.speed_rpm",
+       KeyType::number_or_pair,
+       "rpm",
+       false,
+       "",
+       "speed, or [min, max] of a variable speed",
+       "",
+       {0.1, 1e6}},
+      {"machine.supply", KeyType::text, "", false, "line",
+       "what feeds the motor: electrical lines follow the line or the drive's output", "line|drive"},
+      {"machine.line_frequency_hz", KeyType::number, "Hz", false, "", "of the supply", "", {1, 1000}},
+      {"machine.motor_poles", KeyType::integer, "", false, "", "poles of the motor (2, 4, 6, ...)", "", {2, 200}},
+      {"machine.vanes", KeyType::integer, "", false, "", "vanes of the impeller or blades of the fan", "", {1, 1000}},
+      {"machine.foundation", KeyType::text, "", false, "", "how it stands, in every direction", "flexible|rigid"},
+      {"machine.foundation_horizontal", KeyType::text, "", false, "", "where it differs", "flexible|rigid"},
+      {"machine.foundation_vertical", KeyType::text, "", false, "", "where it differs", "flexible|rigid"},
+      {"machine.foundation_axial", KeyType::text, "", false, "", "where it differs", "flexible|rigid"},
+      {"machine.mass_kg", KeyType::number, "kg", false, "", "of everything that can move: bounds every modal mass", "",
+       positive},
+      {"machine.rotor_mass_kg", KeyType::number, "kg", false, "", "for balance grades", "", positive},
+      {"machine.stopped_shift", KeyType::table, "", false, "",
+       "relative standard uncertainty of a mode measured on the stopped machine"},
+      {"machine.stopped_shift.frequency", KeyType::number, "", false, "0.02", "of the natural frequency", "", fraction},
+      {"machine.stopped_shift.damping", KeyType::number, "", false, "0.3", "of the damping ratio", "", fraction},
+      {"machine.shaft", KeyType::tables, "", false, "", "a shaft behind a gear or belt"},
+      {"machine.shaft.name", KeyType::text, "", true, "", "its name"},
+      {"machine.shaft.ratio", KeyType::number, "", true, "", "its speed over the machine's speed", "", positive},
+      {"machine.bearing", KeyType::tables, "", false, "", "a rolling bearing"},
+      {"machine.bearing.name", KeyType::text, "", true, "", "its name"},
+      {"machine.bearing.rolling_elements", KeyType::integer, "", true, "", "how many", "", {3, 1000}},
+      {"machine.bearing.ball_mm", KeyType::number, "mm", true, "", "diameter of a rolling element", "", positive},
+      {"machine.bearing.pitch_mm", KeyType::number, "mm", true, "", "pitch diameter", "", positive},
+      {"machine.bearing.contact_angle_deg", KeyType::number, "deg", false, "0", "contact angle", "", {0, 89}},
+      {"machine.bearing.shaft", KeyType::text, "", false, "", "name of its shaft"},
+
+      {"point", KeyType::tables, "", true, "", "where a sensor sat: write at least one [[point]]"},
+      {"point.name", KeyType::text, "", true, "", "its name"},
+      {"point.direction", KeyType::text, "", false, "", "horizontal, vertical, axial, or a signed axis such as +x"},
+      {"point.on", KeyType::text, "", false, "", "what it sits on", "bearing-housing|structure|piping|absorber"},
+      {"point.position_m", KeyType::numbers, "m", false, "", "[x, y, z]"},
+
+      {"recording", KeyType::tables, "", false, "", "a file of samples; without any the measuring plan is printed"},
+      {"recording.file", KeyType::text, "", true, "", "its name, beside the survey file"},
+      {"recording.kind", KeyType::text, "", true, "", "what was done",
+       "steady|runup|coastdown|stepped|bump|ringdown|background|calibration|ratio-calibration"},
+      {"recording.stage", KeyType::text, "", false, "before",
+       "before, after (absorber fitted), bench (absorber alone on a clamp), blocked (fitted, locked)",
+       "before|after|bench|blocked"},
+      {"recording.state", KeyType::text, "", false, "running", "of the machine", "running|stopped"},
+      {"recording.speed_rpm", KeyType::number, "rpm", false, "", "during it", "", {0.1, 1e6}},
+      {"recording.filled", KeyType::flag, "", false, "", "with liquid"},
+      {"recording.flow_percent_bep", KeyType::number, "%", false, "", "flow over the best one", "", {0, 1000}},
+      {"recording.temperature_c", KeyType::number, "degC", false, "", "of the structure", "", celsius},
+      {"recording.rate_hz", KeyType::number, "Hz", false, "", "of a text file without a time column", "", positive},
+      {"recording.part_s", KeyType::number_or_pair, "s", false, "", "[from, to]: only this part is used"},
+      {"recording.added_mass_kg", KeyType::number, "kg", false, "", "a known mass bolted on for this bump test", "",
+       positive},
+      {"recording.trial_absorber", KeyType::table, "", false, "", "a known absorber fitted for this recording"},
+      {"recording.trial_absorber.mass_kg", KeyType::number, "kg", true, "", "", "", positive},
+      {"recording.trial_absorber.frequency_hz", KeyType::number, "Hz", true, "", "", "", positive},
+      {"recording.trial_absorber.damping_ratio", KeyType::number, "", false, "0.005", "", "", fraction},
+      {"recording.trial_weight", KeyType::table, "", false, "", "a known weight on the rotor for this recording"},
+      {"recording.trial_weight.g", KeyType::number, "g", true, "", "", "", positive},
+      {"recording.trial_weight.radius_mm", KeyType::number, "mm", true, "", "", "", positive},
+      {"recording.trial_weight.angle_deg", KeyType::number, "deg", true, "", "", "", {-360, 360}},
+      {"recording.channel", KeyType::tables, "", false, "", "one signal of the recording"},
+      {"recording.channel.index",
+       KeyType::integer,
+       "",
+       true,
+       "",
+       "1-based; a time column is not counted",
+       "",
+       {1, 1024}},
+      {"recording.channel.name", KeyType::text, "", false, "", "if it has no point"},
+      {"recording.channel.point", KeyType::text, "", false, "", "name of a [[point]]"},
+      {"recording.channel.role", KeyType::text, "", false, "vibration", "what it carries", "vibration|force|tacho"},
+      {"recording.channel.unit", KeyType::text, "", false, "",
+       "g, m/s2, mm/s, m/s, in/s, um, mm, m, mil, N, lbf, V, 1, tacho"},
+      {"recording.channel.scale",
+       KeyType::number,
+       "",
+       false,
+       "1",
+       "units per 1.0 of the stored sample (full scale of an integer file); negative: inverted",
+       "",
+       {-1e12, 1e12}},
+      {"recording.channel.sensitivity_mv_per_unit",
+       KeyType::number,
+       "mV",
+       false,
+       "",
+       "with full_scale_v, instead",
+       "",
+       {-1e9, 1e9}},
+      {"recording.channel.full_scale_v", KeyType::number, "V", false, "", "of the recorder", "", positive},
+      {"recording.channel.direction", KeyType::text, "", false, "", "of a hammer, where it differs from its point's"},
+      {"recording.channel.pulses_per_turn", KeyType::integer, "", false, "1", "of a tacho", "", {1, 10000}},
+      {"recording.channel.angle_deg",
+       KeyType::number,
+       "deg",
+       false,
+       "0",
+       "where the tacho's mark sits",
+       "",
+       {-360, 360}},
+      {"recording.channel.edge", KeyType::text, "", false, "rising", "of the tacho's pulse that counts",
+       "rising|falling"},
+      {"recording.channel.mounting", KeyType::text, "", false, "", "stud, magnet, wax, hand-held"},
+      {"recording.channel.low_corner_hz", KeyType::number, "Hz", false, "", "of the sensor's chain", "", positive},
+
+      {"limit", KeyType::tables, "", false, "", "what counts as good enough"},
+      {"limit.standard", KeyType::text, "", false, "", "ISO 10816-1, ISO 10816-3 or ISO 10816-7"},
+      {"limit.category", KeyType::text, "", false, "", "category, group or class of that standard"},
+      {"limit.shaft_height_mm", KeyType::number, "mm", false, "", "where the standard asks for it", "", positive},
+      {"limit.target_mm_s", KeyType::number, "mm/s", false, "", "broad-band r.m.s. velocity that the plant asks for",
+       "", positive},
+
+      {"absorber", KeyType::tables, "", false, "", "a place where one could be attached"},
+      {"absorber.point", KeyType::text, "", true, "", "name of a [[point]]"},
+      {"absorber.axes", KeyType::texts, "", false, "", "directions in which it can move"},
+      {"absorber.max_mass_kg", KeyType::number, "kg", false, "", "heaviest absorber allowed", "", positive},
+      {"absorber.max_travel_mm", KeyType::number, "mm", false, "", "room for its motion, either way", "", positive},
+      {"absorber.temperature_c", KeyType::number_or_pair, "degC", false, "", "[lowest, highest] on site", "", celsius},
+  };
+  return all;
+}
+
+}  // namespace
+
+std::span<const base::Key> survey_keys() { return keys(); }
+
+}  // namespace stillmass::survey
