@@ -1,0 +1,65 @@
+#pragma once
+
+#include <cstdint>
+#include <memory>
+#include <optional>
+#include <string>
+#include <vector>
+
+#include "stillmass/base/context.hpp"
+#include "stillmass/base/finding.hpp"
+#include "stillmass/recording/pass.hpp"
+
+namespace stillmass::recording {
+
+/// What the samples of one channel tell without any spectrum. A number that no valid sample supports is absent.
+struct ChannelQuality {
+  std::string channel;
+  std::int64_t samples = 0;            ///< valid ones
+  std::int64_t missing = 0;            ///< not valid: cells without a number, NaN
+  std::optional<double> mean;          ///< SI
+  std::optional<double> rms;           ///< of the signal about its mean, SI
+  std::optional<double> peak;          ///< largest absolute value about the mean, SI
+  std::optional<double> crest_factor;  ///< peak / rms; absent where rms is 0
+  std::vector<base::Finding> findings;
+};
+
+/// Thresholds of the sample-level checks: common practice, no published source.
+namespace quality_limit {
+inline constexpr std::int64_t clipped_run = 3;      ///< equal samples at the extreme that count as a flat top
+inline constexpr double clipped_entry_steps = 4.0;  ///< a flat top is entered or left by more steps than a rounded one
+inline constexpr std::int64_t dropout_run = 8;      ///< exact zeros in a row
+inline constexpr double dropout_edge = 0.25;        ///< jump into or out of the zeros, of the r.m.s. value about zero
+inline constexpr double flat_seconds = 0.25;        ///< equal samples over that time ...
+inline constexpr std::int64_t flat_run = 50;        ///< ... and at least so many
+inline constexpr double spike_range = 5.0;          ///< distance from six neighbours, in ranges of these neighbours
+inline constexpr double spike_rms = 8.0;            ///< and in r.m.s. values of the channel
+inline constexpr double few_steps = 32.0;           ///< peak-to-peak value in least steps below which bits are wasted
+inline constexpr double dead_steps = 2.0;           ///< peak-to-peak value in stored steps that is no signal at all
+}  // namespace quality_limit
+
+/// The checks as a consumer: `clipped` (flat tops at the end of the range) and `overload` (flat tops below it),
+/// `dropout`, `flat_line`, `spikes`, `few_bits`, `no_signal`, `not_a_number`. Blows and pulses look like faults of a
+/// vibration signal, so of a force only flat tops, few bits and no signal are judged, of a tacho only no signal.
+/// However the pass is cut, the findings are the same; the sums agree to rounding.
+class SampleQuality : public Consumer {
+ public:
+  explicit SampleQuality(const Recording& recording);
+  ~SampleQuality() override;
+
+  std::int64_t lookahead() const override;
+  std::unique_ptr<Consumer> fresh(FrameRange owned) const override;
+  void take(const Chunk& chunk) override;
+  void merge(Consumer& next) override;
+  /// One entry a channel, in order. Findings come with times from the start of the recording.
+  std::vector<ChannelQuality> result() const;
+
+ private:
+  struct State;
+  std::unique_ptr<State> state_;
+};
+
+/// The checks over the frames of `range` in a pass of their own.
+std::vector<ChannelQuality> sample_quality(const Reader& reader, FrameRange range, const base::Context& context);
+
+}  // namespace stillmass::recording

@@ -1,0 +1,95 @@
+#include "recording/csv_column.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <limits>
+
+#include "stillmass/base/number.hpp"
+
+#include "recording/csv_cell.hpp"
+
+namespace stillmass::recording {
+namespace {
+
+constexpr std::size_t rows_for_time = 3;  // fewer do not show that a column without a name is time
+constexpr double backward_share = 0.05;   // of the steps of a column of times
+constexpr double even_share = 0.9;        // of the steps of a column of times without a name ...
+constexpr double even_tolerance = 0.5;    // ... lie so close to the median, relative
+
+// Decimals of the last printed digit: "0.048" 3, "1.25E-3" 5.
+int decimals_of(std::string_view text) {
+  const auto exponent_at = text.find_first_of("eE");
+  const std::string_view mantissa = text.substr(0, exponent_at);
+  const auto sign = mantissa.find_last_of(".,");
+  int decimals = sign == std::string_view::npos ? 0 : static_cast<int>(mantissa.size() - sign - 1);
+  if (exponent_at != std::string_view::npos) {
+    decimals -= static_cast<int>(base::parse_integer(text.substr(exponent_at + 1)).value_or(0));
+  }
+  return decimals;
+}
+
+}  // namespace
+
+CsvColumn column_of(const CsvDialect& dialect, std::size_t field) {
+  CsvColumn column;
+  std::vector<std::string_view> cells;
+  for (const std::string& row : dialect.rows) {
+    split_cells(row, dialect.separator, cells);
+    if (field >= cells.size()) continue;
+    const Cell cell = read_cell(cells[field], dialect.decimal);
+    if (cell.kind != CellKind::number && cell.kind != CellKind::time) continue;
+    column.stamps = column.stamps || cell.kind == CellKind::time;
+    column.values.push_back(cell.value);
+    column.texts.emplace_back(bare(cells[field]));
+  }
+  return column;
+}
+
+std::vector<double> CsvColumn::steps() const {
+  std::vector<double> steps;
+  for (std::size_t i = 1; i < values.size(); ++i) steps.push_back(values[i] - values[i - 1]);
+  return steps;
+}
+
+double CsvColumn::median_step() const {
+  std::vector<double> sorted = steps();
+  if (sorted.empty()) return 0.0;
+  const auto middle = sorted.begin() + static_cast<std::ptrdiff_t>(sorted.size() / 2);
+  std::nth_element(sorted.begin(), middle, sorted.end());
+  return *middle;
+}
+
+bool CsvColumn::grows() const {
+  const std::vector<double> all = steps();
+  const auto back = std::count_if(all.begin(), all.end(), [](double step) { return step < 0.0; });
+  const bool forth = std::any_of(all.begin(), all.end(), [](double step) { return step > 0.0; });
+  return forth && static_cast<double>(back) <= backward_share * static_cast<double>(all.size());
+}
+
+bool CsvColumn::grows_evenly() const {
+  if (values.size() < rows_for_time || !grows()) return false;
+  const std::vector<double> all = steps();
+  const double median = median_step();
+  const auto even = std::count_if(all.begin(), all.end(),
+                                  [&](double step) { return std::abs(step - median) <= even_tolerance * median; });
+  return median > 0.0 && static_cast<double>(even) >= even_share * static_cast<double>(all.size());
+}
+
+bool CsvColumn::whole_numbers() const {
+  return std::all_of(texts.begin(), texts.end(),
+                     [](const std::string& text) { return base::parse_integer(text).has_value(); });
+}
+
+bool CsvColumn::counts_rows() const {
+  const std::vector<double> all = steps();
+  return values.size() >= rows_for_time && whole_numbers() &&
+         std::all_of(all.begin(), all.end(), [](double step) { return step == 1.0; });
+}
+
+double CsvColumn::last_digit() const {
+  int decimals = std::numeric_limits<int>::min();
+  for (const std::string& text : texts) decimals = std::max(decimals, decimals_of(text));
+  return texts.empty() ? 0.0 : std::pow(10.0, -decimals);
+}
+
+}  // namespace stillmass::recording

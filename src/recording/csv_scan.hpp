@@ -1,0 +1,51 @@
+#pragma once
+
+#include <array>
+#include <cstdint>
+#include <memory>
+#include <optional>
+#include <vector>
+
+#include "stillmass/base/context.hpp"
+
+#include "recording/csv_table.hpp"
+#include "recording/text_source.hpp"
+#include "recording/time_grid.hpp"
+
+namespace stillmass::recording {
+
+/// Where a row starts in the text.
+struct RowMark {
+  std::int64_t row = 0;
+  std::int64_t offset = 0;
+};
+
+/// Cells of one channel without a number, of one kind; places are runs of rows.
+struct BadCells {
+  std::int64_t cells = 0;
+  std::int64_t places = 0;
+  std::int64_t last_row = -2;
+  double first_s = 0.0;
+  double last_s = 0.0;
+  std::vector<std::array<double, 2>> first_places_s;
+};
+
+/// What the first pass over a text file finds: everything but the values.
+struct CsvScan {
+  std::int64_t rows = 0;
+  std::vector<RowMark> marks;          ///< every 4096 rows, ascending, from row 0 on
+  std::vector<RowTime> mark_times;     ///< stamps of these rows and of the last one; empty without times
+  GridVerdict grid;                    ///< of a table with times
+  std::int64_t rows_without_time = 0;  ///< left out
+  std::vector<BadCells> missing;       ///< per channel
+  std::vector<BadCells> not_a_number;  ///< per channel
+};
+
+inline constexpr std::int64_t rows_per_mark = 4096;
+
+/// Reads the times and counts the rows; blocks of lines that hold nothing but numbers are not looked at cell by cell.
+/// rate_hz: for a table without times. Throws `Error` (file).
+CsvScan scan_rows(const TextSource& text, const CsvTable& table, std::optional<double> rate_hz,
+                  const base::Context& context);
+
+}  // namespace stillmass::recording

@@ -1,0 +1,35 @@
+#pragma once
+
+#include <cstdint>
+#include <memory>
+#include <string>
+
+#include "recording/input_file.hpp"
+#include "recording/riff_header.hpp"
+
+namespace stillmass::recording {
+
+/// One decoder over a shared file, with a position of its own. Samples are interleaved, full scale 1.0.
+class SoundReader {
+ public:
+  /// With a header, the samples are taken from where that says, whatever sizes the file declares. Throws `Error`
+  /// (file).
+  explicit SoundReader(std::shared_ptr<const InputFile> file, const RiffHeader* samples_at = nullptr);
+  ~SoundReader();
+
+  int channels() const;
+  int rate_hz() const;
+  std::int64_t frames() const;
+  std::string format() const;  ///< "WAV, 24-bit"
+  int integer_bits() const;    ///< 0: floating point
+  /// False where the file cannot be read there.
+  bool seek(std::int64_t frame);
+  /// Frames read; fewer than asked for at the end.
+  std::int64_t read(double* to, std::int64_t frames);
+
+ private:
+  struct Handle;
+  std::unique_ptr<Handle> handle_;
+};
+
+}  // namespace stillmass::recording

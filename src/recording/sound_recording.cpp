@@ -1,0 +1,191 @@
+#include "recording/sound_recording.hpp"
+
+#include <algorithm>
+#include <array>
+#include <cmath>
+
+#include <fmt/format.h>
+
+#include "stillmass/base/error.hpp"
+#include "stillmass/base/number.hpp"
+#include "stillmass/recording/scale.hpp"
+
+#include "recording/riff_header.hpp"
+#include "recording/sound_reader.hpp"
+#include "recording/validity.hpp"
+
+namespace stillmass::recording {
+namespace {
+
+constexpr std::size_t frames_at_once = 512;  // interleaved samples that stay in the processor's nearest cache
+
+// What all handles of one recording share.
+struct Source {
+  std::shared_ptr<const InputFile> file;
+  std::optional<RiffHeader> repair;  // samples are where this says, not where the file says
+
+  SoundReader open() const { return SoundReader(file, repair ? &*repair : nullptr); }
+};
+
+class SoundRecording : public Reader {
+ public:
+  SoundRecording(std::shared_ptr<const Source> source, std::shared_ptr<const Recording> recording)
+      : source_(std::move(source)), sound_(source_->open()), validity_(recording->channels.size()) {
+    recording_ = std::move(recording);
+  }
+
+  void seek(std::int64_t frame) override {
+    if (frame == at_) return;
+    if (frame < recording_->frames && !sound_.seek(frame)) broken_at(frame);
+    at_ = frame;
+  }
+
+  bool next(Chunk& chunk, std::size_t max_frames) override {
+    const std::int64_t wanted = std::min(recording_->frames - at_, static_cast<std::int64_t>(max_frames));
+    if (wanted <= 0) return false;
+    const std::size_t channels = recording_->channels.size();
+    chunk.segment = 0;
+    chunk.first_frame = at_;
+    chunk.resize(channels, static_cast<std::size_t>(wanted));
+    interleaved_.resize(frames_at_once * channels);
+    for (std::size_t done = 0; done < chunk.frames;) {
+      const std::size_t count = std::min(frames_at_once, chunk.frames - done);
+      const auto read = sound_.read(interleaved_.data(), static_cast<std::int64_t>(count));
+      if (read != static_cast<std::int64_t>(count)) broken_at(at_ + static_cast<std::int64_t>(done));
+      for (std::size_t c = 0; c < channels; ++c) spread(chunk, c, done, count);
+      done += count;
+    }
+    validity_.finish(chunk);
+    at_ += wanted;
+    return true;
+  }
+
+  std::unique_ptr<Reader> second() const override { return std::make_unique<SoundRecording>(source_, recording_); }
+
+ private:
+  // Channel c of the frames just read, to the chunk's frames from `first` on.
+  void spread(Chunk& chunk, std::size_t c, std::size_t first, std::size_t count) {
+    const Channel& channel = recording_->channels[c];
+    const std::size_t channels = recording_->channels.size();
+    const auto out = chunk.channel(c).subspan(first, count);
+    const double* in = interleaved_.data() + c;
+    unsigned bad = 0;
+    for (std::size_t i = 0; i < count; ++i) {
+      out[i] = in[i * channels] * channel.factor + channel.offset;
+      bad |= std::isfinite(out[i]) ? 0U : 1U;
+    }
+    if (bad == 0) return;
+    for (std::size_t i = 0; i < count; ++i) {
+      if (!std::isfinite(out[i])) validity_.mark_bad(c, chunk.first_frame + static_cast<std::int64_t>(first + i));
+    }
+  }
+
+  [[noreturn]] void broken_at(std::int64_t frame) const {
+    throw base::file_error(source_->file->name(),
+                           fmt::format("cannot be read from {} s on", base::rounded(recording_->time_s(frame), 6)),
+                           "copy it again, or use --to to stop before that");
+  }
+
+  std::shared_ptr<const Source> source_;
+  SoundReader sound_;
+  std::int64_t at_ = 0;
+  std::vector<double> interleaved_;
+  Validity validity_;
+};
+
+// Up to which frame the file can be read: a compressed file says how long it was, even if its end is lost.
+std::int64_t readable_frames(SoundReader& sound) {
+  std::vector<double> frame(static_cast<std::size_t>(sound.channels()));
+  const auto readable = [&](std::int64_t at) { return sound.seek(at) && sound.read(frame.data(), 1) == 1; };
+  std::int64_t good = 0;
+  std::int64_t bad = sound.frames();
+  if (bad == 0 || readable(bad - 1)) return bad;
+  while (good < bad) {
+    const std::int64_t middle = good + (bad - good) / 2;
+    if (readable(middle)) {
+      good = middle + 1;
+    } else {
+      bad = middle;
+    }
+  }
+  return good;
+}
+
+// Frames that the header promises: of a RIFF by its data chunk, of an AIFF by the size of the whole.
+std::int64_t promised_frames(const InputFile& file, const std::optional<RiffHeader>& riff, const SoundReader& sound) {
+  if (riff) return riff->declared_frames().value_or(riff->frames());
+  const std::string head = file.read_at(0, 8);
+  if (!head.starts_with("FORM")) return sound.frames();
+  std::int64_t size = 8;
+  for (std::size_t i = 4; i < 8; ++i) size += std::int64_t{static_cast<unsigned char>(head[i])} << (8 * (7 - i));
+  const int bytes = std::max(1, sound.integer_bits() / 8) * sound.channels();
+  return sound.frames() + std::max<std::int64_t>(0, (size - file.size()) / bytes);
+}
+
+void note_missing_end(Recording& recording, std::int64_t promised) {
+  if (promised <= recording.frames) return;
+  const double from = static_cast<double>(recording.frames) / recording.rate_hz;
+  const double to = static_cast<double>(promised) / recording.rate_hz;
+  base::Finding finding{base::Code::truncated, fmt::format("the file ends after {} s, its header promises {} s",
+                                                           base::rounded(from, 5), base::rounded(to, 5))};
+  finding.from_s = from;
+  finding.to_s = to;
+  recording.findings.push_back(std::move(finding));
+}
+
+std::vector<Channel> plain_channels(const SoundReader& sound) {
+  std::vector<Channel> channels(static_cast<std::size_t>(sound.channels()));
+  for (std::size_t c = 0; c < channels.size(); ++c) {
+    channels[c].index = static_cast<int>(c) + 1;
+    channels[c].name = fmt::format("channel {}", c + 1);
+    if (sound.integer_bits() > 0) {
+      channels[c].stored_step = std::ldexp(1.0, 1 - sound.integer_bits());
+      channels[c].full_scale = 1.0;
+    }
+  }
+  return channels;
+}
+
+}  // namespace
+
+bool is_sound(std::string_view first_bytes) {
+  constexpr auto starts = std::to_array<std::string_view>({"RIFF", "RIFX", "RF64", "riff", "FORM", "fLaC"});
+  return std::any_of(starts.begin(), starts.end(),
+                     [&](std::string_view start) { return first_bytes.starts_with(start); });
+}
+
+std::unique_ptr<Reader> open_sound(std::shared_ptr<const InputFile> file, const std::filesystem::path& path,
+                                   const OpenOptions& options) {
+  auto source = std::make_shared<Source>();
+  source->file = std::move(file);
+  const std::optional<RiffHeader> riff = read_riff_header(*source->file);
+  if (riff && (riff->format_tag == 1 || riff->format_tag == 3) && riff->frames() > 0) {
+    if (source->open().frames() != riff->frames()) source->repair = riff;
+  }
+  SoundReader sound = source->open();
+
+  auto recording = std::make_shared<Recording>();
+  recording->file = path;
+  recording->format = sound.format();
+  recording->rate_hz = sound.rate_hz();
+  recording->frames = readable_frames(sound);
+  if (recording->frames == 0) {
+    throw base::file_error(source->file->name(), "holds no samples, only a header", "record it again");
+  }
+  if (!(recording->rate_hz > 0.0)) {
+    throw base::file_error(source->file->name(), "states a sampling rate of 0", "copy it again from the recorder");
+  }
+  if (options.rate_hz && std::abs(*options.rate_hz - recording->rate_hz) > 1e-6 * recording->rate_hz) {
+    throw base::usage_error(source->file->name(),
+                            fmt::format("its header says {} Hz, not {} Hz", base::shortest(recording->rate_hz),
+                                        base::shortest(*options.rate_hz)),
+                            "leave --rate out, it is for text files without a time column");
+  }
+  recording->segments = {{0, recording->frames, 0.0}};
+  note_missing_end(*recording, std::max(promised_frames(*source->file, riff, sound), sound.frames()));
+  recording->channels = plain_channels(sound);
+  apply_settings(recording->channels, options.channels, path, recording->findings);
+  return std::make_unique<SoundRecording>(std::move(source), std::move(recording));
+}
+
+}  // namespace stillmass::recording
