@@ -1,0 +1,15 @@
+#pragma once
+
+#include <cstddef>
+
+#include "stillmass/spectral/spectrum.hpp"
+
+namespace stillmass::spectral {
+
+/// The spectrum as it was measured, before any integration line by line.
+Spectrum as_measured(const Spectrum& spectrum);
+
+/// How many lines on each side the noise floor is taken from.
+std::size_t floor_lines(Window window);
+
+}  // namespace stillmass::spectral

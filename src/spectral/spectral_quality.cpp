@@ -1,0 +1,167 @@
+#include "stillmass/spectral/spectral_quality.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <numeric>
+
+#include <fmt/format.h>
+
+#include "stillmass/spectral/level.hpp"
+#include "stillmass/spectral/quantity.hpp"
+#include "stillmass/spectral/tone.hpp"
+
+namespace stillmass::spectral {
+
+namespace {
+
+using base::Code;
+using base::Finding;
+
+// All thresholds here: common practice.
+constexpr double hum_share = 0.1;          // of the mean square, at supply frequency and its odd harmonics
+constexpr int hum_harmonics = 9;           // looked at up to this one
+constexpr double hum_tolerance = 0.004;    // relative; a supply stays within 0.2 Hz of 50 Hz
+constexpr double slope_fall = 4.0;         // density over an octave: steeper than 6 dB
+constexpr double slope_share = 0.5;        // of the integrated mean square that lies on the slope
+constexpr double top_band = 0.1;           // of the range below rate/2, seen for roll-off
+constexpr double no_roll_off = 0.5;        // density of the top over that of the range below it
+constexpr double top_share = 0.01;         // of the mean square, so that silence at the top is no suspicion
+constexpr double steps_above_noise = 2.0;  // density over that of the stored steps
+
+Finding finding(Code code, const Spectrum& s, base::Strength strength, std::string text) {
+  return {.code = code,
+          .text = std::move(text),
+          .channel = s.channel,
+          .from_s = {},
+          .to_s = {},
+          .strength = strength,
+          .evidence = {}};
+}
+
+double mean_density(const Spectrum& s, double from_hz, double to_hz) {
+  const base::Interval band{from_hz, to_hz};
+  const double rms = band_rms(s, band).value;
+  return rms * rms / band.width();
+}
+
+/// Of the lines from one frequency up to, not including, the other.
+double median_density(const Spectrum& s, double from_hz, double to_hz) {
+  const auto line = [&](double f) { return static_cast<std::ptrdiff_t>(std::lround(f / s.line_hz)); };
+  std::vector<double> density(s.density.begin() + line(from_hz), s.density.begin() + line(to_hz));
+  const auto middle = density.begin() + static_cast<std::ptrdiff_t>(density.size() / 2);
+  std::nth_element(density.begin(), middle, density.end());
+  return *middle;
+}
+
+double mean_square_above_zero(const Spectrum& s) {
+  const double rms = band_rms(s, {least_low_limit_hz(s), 0.5 * s.rate_hz}).value;
+  return rms * rms;
+}
+
+/// Mean square of the tones at odd multiples of the supply's frequency, if that frequency itself is there. Even
+/// multiples are left out: twice the supply's frequency is a force that motors really have.
+double hum(std::span<const Tone> tones, const Spectrum& s, double supply_hz) {
+  double sum = 0.0;
+  bool has_fundamental = false;
+  for (const Tone& tone : tones) {
+    for (int k = 1; k <= hum_harmonics; k += 2) {
+      const double tolerance = std::max(hum_tolerance * k * supply_hz, 0.5 * s.line_hz);
+      if (std::abs(tone.frequency.value - k * supply_hz) > tolerance) continue;
+      sum += tone.amplitude_rms.value * tone.amplitude_rms.value;
+      has_fundamental = has_fundamental || k == 1;
+      break;
+    }
+  }
+  return has_fundamental ? sum : 0.0;
+}
+
+std::optional<Finding> mains_hum(const Spectrum& s, std::optional<double> line_frequency_hz) {
+  const auto peaks = tones(s, {.strongest = 50, .prominence = 10.0, .band_hz = {}});
+  const double all = mean_square_above_zero(s);
+  std::vector<double> supplies{50.0, 60.0};
+  if (line_frequency_hz) supplies = {*line_frequency_hz};
+  for (const double supply : supplies) {
+    const double share = hum(peaks, s, supply) / all;
+    if (share < hum_share) continue;
+    return finding(Code::mains_hum, s, share > 0.5 ? base::Strength::strong : base::Strength::fair,
+                   fmt::format("{:.0f} % of the signal's power stands at {:.4g} Hz and its odd harmonics, where the "
+                               "electric supply is",
+                               100.0 * share, supply));
+  }
+  return std::nullopt;
+}
+
+std::optional<Finding> low_frequency_slope(const Spectrum& s) {
+  const auto end = slope_end_hz(s);
+  if (!end) return std::nullopt;
+  return finding(
+      Code::low_frequency_slope, s, base::Strength::fair,
+      fmt::format("the acceleration rises towards 0 Hz below {:.3g} Hz so that integrated velocity is mostly "
+                  "this slope",
+                  *end));
+}
+
+std::optional<Finding> aliasing(const Spectrum& s) {
+  const double top = 0.5 * s.rate_hz;
+  const double at_top = mean_density(s, (1.0 - top_band) * top, top);
+  const double below = mean_density(s, 0.5 * top, 0.8 * top);
+  const double share = at_top * top_band * top / mean_square_above_zero(s);
+  if (!(at_top > no_roll_off * below && share > top_share)) return std::nullopt;
+  return finding(
+      Code::aliasing_suspected, s, base::Strength::weak,
+      fmt::format("the spectrum does not fall off towards half the sampling rate ({:.4g} Hz), where {:.0f} % "
+                  "of the power still stands",
+                  top, 100.0 * share));
+}
+
+std::optional<Finding> noise_of_steps(const Spectrum& s, const recording::Channel& channel) {
+  if (!channel.stored_step) return std::nullopt;
+  // Rounding to steps q adds noise of mean square q^2 / 12, spread evenly to rate/2.
+  const double of_steps = *channel.stored_step * *channel.stored_step / (6.0 * s.rate_hz);
+  const double all = mean_square_above_zero(s);
+  const double steps_rms = std::sqrt(0.5 * of_steps * s.rate_hz);
+  if (all > 100.0 * steps_rms * steps_rms) return std::nullopt;  // 20 dB above the steps overall: good enough
+  if (median_density(s, s.line_hz, 0.5 * s.rate_hz) > steps_above_noise * of_steps) return std::nullopt;
+  return finding(Code::near_noise_floor, s, base::Strength::fair,
+                 fmt::format("the signal is only {:.0f} dB above the noise of the recorder's own steps",
+                             10.0 * std::log10(all / (steps_rms * steps_rms))));
+}
+
+}  // namespace
+
+std::optional<double> slope_end_hz(const Spectrum& s) {
+  if (s.blocks == 0 || s.quantity != base::Quantity::acceleration) return std::nullopt;
+  const double start = least_low_limit_hz(s);
+  const double top = 0.5 * s.rate_hz;
+  // Octave by octave while the density falls faster than a machine's does; medians, so that one tone is no slope.
+  double end = start;
+  while (4.0 * end < top && median_density(s, end, 2.0 * end) > slope_fall * median_density(s, 2.0 * end, 4.0 * end)) {
+    end *= 2.0;
+  }
+  if (end < 4.0 * start) return std::nullopt;
+  const Spectrum velocity = as_quantity(s, base::Quantity::velocity);
+  const double on_slope = band_rms(velocity, {start, end}).value;
+  const double all = band_rms(velocity, {start, top}).value;
+  if (on_slope * on_slope < slope_share * all * all) return std::nullopt;
+  return end;
+}
+
+std::vector<Finding> spectral_findings(const Spectrum& spectrum, const recording::Channel& channel,
+                                       std::optional<double> line_frequency_hz) {
+  std::vector<Finding> findings;
+  const bool is_usable = spectrum.blocks > 0 && spectrum.averaging == Averaging::mean && spectrum.density.size() > 32;
+  if (!is_usable || channel.role == recording::Role::tacho || !(mean_square_above_zero(spectrum) > 0.0))
+    return findings;
+  const auto add = [&](std::optional<Finding> found) {
+    if (found) findings.push_back(std::move(*found));
+  };
+  if (channel.role == recording::Role::vibration) {
+    add(low_frequency_slope(spectrum));
+    add(mains_hum(spectrum, line_frequency_hz));
+    add(aliasing(spectrum));
+  }
+  add(noise_of_steps(spectrum, channel));
+  return findings;
+}
+
+}  // namespace stillmass::spectral
