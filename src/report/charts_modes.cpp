@@ -46,7 +46,7 @@ std::optional<Chart> response_chart(const step::BumpResult& result, std::size_t 
   Chart chart;
   chart.title = "Frequency response at " + measured.channel;
   chart.caption = fmt::format("Acceleration over force, {} blow{}, lines {} Hz apart.", test.hits,
-                              test.hits == 1 ? "" : "s", base::rounded(test.line_hz));
+                              test.hits == 1 ? "" : "s", base::plain(test.line_hz, 3));
   chart.x = {"Frequency", "Hz"};
   chart.x.range = base::Interval{0.0, test.band_hz.hi};
   const base::Interval shown{0.0, test.band_hz.hi};

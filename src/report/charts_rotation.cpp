@@ -40,14 +40,14 @@ Chart order_chart(const step::RunupResult& result, const std::string& channel) {
       y.push_back(track.amplitude_rms(i) / unit.to_si);
       lag.push_back(track.phase_lag_deg(i));
     }
-    const std::string name = base::rounded(track.order) + "x";
+    const std::string name = base::plain(track.order) + "x";
     amplitude.series.push_back(series_of(name, x, y));
     phase.series.push_back(series_of(name, x, lag, Style::points));
   }
   for (const step::CriticalSpeedFound& each : result.critical_speeds) {
     if (each.channel != channel) continue;
     const Mark mark{Direction::vertical, each.speed.value * to_rpm,
-                    base::rounded(each.order) + "x: " + base::rounded(each.speed.value * to_rpm, 4) + " rpm",
+                    base::plain(each.order) + "x: " + base::rounded(each.speed.value * to_rpm, 4) + " rpm",
                     MarkKind::natural_frequency};
     amplitude.marks.push_back(mark);
     phase.marks.push_back(mark);
@@ -102,7 +102,7 @@ std::optional<Chart> waterfall_chart(const step::RunupResult& result, const std:
     Chart chart;
     chart.title = "Waterfall at " + channel;
     chart.caption =
-        "Spectra against time; lines " + base::rounded(waterfall.resolution_hz) + " Hz apart before reduction.";
+        "Spectra against time; lines " + base::plain(waterfall.resolution_hz, 3) + " Hz apart before reduction.";
     chart.x = {"Frequency", "Hz"};
     Panel panel;
     panel.y = {"Time", "s"};

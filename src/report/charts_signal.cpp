@@ -89,7 +89,7 @@ Chart spectrum_chart(const step::SpectrumResult& result, const step::ChannelSpec
   Chart chart;
   chart.title = "Spectrum at " + channel.channel.name;
   chart.caption = fmt::format("{} window, lines {} Hz apart, {} blocks.", spectral::name(spectrum.window),
-                              base::rounded(spectrum.line_hz), spectrum.blocks);
+                              base::plain(spectrum.line_hz, 3), spectrum.blocks);
   chart.x = {"Frequency", "Hz"};
   chart.x.range = base::Interval{0.0, top};
   Panel panel;

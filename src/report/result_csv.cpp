@@ -140,7 +140,7 @@ std::vector<NamedText> csv(const step::RunupResult& result) {
       text += row(track.time_s[i], track.speed_hz[i] * 60.0, track.amplitude_rms(i), track.phase_lag_deg(i),
                   track.noise[i]);
     }
-    files.push_back({file_name("order-" + base::rounded(track.order), track.channel), text});
+    files.push_back({file_name("order-" + base::plain(track.order), track.channel), text});
   }
   return files;
 }

@@ -248,7 +248,7 @@ Json runup(const step::RunupResult& result) {
   out["critical_speeds"] = Json::array();
   for (const step::CriticalSpeedFound& each : result.critical_speeds) {
     out["critical_speeds"].push_back({{"speed_rpm", estimate(each.speed, to_rpm, "rpm")},
-                                      {"peak_speed_rpm", number(each.peak_speed_hz * to_rpm)},
+                                      {"peak_speed_rpm", number(each.peak_speed_hz, to_rpm)},
                                       {"order", number(each.order)},
                                       {"channel", each.channel},
                                       {"amplification_factor", number(each.amplification_factor)},

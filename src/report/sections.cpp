@@ -162,10 +162,7 @@ std::vector<Block> finding_blocks(const std::vector<base::Finding>& findings) {
   for (const base::Finding& each : findings) {
     const base::CodeText& code = base::text(each.code);
     std::string text = each.text.empty() ? std::string(code.seen) : each.text;
-    if (each.from_s) {
-      text += each.to_s ? fmt::format(", from {:.2f} to {:.2f} s", *each.from_s, *each.to_s)
-                        : fmt::format(", at {:.2f} s", *each.from_s);
-    }
+    text += when(each);
     text += fmt::format(". Likely: {}. Next: {}.", code.likely_cause, code.next_step);
     for (const std::string& evidence : each.evidence) text += " " + evidence + ".";
     blocks.emplace_back(Caution{each.strength == base::Strength::weak ? Tone::neutral : Tone::caution,
@@ -225,14 +222,17 @@ std::vector<Block> spectrum_blocks(const step::SpectrumResult& result, bool dens
     Table table;
     table.caption = each.channel.name;
     if (each.overall) {
-      table.caption += fmt::format(": {} {} from {} to {} Hz", with_u(*each.overall, factor, unit.name),
-                                   base::name(result.detector), rounded(each.band_hz.lo), rounded(each.band_hz.hi));
+      table.caption +=
+          fmt::format(": {} {} from {} to {} Hz", with_u(*each.overall, factor, unit.name), base::name(result.detector),
+                      base::plain(each.band_hz.lo, 4), base::plain(each.band_hz.hi, 4));
     }
     table.header = {"frequency", "amplitude (" + std::string(base::name(result.detector)) + ")", "cause"};
     for (const step::SpectralPeak& peak : each.peaks) {
       table.rows.push_back(
           {with_u(peak.tone.frequency), with_u(peak.tone.amplitude_rms, factor, unit.name), peak.cause.text});
     }
+    table.notes.emplace_back(
+        "Uncertainties are those of this recording; the calibration of the sensor comes on top (usually 2 to 5 %).");
     if (each.severity) {
       table.notes.push_back(fmt::format("Zone {} of {}, {} (source of the limits: {}).",
                                         machine::name(each.severity->zone), each.severity->limits.standard,
@@ -290,8 +290,9 @@ std::vector<Block> runup_blocks(const step::RunupResult& result) {
     table.caption = "Critical speeds";
     table.header = {"critical speed", "highest at", "order", "channel", "amplification factor", "natural frequency"};
     for (const step::CriticalSpeedFound& each : result.critical_speeds) {
-      table.rows.push_back({with_u(each.speed, 60.0, "rpm"), fmt::format("{:.0f} rpm", each.peak_speed_hz * 60.0),
-                            rounded(each.order) + "x", each.channel,
+      table.rows.push_back({with_u(each.speed, 60.0, "rpm"),
+                            each.peak_speed_hz ? fmt::format("{:.0f} rpm", *each.peak_speed_hz * 60.0) : "",
+                            base::plain(each.order) + "x", each.channel,
                             each.amplification_factor ? rounded(*each.amplification_factor) : "",
                             each.mode ? with_u(each.mode->frequency) : ""});
     }
@@ -347,8 +348,8 @@ Section inputs_section(const Envelope& envelope) {
   table.header = {"file", "format", "rate", "duration", "channels", "SHA-256"};
   for (std::size_t i = 0; i < envelope.inputs.size(); ++i) {
     const recording::Recording& recording = envelope.inputs[i];
-    table.rows.push_back({recording.file.filename().string(), recording.format, rounded(recording.rate_hz, 6) + " Hz",
-                          rounded(recording.duration_s(), 4) + " s", std::to_string(recording.channels.size()),
+    table.rows.push_back({recording.file.filename().string(), recording.format, base::plain(recording.rate_hz) + " Hz",
+                          base::plain(recording.duration_s(), 4) + " s", std::to_string(recording.channels.size()),
                           i < envelope.hashes.size() ? envelope.hashes[i].substr(0, 16) : ""});
   }
   table.notes = {"The first 16 digits of the hash; the JSON result has all of them."};

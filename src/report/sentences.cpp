@@ -293,6 +293,15 @@ std::string sentence(const base::Finding& finding) {
                      code.likely_cause, code.next_step);
 }
 
+std::string when(const base::Finding& finding) {
+  const std::string& text = finding.text;
+  const bool names_times =
+      text.ends_with(" s") || text.find(" s ") != std::string::npos || text.find(" s,") != std::string::npos;
+  if (!finding.from_s || names_times) return "";
+  if (!finding.to_s || *finding.to_s - *finding.from_s < 0.01) return fmt::format(" at {:.2f} s", *finding.from_s);
+  return fmt::format(" from {:.2f} to {:.2f} s", *finding.from_s, *finding.to_s);
+}
+
 std::string sentence(const base::Refusal& refusal) {
   return refusal.measure.empty() ? refusal.seen : refusal.seen + "; " + refusal.measure;
 }
@@ -318,6 +327,13 @@ std::string sentence(const absorber::Specification& found, const std::string& po
 }
 
 std::vector<Line> lines(const survey::SurveyResult& result) {
+  if (result.survey.recordings.empty()) {
+    std::vector<Line> plan;
+    for (const std::string& each : sentences(survey::measuring_plan(result.survey))) {
+      plan.push_back({fmt::format("Step {}", plan.size() + 1), each, Tone::neutral});
+    }
+    return plan;
+  }
   std::vector<Line> all = {quality_line(result), severity_line(result), cause_line(result), mode_line(result),
                            remedy_line(result)};
   if (const auto after = after_line(result)) all.push_back(*after);
@@ -325,6 +341,7 @@ std::vector<Line> lines(const survey::SurveyResult& result) {
 }
 
 Line verdict(const survey::SurveyResult& result) {
+  if (result.survey.recordings.empty()) return {"", "No recordings yet: the measuring plan.", Tone::neutral};
   if (const auto after = after_line(result)) {
     const bool met = after->tone == Tone::good;
     return {"",
@@ -344,6 +361,35 @@ Line verdict(const survey::SurveyResult& result) {
 std::vector<std::string> summary(const survey::SurveyResult& result) {
   std::vector<std::string> out = {verdict(result).text};
   for (const Line& line : lines(result)) out.push_back(line.label + ": " + line.text);
+  return out;
+}
+
+std::vector<std::string> sentences(const survey::Plan& plan) {
+  std::vector<std::string> out = {
+      fmt::format("Record at {:.0f} Hz or more: {:.0f} Hz must be seen.", plan.rate_hz, plan.highest_hz),
+      fmt::format(
+          "Running at its duty: {:.0f} s on every point, at once or one after the other, with a tacho if there is one.",
+          plan.steady_s),
+      "A run-up or coast-down with a tacho: start recording before the switch, stop after standstill."};
+  if (plan.hammer_s) {
+    out.push_back(fmt::format(
+        "Stopped and locked out: {} blows with a force hammer where the absorber could sit, {:.0f} s apart, response "
+        "at the same point and direction. The tip must reach {:.0f} Hz: contact of {:.0f} ms or shorter.",
+        plan.hammer_blows, std::ceil(*plan.hammer_s), *plan.hammer_reach_hz, *plan.contact_s * 1e3));
+  }
+  if (plan.trial_mass_kg) {
+    out.push_back(fmt::format("Without a force sensor: the same blows again with {} kg bolted on there, weighed.",
+                              rounded(*plan.trial_mass_kg, 2)));
+  }
+  for (const survey::Plan::Bound& bound : plan.bounds) {
+    out.push_back(fmt::format(
+        "At {} the mass ratio is at least {}: the new natural frequencies lie at least {:.0f} % away, and a damped "
+        "absorber leaves at most {} times the static deflection.",
+        bound.point, rounded(bound.least_mass_ratio, 2), bound.least_split * 100, rounded(bound.highest_peak)));
+  }
+  std::string unknown;
+  for (const std::string& key : plan.unknown) unknown += (unknown.empty() ? "" : ", ") + key;
+  if (!unknown.empty()) out.push_back("These keys of the survey file would sharpen the plan: " + unknown + ".");
   return out;
 }
 

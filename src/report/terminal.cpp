@@ -25,15 +25,9 @@ std::string in_trade_unit(std::optional<double> si, base::Quantity quantity, dou
 std::string heading(const recording::Recording& recording) {
   return fmt::format("{}\n  {}; {} channel{}, {} Hz, {} s{}\n", base::printable(recording.file.string()),
                      base::printable(recording.format), recording.channels.size(),
-                     recording.channels.size() == 1 ? "" : "s", rounded(recording.rate_hz, 6),
-                     rounded(recording.duration_s(), 4),
+                     recording.channels.size() == 1 ? "" : "s", base::plain(recording.rate_hz),
+                     base::plain(recording.duration_s(), 4),
                      recording.segments.size() > 1 ? fmt::format(" in {} parts", recording.segments.size()) : "");
-}
-
-std::string when(const base::Finding& finding) {
-  if (!finding.from_s) return "";
-  if (!finding.to_s || *finding.to_s - *finding.from_s < 0.01) return fmt::format(" at {:.2f} s", *finding.from_s);
-  return fmt::format(" from {:.2f} to {:.2f} s", *finding.from_s, *finding.to_s);
 }
 
 std::string bullet(const std::string& text) { return "  - " + wrapped(text, screen - 4, 4) + "\n"; }
@@ -83,7 +77,7 @@ std::string text(const step::SpectrumResult& result, bool density) {
   if (!result.channels.empty()) {
     const spectral::Spectrum& first = result.channels.front().measured;
     out += fmt::format("  {} window, lines {} Hz apart, {} blocks\n", spectral::name(first.window),
-                       rounded(first.line_hz), first.blocks);
+                       base::plain(first.line_hz, 3), first.blocks);
   }
   if (result.speed) out += fmt::format("  running speed {}\n", with_u(*result.speed, 60.0, "rpm"));
   std::vector<base::Finding> all = result.findings;
@@ -93,7 +87,7 @@ std::string text(const step::SpectrumResult& result, bool density) {
     out += "\n" + base::printable(each.channel.name);
     if (each.overall) {
       out += fmt::format(": {} {} from {} to {} Hz", with_u(*each.overall, factor, unit.name),
-                         base::name(result.detector), rounded(each.band_hz.lo), rounded(each.band_hz.hi));
+                         base::name(result.detector), base::plain(each.band_hz.lo, 4), base::plain(each.band_hz.hi, 4));
     }
     out += "\n";
     if (each.severity) {
@@ -123,6 +117,9 @@ std::string text(const step::SpectrumResult& result, bool density) {
     }
     all.insert(all.end(), each.findings.begin(), each.findings.end());
   }
+  out +=
+      "\n+- is the standard uncertainty from this recording; the sensor's calibration comes on top (usually 2 to 5 "
+      "%).\n";
   return out + (all.empty() ? "" : "\n" + finding_lines(all));
 }
 
@@ -158,7 +155,7 @@ std::string text(const step::RunupResult& result) {
     for (std::size_t i = 0; i < track.value.size(); ++i) {
       if (track.amplitude_rms(i) > track.amplitude_rms(highest)) highest = i;
     }
-    rows.push_back({base::printable(track.channel), rounded(track.order) + "x",
+    rows.push_back({base::printable(track.channel), base::plain(track.order) + "x",
                     in_trade_unit(track.amplitude_rms(highest), track.quantity),
                     fmt::format("{:.0f} rpm", track.speed_hz[highest] * 60.0),
                     fmt::format("{:.0f} deg", track.phase_lag_deg(highest))});
@@ -169,8 +166,9 @@ std::string text(const step::RunupResult& result) {
   } else {
     std::vector<std::vector<std::string>> critical;
     for (const step::CriticalSpeedFound& each : result.critical_speeds) {
-      critical.push_back({with_u(each.speed, 60.0, "rpm"), fmt::format("{:.0f} rpm", each.peak_speed_hz * 60.0),
-                          rounded(each.order) + "x", base::printable(each.channel),
+      critical.push_back({with_u(each.speed, 60.0, "rpm"),
+                          each.peak_speed_hz ? fmt::format("{:.0f} rpm", *each.peak_speed_hz * 60.0) : "-",
+                          base::plain(each.order) + "x", base::printable(each.channel),
                           each.amplification_factor ? rounded(*each.amplification_factor) : "-",
                           each.mode ? with_u(each.mode->frequency) : "-"});
     }
@@ -245,12 +243,16 @@ std::string text(const survey::SurveyResult& result) {
     for (const base::Refusal& each : result.refusals) out += bullet(sentence(each));
   }
   std::vector<base::Finding> assumed;
-  for (const base::Finding& each : result.findings) {
-    if (each.code == base::Code::stopped_shift_assumed || each.code == base::Code::methods_disagree ||
-        each.code == base::Code::outside_model) {
-      assumed.push_back(each);
+  const auto pick = [&](const std::vector<base::Finding>& findings) {
+    for (const base::Finding& each : findings) {
+      if (each.code == base::Code::stopped_shift_assumed || each.code == base::Code::calibration_assumed ||
+          each.code == base::Code::methods_disagree || each.code == base::Code::outside_model) {
+        assumed.push_back(each);
+      }
     }
-  }
+  };
+  pick(result.findings);
+  for (const step::BumpResult& bump : result.bumps) pick(bump.findings);
   if (!assumed.empty()) out += "\nAssumed:\n" + finding_lines(assumed);
   out += "\nCaution:\n";
   for (const std::string& each : cautions(result)) out += bullet(each);

@@ -9,6 +9,7 @@
 #include "stillmass/absorber/specification.hpp"
 #include "stillmass/base/estimate.hpp"
 #include "stillmass/report/page.hpp"
+#include "stillmass/survey/plan.hpp"
 #include "stillmass/survey/survey.hpp"
 
 namespace stillmass::report {
@@ -25,6 +26,8 @@ std::string sentence(const absorber::Reason& reason);
 std::string sentence(const absorber::Remedy& remedy);
 /// Seen, likely cause, what to do: one line.
 std::string sentence(const base::Finding& finding);
+/// " at 3.20 s", " from 3.20 to 4.50 s"; empty where there is no time or the finding's text names it.
+std::string when(const base::Finding& finding);
 std::string sentence(const base::Refusal& refusal);
 /// What an absorber's specification says, in one sentence.
 std::string sentence(const absorber::Specification& specification, const std::string& point);
@@ -35,6 +38,9 @@ std::vector<Line> lines(const survey::SurveyResult& result);
 Line verdict(const survey::SurveyResult& result);
 /// The lines as plain text, the verdict first.
 std::vector<std::string> summary(const survey::SurveyResult& result);
+
+/// The measuring plan of a survey without recordings, one step a sentence.
+std::vector<std::string> sentences(const survey::Plan& plan);
 
 /// Cautions for the work that a result asks for; they always defer to the site's rules and licensed practice.
 std::vector<std::string> cautions(const survey::SurveyResult& result);
