@@ -62,6 +62,8 @@ constexpr auto codes = std::to_array<CodeText>({
      "cover shiny parts, use one mark"},
     {Code::unit_assumed, "unit-assumed", "nothing says the channel's unit", "the file holds plain numbers",
      "give it: --channel INDEX=NAME:UNIT*SCALE or in the survey file"},
+    {Code::calibration_assumed, "calibration-assumed", "nothing says how well the sensors are calibrated",
+     "no calibration recording", "record a handheld calibrator, or a hung known mass struck by the hammer"},
     {Code::stopped_shift_assumed, "stopped-shift-assumed", "the mode was measured on the stopped machine",
      "bearings, liquid and temperature move it when running",
      "a running measurement (run-up, or a trial absorber) replaces the assumption"},

@@ -55,4 +55,12 @@ std::string rounded(double value, int digits) {
   return fmt::format("{:.{}f}", value, decimals);
 }
 
+std::string plain(double value, int digits) {
+  std::string text = rounded(value, digits);
+  if (text.find('.') == std::string::npos || text.find('e') != std::string::npos) return text;
+  text.erase(text.find_last_not_of('0') + 1);
+  if (text.back() == '.') text.pop_back();
+  return text;
+}
+
 }  // namespace stillmass::base

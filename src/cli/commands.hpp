@@ -13,5 +13,6 @@ int run_bump(Session& session);
 int run_absorber(Session& session);
 int run_survey(Session& session);
 int run_simulate(Session& session);
+int run_manual(Session& session);
 
 }  // namespace stillmass::cli

@@ -19,6 +19,7 @@ std::string overview() {
       "  stillmass COMMAND FILE... [OPTIONS]\n\nCommands:\n",
       base::version());
   for (const Command& command : all_commands()) {
+    if (command.help.empty()) continue;
     out += fmt::format("  {:<10}{:<14}{}\n", command.name, command.files,
                        report::wrapped(std::string(command.help), screen - 26, 26));
   }

@@ -55,7 +55,8 @@ int run(cli::Session& session) {
   if (command == "bump") return cli::run_bump(session);
   if (command == "absorber") return cli::run_absorber(session);
   if (command == "survey") return cli::run_survey(session);
-  return cli::run_simulate(session);
+  if (command == "simulate") return cli::run_simulate(session);
+  return cli::run_manual(session);
 }
 
 int guarded(std::span<const char* const> words) {

@@ -95,6 +95,7 @@ constexpr auto commands = std::to_array<Command>({
      "licensed engineer are part of it."},
     {"survey", "SURVEY.toml", 1, 1, "the main job: all of the above for one visit, and the report", ""},
     {"simulate", "SKID.toml", 1, 1, "recordings of a virtual skid", ""},
+    {"manual", "page|completion|keys", 1, 1, "", ""},  // hidden: for packagers and README
 });
 
 bool all_numbers(std::string_view text) {

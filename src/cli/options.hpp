@@ -44,7 +44,7 @@ struct Command {
   std::string_view files;  ///< what follows it: "RECORDING..."; empty: nothing
   std::size_t least_files = 0;
   std::size_t most_files = 0;
-  std::string_view help;
+  std::string_view help;     ///< empty: a hidden command
   std::string_view caution;  ///< printed below the help; may be empty
 };
 

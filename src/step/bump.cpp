@@ -6,6 +6,7 @@
 
 #include "stillmass/base/error.hpp"
 #include "stillmass/base/number.hpp"
+#include "stillmass/modal/headline.hpp"
 #include "stillmass/modal/modal_mass.hpp"
 
 namespace stillmass::step {
@@ -15,6 +16,12 @@ namespace {
 constexpr double least_fall = 0.6;
 // Two ways to a modal mass that differ by more than this and by more than twice their joint uncertainty disagree.
 constexpr double mass_disagreement = 0.15;
+// Standard uncertainty of a sensor's sensitivity where no calibration is stated, relative (common practice).
+constexpr double assumed_calibration_u = 0.02;
+// What no repetition shows: the recorder's clock, and the phase between two sensors' chains, which moves a natural
+// frequency by the damping ratio times that angle (common practice: 50 parts in a million, one degree).
+constexpr double clock_u = 5e-5;
+constexpr double phase_u_rad = 0.0175;
 
 struct Found {
   std::vector<modal::HitBlocks> blocks;
@@ -62,6 +69,31 @@ std::string strongest_response(const Found& found, const std::string& wanted) {
                                                       : found.first->responses.front().point;
 }
 
+// Where nobody stated a calibration, the common one stands in, and that is said.
+void assume_calibration(modal::ImpactTestOptions& options, std::vector<base::Finding>& findings) {
+  bool assumed = !options.force_factor_u;
+  options.force_factor_u = options.force_factor_u.value_or(assumed_calibration_u);
+  for (modal::ResponseName& response : options.responses) {
+    assumed = assumed || !response.factor_u;
+    response.factor_u = response.factor_u.value_or(assumed_calibration_u);
+  }
+  if (!assumed) return;
+  findings.push_back({base::Code::calibration_assumed,
+                      "no calibration is stated for hammer and sensors: " + base::plain(100 * assumed_calibration_u) +
+                          " % is taken for each; the modal mass carries it",
+                      "",
+                      {},
+                      {},
+                      base::Strength::fair});
+}
+
+void add_instrument_limits(std::vector<modal::Mode>& modes) {
+  for (modal::Mode& mode : modes) {
+    const double relative = std::hypot(clock_u, mode.damping_ratio.value * phase_u_rad);
+    mode.frequency = modal::with_added_u(mode.frequency, relative * mode.frequency.value);
+  }
+}
+
 // Modes with frequency and damping of one set-up; what was measured goes into the result on the way.
 std::optional<base::Refusal> find_modes(const Found& found, const BumpRequest& request, BumpResult& result,
                                         const base::Context& context) {
@@ -71,6 +103,7 @@ std::optional<base::Refusal> find_modes(const Found& found, const BumpRequest& r
     options.band_hz = request.band_hz;
     options.max_frequency_hz = request.max_frequency_hz;
     options.state = request.state;
+    assume_calibration(options, result.findings);
     auto answer = modal::impact_test(found.blocks, options, context);
     if (!answer) return answer.refusal();
     result.impact = std::move(*answer);
@@ -140,6 +173,7 @@ BumpResult bump(const std::vector<recording::Reader*>& readers, const BumpReques
   }
   cut_to_shortest(found.blocks);
   result.refusal = find_modes(found, request, result, context);
+  add_instrument_limits(result.modes);
   if (result.refusal || request.added_masses.empty()) return result;
 
   std::vector<std::vector<modal::AddedMass>> tests(result.modes.size());

@@ -23,8 +23,9 @@ Finding identical_channels(const std::string& a, const std::string& b) {
   return {Code::identical_channels, "channels '" + a + "' and '" + b + "' carry the same samples", b};
 }
 
-Verdict worst(Verdict verdict, const std::vector<Finding>& findings) {
-  for (const Finding& finding : findings) verdict = std::max(verdict, weight(finding));
+Verdict worst(const std::vector<Finding>& findings, recording::Role role) {
+  Verdict verdict = Verdict::good;
+  for (const Finding& finding : findings) verdict = std::max(verdict, weight(finding, role));
   return verdict;
 }
 
@@ -42,7 +43,7 @@ std::string_view name(Verdict verdict) {
   return "";
 }
 
-Verdict weight(const Finding& finding) {
+Verdict weight(const Finding& finding, recording::Role role) {
   switch (finding.code) {
     case Code::no_signal:
     case Code::flat_line:
@@ -51,7 +52,8 @@ Verdict weight(const Finding& finding) {
     case Code::clipped:
     case Code::overload:
     case Code::dropout:
-      return finding.strength == base::Strength::strong ? Verdict::unusable : Verdict::doubtful;
+      return finding.strength == base::Strength::strong && role != recording::Role::force ? Verdict::unusable
+                                                                                          : Verdict::doubtful;
     default:
       return Verdict::doubtful;
   }
@@ -90,7 +92,7 @@ CheckResult check(const recording::Reader& reader, const CheckRequest& request, 
         each.findings.push_back(identical_channels(qualities[other].channel, qualities[c].channel));
       }
     }
-    each.verdict = worst(Verdict::good, each.findings);
+    each.verdict = worst(each.findings, each.channel.role);
     result.channels.push_back(std::move(each));
   }
   for (const Finding& finding : result.recording.findings) {
@@ -101,10 +103,10 @@ CheckResult check(const recording::Reader& reader, const CheckRequest& request, 
       result.findings.push_back(finding);
     } else {
       owner->findings.push_back(finding);
-      owner->verdict = std::max(owner->verdict, weight(finding));
+      owner->verdict = std::max(owner->verdict, weight(finding, owner->channel.role));
     }
   }
-  result.verdict = worst(Verdict::good, result.findings);
+  result.verdict = worst(result.findings, recording::Role::vibration);
   for (ChannelCheck& each : result.channels) {
     std::stable_sort(each.findings.begin(), each.findings.end(),
                      [](const Finding& a, const Finding& b) { return weight(a) > weight(b); });

@@ -20,8 +20,15 @@ using base::Quantity;
 // (common practice).
 constexpr double prominence = 1.6;
 constexpr double above_noise = 4.0;
-// A known mode is the one that a peak shows if their frequencies are this close (a sweep moves the peak).
+// Below this relative change of speed per second the machine runs steadily: a peak there is no critical speed.
+constexpr double least_sweep = 0.002;
+// A known mode is the one that a peak shows if their frequencies are this close; a sweep of S Hz/s moves the peak on by
+// up to 0.86 sqrt S (CHECKS R4), a little more where the track's blocks are long.
 constexpr double same_mode = 0.06;
+constexpr double lag_of_sweep = 1.0;
+// A passage as such is about sqrt S wide. A peak less than three times as wide says nothing of the damping: at eta =
+// 1/9 the loss is still below 1 % (Cronin 1968).
+constexpr double sweep_widths = 3.0;
 
 std::size_t position_of(const recording::Recording& recording, const std::string& name) {
   for (std::size_t c = 0; c < recording.channels.size(); ++c) {
@@ -78,12 +85,16 @@ std::optional<double> flank(const Curve& curve, std::size_t peak, int step, doub
   return {};
 }
 
-const modal::Mode* known_mode(const std::vector<modal::Mode>& modes, double frequency_hz) {
+// `rate_hz_per_s`: of the order's frequency, signed: the peak comes late, so the mode lies behind it.
+const modal::Mode* known_mode(const std::vector<modal::Mode>& modes, double frequency_hz, double rate_hz_per_s) {
+  const double lag = lag_of_sweep * std::sqrt(std::abs(rate_hz_per_s));
+  base::Interval near{frequency_hz * (1.0 - same_mode), frequency_hz * (1.0 + same_mode)};
+  (rate_hz_per_s > 0.0 ? near.lo : near.hi) += rate_hz_per_s > 0.0 ? -lag : lag;
   const modal::Mode* best = nullptr;
   for (const modal::Mode& mode : modes) {
-    const double distance = std::abs(mode.frequency.value / frequency_hz - 1.0);
-    if (distance > same_mode) continue;
-    if (best == nullptr || distance < std::abs(best->frequency.value / frequency_hz - 1.0)) best = &mode;
+    if (!near.contains(mode.frequency.value)) continue;
+    const auto distance = [&](const modal::Mode& each) { return std::abs(each.frequency.value - near.middle()); };
+    if (best == nullptr || distance(mode) < distance(*best)) best = &mode;
   }
   return best;
 }
@@ -99,40 +110,57 @@ CriticalSpeedFound judged(const rotation::OrderTrack& track, const Curve& curve,
   const double rate = track.order * std::abs(curve.sweep[i]);
   const auto lower = flank(curve, i, -1, curve.amplitude[i] / std::sqrt(2.0));
   const auto upper = flank(curve, i, +1, curve.amplitude[i] / std::sqrt(2.0));
-  std::optional<double> damping;
-  if (lower && upper && *upper > *lower) damping = 0.5 * (*upper - *lower) / curve.speed[i];
+  std::optional<double> width;  // half-power, of the order's frequency
+  if (lower && upper && *upper > *lower) width = track.order * (*upper - *lower);
 
-  const modal::Mode* known = known_mode(request.modes, frequency);
+  const modal::Mode* known = known_mode(request.modes, frequency, track.order * curve.sweep[i]);
   if (known != nullptr) {
     found.mode = *known;
     found.speed = {known->frequency.value / track.order, {}, known->frequency.dof, Quantity::speed};
     if (known->frequency.u) found.speed.u = *known->frequency.u / track.order;
-    damping = known->damping_ratio.value;
+    found.amplification_factor = 0.5 / known->damping_ratio.value;
   }
-  const double limit = damping ? modal::sweep_rate_limit(frequency, *damping) : 0.0;
-  if (damping && rate > limit) {
-    if (known == nullptr) {
-      // The highest response lags the resonance by up to two bandwidths of the apparent peak (CHECKS R6 for eta <= 10).
-      found.speed.u = 2.0 * *damping * curve.speed[i];
-    }
+  const double limit = known != nullptr ? modal::sweep_rate_limit(known->frequency.value, known->damping_ratio.value)
+                       : width          ? std::pow(*width / sweep_widths, 2)
+                                        : 0.0;
+  if (rate > limit) {
+    // Unknown mode: it may lie behind the peak by the lag of the sweep.
+    if (known == nullptr) found.speed.u = lag_of_sweep * std::sqrt(rate) / track.order;
     findings.push_back({base::Code::sweep_too_fast,
-                        "order " + base::rounded(track.order) + " passed " + base::rounded(frequency) + " Hz at " +
-                            base::rounded(rate, 2) + " Hz/s; " + base::rounded(limit, 2) + " Hz/s would do",
+                        "order " + base::plain(track.order) + " passed " + base::rounded(frequency) + " Hz at " +
+                            base::rounded(rate, 2) + " Hz/s" +
+                            (limit > 0.0 ? "; at most " + base::rounded(limit, 2) + " Hz/s would do" : ""),
                         track.channel});
     return found;
   }
-  if (!lower || !upper) return found;
+  if (known != nullptr || !lower || !upper) return found;
   found.amplification_factor = modal::amplification_factor(curve.speed[i], *lower, *upper);
-  if (known == nullptr) {
-    modal::Mode mode;
-    mode.frequency = {frequency, {}, {}, Quantity::frequency};
-    mode.damping_ratio = {*damping, {}, {}, Quantity::ratio};
-    mode.point = track.channel;
-    mode.state = "running";
-    mode.methods.push_back({"half-power bandwidth of the order track", mode.frequency, mode.damping_ratio});
-    found.mode = mode;
-  }
+  modal::Mode mode;
+  mode.frequency = {frequency, {}, {}, Quantity::frequency};
+  mode.damping_ratio = {0.5 * *width / frequency, {}, {}, Quantity::ratio};
+  mode.point = track.channel;
+  mode.state = "running";
+  mode.methods.push_back({"half-power bandwidth of the order track", mode.frequency, mode.damping_ratio});
+  found.mode = mode;
   return found;
+}
+
+// Known modes that an order meets within the speeds of the run, where no peak showed them.
+void add_known(const RunupRequest& request, base::Interval speeds, std::vector<CriticalSpeedFound>& found) {
+  for (const modal::CriticalSpeed& each : modal::critical_speeds(request.modes, request.orders, speeds.hi)) {
+    const modal::Mode& mode = request.modes[each.mode];
+    const bool shown = std::any_of(found.begin(), found.end(), [&](const CriticalSpeedFound& other) {
+      return other.order == each.order && other.mode && other.mode->frequency.value == mode.frequency.value;
+    });
+    if (shown || each.speed.value < speeds.lo) continue;
+    CriticalSpeedFound known;
+    known.speed = each.speed;
+    known.order = each.order;
+    known.channel = mode.point;
+    known.amplification_factor = each.amplification_factor;
+    known.mode = mode;
+    found.push_back(std::move(known));
+  }
 }
 
 }  // namespace
@@ -167,13 +195,15 @@ RunupResult runup(const recording::Reader& reader, const RunupRequest& request, 
     const Curve curve = against_speed(track);
     for (std::size_t i = 1; i + 1 < curve.speed.size(); ++i) {
       const bool highest = curve.amplitude[i] >= curve.amplitude[i - 1] && curve.amplitude[i] > curve.amplitude[i + 1];
-      if (highest && stands_out(curve, i)) {
+      const bool sweeping = std::abs(curve.sweep[i]) > least_sweep * curve.speed[i];
+      if (highest && sweeping && stands_out(curve, i)) {
         result.critical_speeds.push_back(judged(track, curve, i, request, result.findings));
       }
     }
   }
+  add_known(request, result.runup->speed.speed_range(), result.critical_speeds);
   std::stable_sort(result.critical_speeds.begin(), result.critical_speeds.end(),
-                   [](const auto& a, const auto& b) { return a.peak_speed_hz < b.peak_speed_hz; });
+                   [](const auto& a, const auto& b) { return a.speed.value < b.speed.value; });
   return result;
 }
 

@@ -77,6 +77,9 @@ TEST_CASE("numbers are written so that they read back") {
   CHECK(rounded(0.00912, 2) == "0.0091");
   CHECK(rounded(0.0) == "0");
   CHECK(rounded(9.996, 3) == "10.00");
+  CHECK(plain(2048.0) == "2048");
+  CHECK(plain(0.50) == "0.5");
+  CHECK(plain(100.0, 2) == "100");
 }
 
 TEST_CASE("texts of any origin become printable UTF-8") {

@@ -41,6 +41,7 @@ enum class Code {
   extra_pulses,
   // of the chain from test to specification
   unit_assumed,
+  calibration_assumed,
   stopped_shift_assumed,
   methods_disagree,
   outside_model,

@@ -17,5 +17,7 @@ std::string shortest(double value);
 
 /// For people: `digits` significant digits, no exponent for ordinary sizes ("0.0123", "24.6", "1478").
 std::string rounded(double value, int digits = 3);
+/// The same without zeros at the end behind the point: "2048", "0.5", for numbers that are set, not measured.
+std::string plain(double value, int digits = 6);
 
 }  // namespace stillmass::base

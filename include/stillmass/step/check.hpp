@@ -42,8 +42,9 @@ struct CheckResult {
   Verdict verdict = Verdict::good;          ///< the worst of the channels and of the recording
 };
 
-/// What a finding does to the verdict of its channel (common practice).
-Verdict weight(const base::Finding& finding);
+/// What a finding does to the verdict of its channel (common practice). A force channel that is cut off at one blow is
+/// doubtful, not unusable: the blow is left out, the others count.
+Verdict weight(const base::Finding& finding, recording::Role role = recording::Role::vibration);
 
 /// Everything in one pass over the recording. Throws what the reader throws, `Stopped`, and `Error` (usage) for an
 /// empty part.

@@ -23,14 +23,16 @@ struct RunupRequest {
   std::vector<modal::Mode> modes;  ///< known natural frequencies (from a hammer test)
 };
 
-/// A speed at which an order shows a peak. Speeds in turns per second.
+/// A speed at which an order shows a peak, or at which it meets a known mode. Speeds in turns per second.
 struct CriticalSpeedFound {
-  base::Estimate speed;        ///< natural frequency over order; of a fast sweep with the lag in its u
-  double peak_speed_hz = 0.0;  ///< where the response was highest
+  base::Estimate speed;  ///< natural frequency over order; of a fast sweep with the lag in its u
+  std::optional<double>
+      peak_speed_hz;  ///< where the response was highest; absent: a known mode without a peak of its own
   double order = 1.0;
   std::string channel;
-  std::optional<double> amplification_factor;  ///< absent: the flanks are not in the data, or the sweep was too fast
-  std::optional<modal::Mode> mode;             ///< absent as above, or the known mode that it meets
+  std::optional<double> amplification_factor;  ///< of a known mode 1 / (2 zeta); absent: the flanks are not in the
+                                               ///< data, or the sweep was too fast to read it
+  std::optional<modal::Mode> mode;  ///< absent as above, or the known mode that it meets
 };
 
 struct RunupResult {
