@@ -229,9 +229,8 @@ std::optional<Line> after_line(const survey::SurveyResult& result) {
                                  : fmt::format("; {} is still above the target with {}", worst->point,
                                                velocity_text(worst->after.value));
   }
-  if (shown.achieved.deviation && std::abs(*shown.achieved.deviation) > 2.0) {
-    text += "; it differs from the prediction by more than its uncertainty: check the tuning";
-    tone = Tone::caution;
+  if (shown.achieved.deviation && *shown.achieved.deviation > 2.0) {
+    text += "; more than predicted, so the tuning or the clamp can be improved";
   }
   return Line{"After fitting", text, tone};
 }
@@ -343,11 +342,11 @@ std::vector<Line> lines(const survey::SurveyResult& result) {
 Line verdict(const survey::SurveyResult& result) {
   if (result.survey.recordings.empty()) return {"", "No recordings yet: the measuring plan.", Tone::neutral};
   if (const auto after = after_line(result)) {
-    const bool met = after->tone == Tone::good;
-    return {"",
-            met ? "The fitted absorber does its work: the target is met."
-                : "The absorber is fitted; the target is not met everywhere or the prediction does not hold.",
-            after->tone};
+    const std::string text = after->tone == Tone::good ? "The fitted absorber does its work: the target is met."
+                             : after->tone == Tone::caution
+                                 ? "The absorber is fitted; the target is not met everywhere."
+                                 : "The absorber is fitted; no target was stated.";
+    return {"", text, after->tone};
   }
   const Line remedy = remedy_line(result);
   const Line severity = severity_line(result);
