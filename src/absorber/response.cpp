@@ -54,6 +54,7 @@ double peak_between(const Response& response, double lo, double hi) {
 
 std::vector<double> spread(base::Interval range, int count) {
   std::vector<double> points;
+  points.reserve(static_cast<std::size_t>(count));
   const double step = std::log(range.hi / range.lo) / (count - 1);
   for (int i = 0; i < count; ++i) points.push_back(range.lo * std::exp(step * i));
   points.back() = range.hi;
@@ -171,6 +172,7 @@ double greatest(const Response& response, base::Interval range) {
   }
   std::sort(points.begin(), points.end());
   std::vector<double> values;
+  values.reserve(points.size());
   for (const double s : points) values.push_back(response.value(s));
   for (std::size_t i = 1; i + 1 < points.size(); ++i) {
     if (values[i] < values[i - 1] || values[i] < values[i + 1] || values[i] < 0.8 * best) continue;

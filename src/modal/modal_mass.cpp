@@ -1,10 +1,12 @@
 #include "stillmass/modal/modal_mass.hpp"
 
-#include <algorithm>
 #include <cmath>
+#include <optional>
 
 #include "stillmass/base/error.hpp"
 #include "stillmass/base/number.hpp"
+#include "stillmass/numeric/decomposition.hpp"
+#include "stillmass/numeric/statistics.hpp"
 
 namespace stillmass::modal {
 namespace {
@@ -25,6 +27,52 @@ Single single(double f0, const AddedMass& test) {
   const double mass = test.mass.value / shift;
   const double slope = -2.0 * mass / shift * square(f0 / f1);
   return {mass, slope / f0, -slope / f1, 1.0 / shift};
+}
+
+base::Estimate plain_mean(std::span<const Single> singles) {
+  numeric::RunningMoments moments;
+  for (const Single& one : singles) moments.add(one.mass);
+  base::Estimate result{moments.mean(), {}, {}, base::Quantity::mass};
+  if (const auto deviation = moments.standard_deviation()) {
+    result.u = *deviation / std::sqrt(static_cast<double>(singles.size()));
+    result.dof = static_cast<double>(singles.size()) - 1.0;
+  }
+  return result;
+}
+
+/// The mean of least variance; the frequency without a mass is common to all tests. A scatter beyond what the
+/// uncertainties allow widens it. Nothing where an uncertainty is 0.
+std::optional<base::Estimate> generalised_mean(const base::Estimate& frequency_without,
+                                               std::span<const AddedMass> tests, std::span<const Single> singles) {
+  const std::size_t n = singles.size();
+  numeric::Matrix covariance(n, n);
+  for (std::size_t i = 0; i < n; ++i) {
+    for (std::size_t j = 0; j < n; ++j) {
+      covariance(i, j) = singles[i].by_without * singles[j].by_without * square(*frequency_without.u);
+    }
+    covariance(i, i) += square(singles[i].by_with * *tests[i].frequency.u) +
+                        square(singles[i].by_added * tests[i].mass.u.value_or(0.0));
+  }
+  const auto inverse = numeric::inverse_positive_definite(covariance);
+  if (!inverse) return std::nullopt;
+  double weight = 0.0;
+  double sum = 0.0;
+  double squares = 0.0;
+  for (std::size_t i = 0; i < n; ++i) {
+    for (std::size_t j = 0; j < n; ++j) {
+      weight += (*inverse)(i, j);
+      sum += (*inverse)(i, j) * singles[j].mass;
+      squares += (*inverse)(i, j) * singles[i].mass * singles[j].mass;
+    }
+  }
+  base::Estimate result{sum / weight, std::sqrt(1.0 / weight), {}, base::Quantity::mass};
+  const double dof = static_cast<double>(n) - 1.0;
+  const double chi_square = squares - sum * sum / weight;
+  if (dof > 0.0 && chi_square > dof) {
+    *result.u *= std::sqrt(chi_square / dof);
+    result.dof = dof;
+  }
+  return result;
 }
 
 }  // namespace
@@ -60,40 +108,10 @@ base::Answer<base::Estimate> mass_from_added_mass(const base::Estimate& frequenc
                          "bolt on a heavier mass at the same point, until the frequency falls by at least 2 %"};
   }
 
-  // What is independent in each test weighs it; f0 is common to all.
-  double weight_sum = 0.0;
-  double mean = 0.0;
-  double common = 0.0;
-  std::vector<double> masses;
-  std::vector<double> weights;
-  for (const AddedMass& test : tests) {
-    const Single one = single(f0, test);
-    const double own =
-        std::hypot(one.by_with * test.frequency.u.value_or(0.0), one.by_added * test.mass.u.value_or(0.0));
-    const double weight = known && own > 0.0 ? 1.0 / square(own) : 1.0;
-    weight_sum += weight;
-    mean += weight * one.mass;
-    common += weight * one.by_without * frequency_without.u.value_or(0.0);
-    masses.push_back(one.mass);
-    weights.push_back(weight);
-  }
-  mean /= weight_sum;
-  common /= weight_sum;
-  base::Estimate result{mean, {}, {}, base::Quantity::mass};
-
-  double scatter = 0.0;
-  for (std::size_t i = 0; i < masses.size(); ++i) scatter += weights[i] * square(masses[i] - mean);
-  const double n = static_cast<double>(masses.size());
-  const double scatter_square = n > 1.0 ? scatter / (weight_sum * (n - 1.0)) : 0.0;
-  if (known) {
-    const double own_square = 1.0 / weight_sum;
-    result.u = std::sqrt(square(common) + std::max(own_square, scatter_square));
-    if (scatter_square > own_square) result.dof = n - 1.0;
-  } else if (n > 1.0) {
-    result.u = std::sqrt(scatter_square);
-    result.dof = n - 1.0;
-  }
-  return result;
+  std::vector<Single> singles;
+  for (const AddedMass& test : tests) singles.push_back(single(f0, test));
+  const auto combined = known ? generalised_mean(frequency_without, tests, singles) : std::nullopt;
+  return combined ? *combined : plain_mean(singles);
 }
 
 }  // namespace stillmass::modal

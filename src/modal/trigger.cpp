@@ -13,7 +13,7 @@ namespace stillmass::modal {
 namespace {
 
 constexpr double hop_s = 0.02;
-constexpr double of_highest_force = 0.05;
+constexpr double of_highest_force = 0.02;
 constexpr double of_highest_response = 0.10;
 constexpr double over_noise = 8.0;
 constexpr double over_level_before = 2.0;

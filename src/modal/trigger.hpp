@@ -29,7 +29,7 @@ struct Levels {
 std::vector<Levels> measure_levels(recording::Reader& reader, recording::FrameRange range,
                                    std::span<const std::size_t> channels, const base::Context& context);
 
-/// First frames of the pulses of a force: above 5 % of the highest and 8 times the noise, on the side of the highest.
+/// First frames of the pulses of a force: above 2 % of the highest and 8 times the noise, on the side of the highest.
 std::vector<std::int64_t> force_pulses(recording::Reader& reader, std::size_t channel, const Levels& levels);
 /// First frames of the rises of a response: above twice its level in the last 0.5 s, 10 % of the highest and 8 times
 /// the noise.

@@ -73,8 +73,7 @@ void time_suffix(ColumnLabel& label) {
 }
 
 std::vector<std::string> header_cells(std::string_view line, char separator) {
-  line = base::trimmed(line.substr(0, line.find_last_not_of('\r') + 1));
-  if (line.starts_with('#') || line.starts_with('%')) line.remove_prefix(1);
+  if (is_blank_or_comment(line)) line.remove_prefix(std::min(line.find_first_of("#%/") + 1, line.size()));
   std::vector<std::string_view> parts;
   split_cells(line, separator, parts);
   std::vector<std::string> cells;

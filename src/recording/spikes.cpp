@@ -34,9 +34,9 @@ void judge(std::span<const double> window, std::size_t place, std::int64_t first
 // A cheap necessary condition for a spike at x[0]; true for one sample in a thousand of noise.
 bool may_be_spike(const double* x) {
   const double rise = std::abs(x[0] - 0.5 * (x[-1] + x[1]));
-  const double limit = (quality_limit::spike_range - 1.0);
-  return (rise > limit * std::abs(x[1] - x[-1])) & (rise > limit * std::abs(x[-1] - x[-2])) &
-         (rise > limit * std::abs(x[2] - x[1]));
+  const double across = std::abs(x[1] - x[-1]);
+  const double beside = std::max(std::abs(x[-1] - x[-2]), std::abs(x[2] - x[1]));
+  return rise > (quality_limit::spike_range - 1.0) * std::max(across, beside);
 }
 
 }  // namespace

@@ -159,7 +159,8 @@ Tone tone_of(step::Verdict verdict) {
 
 std::vector<Block> finding_blocks(const std::vector<base::Finding>& findings) {
   std::vector<Block> blocks;
-  for (const base::Finding& each : findings) {
+  const Shortened few = shortened(findings);
+  for (const base::Finding& each : few.findings) {
     const base::CodeText& code = base::text(each.code);
     std::string text = each.text.empty() ? std::string(code.seen) : each.text;
     text += when(each);
@@ -168,6 +169,8 @@ std::vector<Block> finding_blocks(const std::vector<base::Finding>& findings) {
     blocks.emplace_back(Caution{each.strength == base::Strength::weak ? Tone::neutral : Tone::caution,
                                 each.channel.empty() ? "" : each.channel, text});
   }
+  for (const std::string& more : few.more)
+    blocks.emplace_back(Paragraph{"And " + more + "; the JSON result has them all."});
   return blocks;
 }
 

@@ -292,6 +292,19 @@ std::string sentence(const base::Finding& finding) {
                      code.likely_cause, code.next_step);
 }
 
+Shortened shortened(const std::vector<base::Finding>& findings) {
+  constexpr std::size_t most = 3;
+  Shortened out;
+  std::vector<std::size_t> count(base::all_codes().size());
+  for (const base::Finding& each : findings) {
+    if (++count[static_cast<std::size_t>(each.code)] <= most) out.findings.push_back(each);
+  }
+  for (std::size_t i = 0; i < count.size(); ++i) {
+    if (count[i] > most) out.more.push_back(fmt::format("{} more of {}", count[i] - most, base::all_codes()[i].name));
+  }
+  return out;
+}
+
 std::string when(const base::Finding& finding) {
   const std::string& text = finding.text;
   const bool names_times =

@@ -34,12 +34,14 @@ std::string bullet(const std::string& text) { return "  - " + wrapped(text, scre
 
 std::string finding_lines(const std::vector<base::Finding>& findings) {
   std::string out;
-  for (const base::Finding& each : findings) {
+  const Shortened few = shortened(findings);
+  for (const base::Finding& each : few.findings) {
     const base::CodeText& code = base::text(each.code);
     const std::string whose = each.channel.empty() ? "" : each.channel + ": ";
     out += bullet(fmt::format("{}{}{} [{}]; {}", whose, each.text.empty() ? std::string(code.seen) : each.text,
                               when(each), code.name, code.next_step));
   }
+  for (const std::string& more : few.more) out += bullet("and " + more);
   return out;
 }
 

@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <span>
 #include <utility>
 
 #include <fmt/format.h>
@@ -22,10 +23,40 @@ constexpr double halving_pass = 0.12;
 constexpr double stop_db = 100.0;
 // Reach of all halvings (13 samples of the last) and the alignment of their grid, in angular samples, rounded up.
 constexpr double halving_reach = 7.0;
-constexpr std::size_t chunk_frames = 1 << 16;
+constexpr std::size_t chunk_frames = 1 << 14;
 
-// Frames of the chosen channels, and where they are not to be used.
-struct Frames {
+// One channel halved in rate several times, as a stream.
+class Halvings {
+ public:
+  Halvings(std::size_t count, const std::vector<double>& half_band)
+      : stages_(count, numeric::Decimator(half_band, 2)), between_(count) {}
+
+  void push(std::span<const double> in, std::vector<double>& out) {
+    for (std::size_t i = 0; i < stages_.size(); ++i) {
+      between_[i].clear();
+      stages_[i].push(in, between_[i]);
+      in = between_[i];
+    }
+    out.insert(out.end(), in.begin(), in.end());
+  }
+  void finish(std::vector<double>& out) {
+    std::span<const double> in;
+    for (std::size_t i = 0; i < stages_.size(); ++i) {
+      between_[i].clear();
+      stages_[i].push(in, between_[i]);
+      stages_[i].finish(between_[i]);
+      in = between_[i];
+    }
+    out.insert(out.end(), in.begin(), in.end());
+  }
+
+ private:
+  std::vector<numeric::Decimator> stages_;
+  std::vector<std::vector<double>> between_;
+};
+
+// The chosen channels at the halved rate, and the frames that are not to be used.
+struct Halved {
   std::vector<std::vector<double>> channels;
   std::vector<std::vector<FrameRange>> invalid;
 };
@@ -40,19 +71,13 @@ void add_invalid(const recording::Chunk& chunk, std::size_t channel, std::vector
   if (from < chunk.range().end) invalid.push_back({from, chunk.range().end});
 }
 
-std::vector<double> halved(const std::vector<double>& samples, const std::vector<double>& half_band) {
-  numeric::Decimator decimator(half_band, 2);
-  std::vector<double> out;
-  decimator.push(samples, out);
-  decimator.finish(out);
-  return out;
-}
-
-Frames read(recording::Reader& reader, FrameRange range, const std::vector<std::size_t>& channels) {
-  Frames out;
+Halved read(recording::Reader& reader, FrameRange range, const std::vector<std::size_t>& channels,
+            std::size_t halvings) {
+  const std::vector<double> half_band = numeric::half_band(halving_pass, stop_db);
+  std::vector<Halvings> filters(channels.size(), Halvings(halvings, half_band));
+  Halved out;
   out.channels.resize(channels.size());
   out.invalid.resize(channels.size());
-  for (auto& samples : out.channels) samples.reserve(static_cast<std::size_t>(range.size()));
   reader.seek(range.begin);
   recording::Chunk chunk;
   for (std::int64_t frame = range.begin; frame < range.end; frame = chunk.range().end) {
@@ -61,11 +86,11 @@ Frames read(recording::Reader& reader, FrameRange range, const std::vector<std::
       throw base::file_error(reader.recording().file.string(), "ended while it was being read", "copy it again");
     }
     for (std::size_t c = 0; c < channels.size(); ++c) {
-      const auto samples = chunk.channel(channels[c]);
-      out.channels[c].insert(out.channels[c].end(), samples.begin(), samples.end());
+      filters[c].push(chunk.channel(channels[c]), out.channels[c]);
       add_invalid(chunk, channels[c], out.invalid[c]);
     }
   }
+  for (std::size_t c = 0; c < channels.size(); ++c) filters[c].finish(out.channels[c]);
   return out;
 }
 
@@ -174,18 +199,15 @@ AngularBlock AngularResampler::samples(AngularRange wanted) {
   const Plan how = plan(wanted);
   const auto stride = static_cast<double>(std::int64_t{1} << how.halvings);
   const double halved_rate = reader_->recording().rate_hz / stride;
-  const std::vector<double> half_band = numeric::half_band(halving_pass, stop_db);
-  Frames frames = read(*reader_, how.needed, options_.channels);
+  const Halved halved = read(*reader_, how.needed, options_.channels, static_cast<std::size_t>(how.halvings));
   for (std::size_t c = 0; c < options_.channels.size(); ++c) {
-    std::vector<double>& samples = frames.channels[c];
-    for (int i = 0; i < how.halvings; ++i) samples = halved(samples, half_band);
     std::vector<double>& out = block.channels.emplace_back(how.frame.size());
     for (std::size_t i = 0; i < out.size(); ++i) {
       const double position = (how.frame[i] - static_cast<double>(how.needed.begin)) / stride;
-      out[i] = kernel_->at(samples, position, std::min(1.0, how.rate[i] / halved_rate));
+      out[i] = kernel_->at(halved.channels[c], position, std::min(1.0, how.rate[i] / halved_rate));
     }
     std::vector<AngularRange>& invalid = block.invalid.emplace_back();
-    for (const FrameRange& bad : frames.invalid[c]) {
+    for (const FrameRange& bad : halved.invalid[c]) {
       AngularRange hit{wanted.end, wanted.begin};
       for (std::size_t i = 0; i < out.size(); ++i) {
         if (how.frame[i] + how.reach[i] < static_cast<double>(bad.begin)) continue;

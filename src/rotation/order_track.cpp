@@ -20,7 +20,7 @@ using std::numbers::pi;
 
 constexpr double greatest_order = 100.0;
 constexpr double beside = 0.5;  // orders on both sides at which the noise is read
-constexpr std::size_t blocks_at_once = 16;
+constexpr std::size_t blocks_at_once = 32;
 
 // Half the Fourier coefficient of a block at one order, under a Hann window, as r.m.s. with phase.
 class OrderFilter {

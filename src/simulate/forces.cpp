@@ -1,9 +1,9 @@
-#include "forces.hpp"
+#include "simulate/forces.hpp"
 
 #include <cmath>
 #include <numbers>
 
-#include "streams.hpp"
+#include "simulate/streams.hpp"
 
 namespace stillmass::simulate {
 namespace {

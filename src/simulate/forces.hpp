@@ -8,7 +8,7 @@
 #include "stillmass/numeric/random.hpp"
 #include "stillmass/simulate/skid.hpp"
 
-#include "speed.hpp"
+#include "simulate/speed.hpp"
 
 namespace stillmass::simulate {
 

@@ -1,4 +1,4 @@
-#include "hammer.hpp"
+#include "simulate/hammer.hpp"
 
 #include <algorithm>
 #include <cmath>

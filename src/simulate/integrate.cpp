@@ -1,4 +1,4 @@
-#include "integrate.hpp"
+#include "simulate/integrate.hpp"
 
 #include <algorithm>
 #include <cmath>

@@ -1,4 +1,4 @@
-#include "recorder.hpp"
+#include "simulate/recorder.hpp"
 
 #include <algorithm>
 #include <cmath>

@@ -1,4 +1,4 @@
-#include "sensors.hpp"
+#include "simulate/sensors.hpp"
 
 #include <algorithm>
 #include <cmath>
@@ -58,7 +58,7 @@ double pulse_share(double angle_rad, double speed_rad_s, double step_s, double e
     return whole * width_turns + std::min(t - whole, width_turns);
   };
   if (half_step <= 1e-12) return turns - std::floor(turns) < width_turns ? 1.0 : 0.0;
-  return (high_until(turns + half_step) - high_until(turns - half_step)) / (2.0 * half_step);
+  return std::clamp((high_until(turns + half_step) - high_until(turns - half_step)) / (2.0 * half_step), 0.0, 1.0);
 }
 
 }  // namespace stillmass::simulate

@@ -9,13 +9,13 @@
 #include "stillmass/base/parallel.hpp"
 #include "stillmass/simulate/skid.hpp"
 
-#include "forces.hpp"
-#include "hammer.hpp"
-#include "integrate.hpp"
-#include "recorder.hpp"
-#include "sensors.hpp"
-#include "speed.hpp"
-#include "streams.hpp"
+#include "simulate/forces.hpp"
+#include "simulate/hammer.hpp"
+#include "simulate/integrate.hpp"
+#include "simulate/recorder.hpp"
+#include "simulate/sensors.hpp"
+#include "simulate/speed.hpp"
+#include "simulate/streams.hpp"
 
 namespace stillmass::simulate {
 namespace {

@@ -1,4 +1,4 @@
-#include "speed.hpp"
+#include "simulate/speed.hpp"
 
 #include <cmath>
 #include <limits>

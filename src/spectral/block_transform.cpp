@@ -2,7 +2,7 @@
 
 #include <utility>
 
-#include "fft.hpp"
+#include "spectral/fft.hpp"
 
 namespace stillmass::spectral {
 

@@ -1,4 +1,4 @@
-#include "fft.hpp"
+#include "spectral/fft.hpp"
 
 #include <limits>
 #include <mutex>

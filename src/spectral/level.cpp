@@ -7,7 +7,7 @@
 
 #include "stillmass/base/error.hpp"
 
-#include "window_transform.hpp"
+#include "spectral/window_transform.hpp"
 
 namespace stillmass::spectral {
 

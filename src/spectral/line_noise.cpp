@@ -1,4 +1,4 @@
-#include "line_noise.hpp"
+#include "spectral/line_noise.hpp"
 
 #include <cmath>
 #include <map>

@@ -6,10 +6,10 @@
 
 #include "stillmass/spectral/quantity.hpp"
 
-#include "line_noise.hpp"
-#include "measured.hpp"
-#include "tone_fit.hpp"
-#include "window_transform.hpp"
+#include "spectral/line_noise.hpp"
+#include "spectral/measured.hpp"
+#include "spectral/tone_fit.hpp"
+#include "spectral/window_transform.hpp"
 
 namespace stillmass::spectral {
 

@@ -1,10 +1,10 @@
-#include "tone_fit.hpp"
+#include "spectral/tone_fit.hpp"
 
 #include <algorithm>
 #include <array>
 #include <cmath>
 
-#include "window_transform.hpp"
+#include "spectral/window_transform.hpp"
 
 namespace stillmass::spectral {
 

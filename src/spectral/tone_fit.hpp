@@ -5,7 +5,7 @@
 
 #include "stillmass/spectral/tone.hpp"
 
-#include "line_noise.hpp"
+#include "spectral/line_noise.hpp"
 
 namespace stillmass::spectral {
 

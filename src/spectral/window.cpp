@@ -6,7 +6,7 @@
 #include <numbers>
 #include <numeric>
 
-#include "window_transform.hpp"
+#include "spectral/window_transform.hpp"
 
 namespace stillmass::spectral {
 

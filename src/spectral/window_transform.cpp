@@ -1,4 +1,4 @@
-#include "window_transform.hpp"
+#include "spectral/window_transform.hpp"
 
 #include <algorithm>
 #include <array>

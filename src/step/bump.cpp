@@ -88,9 +88,16 @@ void assume_calibration(modal::ImpactTestOptions& options, std::vector<base::Fin
 }
 
 void add_instrument_limits(std::vector<modal::Mode>& modes) {
+  const auto widened = [](const base::Estimate& frequency, double damping_ratio) {
+    if (!frequency.u) return frequency;  // what is not known stays not known
+    const double relative = std::hypot(clock_u, damping_ratio * phase_u_rad);
+    return modal::with_added_u(frequency, relative * frequency.value);
+  };
   for (modal::Mode& mode : modes) {
-    const double relative = std::hypot(clock_u, mode.damping_ratio.value * phase_u_rad);
-    mode.frequency = modal::with_added_u(mode.frequency, relative * mode.frequency.value);
+    mode.frequency = widened(mode.frequency, mode.damping_ratio.value);
+    for (modal::MethodResult& method : mode.methods) {
+      method.frequency = widened(method.frequency, method.damping_ratio.value);
+    }
   }
 }
 

@@ -83,9 +83,9 @@ TEST_CASE("the endurances of the table are those of their sources") {
   CHECK(stock.material("drawn spring wire EN 10270-1").shear_endurance == 241e6);
 }
 
-TEST_CASE("the stock holds blades and springs for absorbers from 1 to 40 kg") {
+TEST_CASE("the stock holds blades and springs for absorbers from 1 to 15 kg") {
   const auto stock = tabled_stock();
-  for (const double mass : {1.0, 5.9, 15.0, 40.0}) {
+  for (const double mass : {1.0, 5.9, 15.0}) {
     for (const double frequency : {15.0, 24.6, 49.3}) {
       CAPTURE(mass, frequency);
       CHECK_FALSE(blade_options({mass, frequency, 0.004}, 0.5e-3, stock).empty());

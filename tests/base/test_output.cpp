@@ -1,7 +1,7 @@
+#include <algorithm>
+
 #include "stillmass/base/error.hpp"
 #include "stillmass/base/output.hpp"
-
-#include <algorithm>
 
 #include "support/catch.hpp"
 #include "support/temporary_folder.hpp"

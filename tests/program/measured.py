@@ -57,15 +57,17 @@ if first and whole:
     if second:
         claim("beam: 150 Hz is gone in the second half", not near(peaks(second, 0), 150, 1.0) and near(peaks(second, 0), 100, 0.2))
 
-bridge = result("spectrum", folder / "footbridge-mode2.txt", "--max-frequency", "40")
+# SciPy's welch (Hann, 32768 samples) on the same columns finds 11.72, 25.39 and 35.7 to 35.9 Hz strongest; the mode near
+# 17.5 Hz that the data set states is hardly excited in it (16.99 Hz, 11 dB below).
+bridge = result("spectrum", folder / "footbridge-mode2.txt", "--max-frequency", "40", "--resolution", "0.2")
 if bridge:
-    claim("footbridge: a line near 17.5 Hz", any(near(peaks(bridge, c), 17.5, 0.5) for c in range(3)))
+    claim("footbridge: its strongest lines, as SciPy has them", all(near(peaks(bridge, c), f, 0.2) for c in range(3) for f in (11.7, 25.4, 35.8)))
     claim("footbridge: 6400 Hz", abs(bridge["inputs"][0]["rate_hz"] - 6400) < 15)
 
-node = result("check", folder / "footbridge-blow-node.csv")
+node = result("spectrum", folder / "footbridge-blow-node.csv", "--channel", "1=node:g", "--max-frequency", "40", "--resolution", "0.25")
 if node:
-    codes = [finding["code"] for finding in node["warnings"]] + [f["code"] for c in node["result"]["channels"] for f in c["findings"]]
-    claim("node: its gaps are found", "gap" in codes)
+    claim("node: natural frequencies near 12.0 and 17.5 Hz", near(peaks(node, 0), 12.0, 0.1) and near(peaks(node, 0), 17.5, 0.2))
+    claim("node: its two gaps are found", [finding["code"] for finding in node["warnings"]].count("gap") == 2)
 
 tower = result("check", folder / "model-tower-jittery.csv")
 if tower:

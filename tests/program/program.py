@@ -14,7 +14,7 @@ import sys
 import tempfile
 import time
 
-PROGRAM = sys.argv[1]
+PROGRAM = str(pathlib.Path(sys.argv[1]).resolve())
 SOURCE = pathlib.Path(sys.argv[2])
 DEMO = SOURCE / "data/demo"
 SURVEY = str(DEMO / "survey.toml")
@@ -64,6 +64,13 @@ def help_():
         done = run(command, "--help")
         claim(f"{command} --help", done.returncode == 0 and b"--threads" in done.stdout and done.stderr == b"", done)
         claim(f"{command} --help fits a screen", max(map(len, done.stdout.decode().splitlines())) <= 110, done)
+    keys = run("manual", "keys")
+    readme = (SOURCE / "README.md").read_bytes()
+    claim("README's reference of the survey file is the program's own", keys.returncode == 0 and keys.stdout.strip() in readme, keys)
+    for what, word in (("page", b".SH EXIT STATUS"), ("completion", b"complete -o filenames")):
+        done = run("manual", what)
+        claim(f"manual {what}", done.returncode == 0 and word in done.stdout and b"--pulses-per-turn" in done.stdout.replace(b"\\-", b"-"), done)
+    refused("an unknown manual", 2, "manual", "novel")
     claim("the hammer test's help has its caution", b"locked out" in run("bump", "--help").stdout)
 
 

@@ -80,12 +80,14 @@ corner_hz = 100
   constexpr int count = 1000000;
   constexpr int lag = 16;
   std::vector<double> values;
+  bool crosswise_only = true;
   for (int n = 0; n < count; ++n) {
     std::vector<double> force(6, 0.0);
     forces.add_next(n * step, {0.0, 0.0, 0.0, false}, 1.0, force);
-    CHECK(force[0] == 0.0);
+    crosswise_only = crosswise_only && force[0] == 0.0;
     values.push_back(force[1]);
   }
+  CHECK(crosswise_only);
   double square = 0.0;
   double product = 0.0;
   for (std::size_t i = lag; i < values.size(); ++i) {
@@ -189,13 +191,14 @@ TEST_CASE("the pulse's mean is its width and its edges keep their instants betwe
   const double speed = two_pi * 7.3;
   double sum = 0.0;
   double area = 0.0;
+  bool within = true;
   for (int n = 0; n < 100000; ++n) {
     const double share = simulate::pulse_share(speed * n * step, speed, step, 1.0, 0.08);
-    CHECK(share >= 0.0);
-    CHECK(share <= 1.0);
+    within = within && share >= 0.0 && share <= 1.0;
     sum += share;
     if (n < 137) area += share * step;  // one turn and no more: the pulse rises once, at angle 1 rad
   }
+  CHECK(within);
   CHECK(sum / 100000 == Approx(0.08).epsilon(1e-3));
   CHECK(area == Approx(0.08 / 7.3).epsilon(1e-9));
 }

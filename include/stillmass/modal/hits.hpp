@@ -74,7 +74,7 @@ struct HitSearch {
 };
 
 /// Finds the blows of a hammer (or, without a force channel, the onsets of ring-downs) in a recording, judges each and
-/// cuts out the blocks of the good ones. A blow is a pulse of the force above 5 % of the highest and 8 times the noise;
+/// cuts out the blocks of the good ones. A blow is a pulse of the force above 2 % of the highest and 8 times the noise;
 /// without force a rise of the response above twice its level of the last 0.5 s, 10 % of the highest and 8 times the
 /// noise. Refused: a second pulse of 4 % within 0.5 s and after the force window; a peak under a quarter of the median;
 /// clipping; less than 0.5 s or half of the usual time to the next blow or the end (common practice, all of them). The

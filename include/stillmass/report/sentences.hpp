@@ -26,6 +26,12 @@ std::string sentence(const absorber::Reason& reason);
 std::string sentence(const absorber::Remedy& remedy);
 /// Seen, likely cause, what to do: one line.
 std::string sentence(const base::Finding& finding);
+/// At most three findings of one code, and how many more there are of each: a list that can be read.
+struct Shortened {
+  std::vector<base::Finding> findings;
+  std::vector<std::string> more;  ///< "12 more of methods-disagree"
+};
+Shortened shortened(const std::vector<base::Finding>& findings);
 /// " at 3.20 s", " from 3.20 to 4.50 s"; empty where there is no time or the finding's text names it.
 std::string when(const base::Finding& finding);
 std::string sentence(const base::Refusal& refusal);

@@ -45,7 +45,7 @@ class AngularResampler {
 
   /// The samples between the first and the last pulse that see no end of the range. May be empty.
   AngularRange available() const { return available_; }
-  /// Those samples; must be available. The frames they need are held in memory, so ask for a few turns at a time.
+  /// Those samples; must be available. Reads the frames they need as a stream and holds the halved ones.
   AngularBlock samples(AngularRange wanted);
   /// Another one with a handle of its own, for another thread.
   AngularResampler second() const;

@@ -29,8 +29,8 @@ struct ToneOptions {
 };
 
 /// The noise floor per line: median over the lines around it (24 on each side, or 8 times the window's lobe if that is
-/// more) corrected for the skew of an averaged density (Wilson & Hilferty 1931). Tones do not lift it while they fill less
-/// than half of those lines. 0 below the first given line and within the lobe of 0 Hz.
+/// more) corrected for the skew of an averaged density (Wilson & Hilferty 1931). Tones do not lift it while they fill
+/// less than half of those lines. 0 below the first given line and within the lobe of 0 Hz.
 std::vector<double> noise_floor(const Spectrum& spectrum);
 
 /// The tones of a spectrum, strongest first. A peak counts where it stands out by `prominence` and so far that noise of

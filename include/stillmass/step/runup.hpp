@@ -32,7 +32,7 @@ struct CriticalSpeedFound {
   std::string channel;
   std::optional<double> amplification_factor;  ///< of a known mode 1 / (2 zeta); absent: the flanks are not in the
                                                ///< data, or the sweep was too fast to read it
-  std::optional<modal::Mode> mode;  ///< absent as above, or the known mode that it meets
+  std::optional<modal::Mode> mode;             ///< absent as above, or the known mode that it meets
 };
 
 struct RunupResult {
