@@ -49,7 +49,7 @@ numeric::Cases cases_of(const PredictionInput& input, double velocity_u) {
       correlation[i * Drawn::count + j] = of_mode ? mode.correlation[i][j] : (i == j ? 1.0 : 0.0);
     }
   }
-  return {std::move(inputs), std::move(correlation), input.seed};
+  return {std::move(inputs), correlation, input.seed};
 }
 
 void check(const PredictionInput& input) {

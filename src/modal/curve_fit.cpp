@@ -14,6 +14,7 @@ namespace {
 using Complex = std::complex<double>;
 constexpr double two_pi = 2.0 * std::numbers::pi;
 constexpr double largest_damping = 0.5;
+constexpr std::size_t residual_terms = 3;
 
 /// Where the unknowns stand: frequency and damping of each mode, then for each response a and b of each mode and the
 /// two residual terms.
@@ -23,12 +24,11 @@ struct Layout {
 
   std::size_t frequency(std::size_t r) const { return 2 * r; }
   std::size_t damping(std::size_t r) const { return 2 * r + 1; }
-  std::size_t linear() const { return 2 * modes + 2; }
+  std::size_t linear() const { return 2 * modes + residual_terms; }
   std::size_t response(std::size_t p) const { return 2 * modes + p * linear(); }
   std::size_t a(std::size_t p, std::size_t r) const { return response(p) + 2 * r; }
   std::size_t b(std::size_t p, std::size_t r) const { return response(p) + 2 * r + 1; }
-  std::size_t mass_line(std::size_t p) const { return response(p) + 2 * modes; }
-  std::size_t stiffness_line(std::size_t p) const { return response(p) + 2 * modes + 1; }
+  std::size_t residual(std::size_t p) const { return response(p) + 2 * modes; }
   std::size_t unknowns() const { return response(responses); }
 };
 
@@ -61,8 +61,7 @@ class Model {
           put(2 * r, basis);
           put(2 * r + 1, basis * s / w);
         }
-        put(2 * layout.modes, 1.0);
-        put(2 * layout.modes + 1, s * s / (scale_s * scale_s));
+        for (std::size_t i = 0; i < residual_terms; ++i) put(2 * layout.modes + i, residual_basis(s, i));
         right[2 * k] = weight * responses_[p].accelerance[k].real();
         right[2 * k + 1] = weight * responses_[p].accelerance[k].imag();
       }
@@ -76,13 +75,14 @@ class Model {
     for (std::size_t p = 0; p < responses_.size(); ++p) {
       for (std::size_t k = 0; k < s_.size(); ++k, row += 2) {
         const Complex s = s_[k];
-        Complex sum = x[layout.mass_line(p)] + x[layout.stiffness_line(p)] * s * s / (scale_s * scale_s);
+        Complex sum = -responses_[p].accelerance[k];
+        for (std::size_t i = 0; i < residual_terms; ++i) sum += x[layout.residual(p) + i] * residual_basis(s, i);
         for (std::size_t r = 0; r < layout.modes; ++r) {
           const double w = two_pi * x[layout.frequency(r)];
           sum += s * s * (x[layout.a(p, r)] + x[layout.b(p, r)] * s / w) /
                  (s * s + 2.0 * x[layout.damping(r)] * w * s + w * w);
         }
-        const Complex misfit = (sum - responses_[p].accelerance[k]) / responses_[p].u[k];
+        const Complex misfit = sum / responses_[p].u[k];
         out[row] = misfit.real();
         out[row + 1] = misfit.imag();
       }
@@ -111,8 +111,7 @@ class Model {
           put(layout.a(p, r), basis);
           put(layout.b(p, r), basis * s / w);
         }
-        put(layout.mass_line(p), 1.0);
-        put(layout.stiffness_line(p), s * s / (scale_s * scale_s));
+        for (std::size_t i = 0; i < residual_terms; ++i) put(layout.residual(p) + i, residual_basis(s, i));
       }
     }
   }
@@ -121,6 +120,8 @@ class Model {
   double scale_s = 0.0;
 
  private:
+  Complex residual_basis(Complex s, std::size_t i) const { return std::pow(s / scale_s, static_cast<int>(i)); }
+
   std::span<const MeasuredResponse> responses_;
   std::vector<Complex> s_;
 };
@@ -188,7 +189,7 @@ FittedMode mode_of(const numeric::NonlinearFit& fit, const Layout& layout, std::
 }  // namespace
 
 std::complex<double> CurveFit::accelerance(std::size_t response, std::complex<double> s) const {
-  Complex sum = residuals[response].mass_line + residuals[response].stiffness_line * s * s / (scale_s * scale_s);
+  Complex sum = residuals[response].at(s / scale_s);
   for (const FittedMode& mode : modes) {
     const double z = mode.system.damping_ratio;
     const double w = two_pi * mode.system.frequency_hz;
@@ -239,7 +240,8 @@ base::Answer<CurveFit> curve_fit(std::span<const double> frequency_hz, std::span
   for (std::size_t r = 0; r < start.size(); ++r) result.modes.push_back(mode_of(fit, layout, r));
   std::ranges::sort(result.modes, {}, [](const FittedMode& mode) { return mode.system.frequency_hz; });
   for (std::size_t p = 0; p < responses.size(); ++p) {
-    result.residuals.push_back({fit.parameters[layout.mass_line(p)], fit.parameters[layout.stiffness_line(p)]});
+    const double* terms = &fit.parameters[layout.residual(p)];
+    result.residuals.push_back({terms[0], terms[1], terms[2]});
   }
   result.scale_s = model.scale_s;
   result.chi_square_per_dof = fit.residual_sum / fit.dof;

@@ -1,6 +1,7 @@
 #include "modal/hit_spectra.hpp"
 
 #include <algorithm>
+#include <array>
 #include <cmath>
 #include <limits>
 #include <numbers>
@@ -15,7 +16,6 @@ using Complex = std::complex<double>;
 
 constexpr double dead = 0.01;  // of its own start: no window needed
 constexpr double remainder_left = 0.003;
-constexpr double flat_tail = 0.8;  // the last quarter over the third: noise, no decay
 constexpr double usable_share = 1.0 / 2.56;
 constexpr std::size_t smoothing_lines = 6;  // independent ones, to either side
 
@@ -35,16 +35,25 @@ std::size_t quick_length(std::size_t n) {
   return n;
 }
 
-/// What is left of the slowest part of a response at the end of the block, relative to its own start.
-double left_at_end(std::span<const double> decay, double quiet) {
-  const std::size_t quarter = decay.size() / 4;
-  if (quarter < 8) return 1.0;
-  const double third = std::sqrt(mean_square(decay.subspan(2 * quarter, quarter)));
-  const double last = std::sqrt(mean_square(decay.last(quarter)));
-  if (!(third > 0.0)) return 0.0;
-  const double fall = last / third;
-  const bool in_noise = fall > flat_tail && last * last < 2.0 * quiet;
-  return in_noise ? 0.0 : std::min(1.0, std::pow(fall, 4));
+/// What is left of the slowest part of a response at the end of the block, relative to its own start. The block is cut
+/// into eighths. The last eighth may be noise: the rate of decay is read where the level stands well above it.
+double left_at_end(std::span<const double> decay) {
+  constexpr std::size_t parts = 8;
+  constexpr double well_above = 3.0;
+  constexpr double falling = 1.5;
+  const std::size_t part = decay.size() / parts;
+  if (part < 4) return 1.0;
+  std::array<double, parts> square{};
+  for (std::size_t i = 0; i < parts; ++i) square[i] = mean_square(decay.subspan(i * part, part));
+  const double last = square.back();
+  std::size_t k = parts - 1;
+  while (k > 0 && square[k] <= well_above * well_above * last) --k;
+  if (k > 0) {
+    const double fall = (square[k] - last) / std::max(square[k - 1] - last, 1e-300);
+    return std::min(1.0, std::pow(fall, 0.5 * parts));
+  }
+  // After the first eighth there is either noise only or something slow.
+  return square[1] > falling * falling * last ? std::sqrt(last / square[1]) : 0.0;
 }
 
 /// To accelerations by s^power.
@@ -68,12 +77,9 @@ BlockWindow choose_window(std::span<const HitBlocks> hits) {
 
   double left = 0.0;
   for (std::size_t p = 0; p < hits.front().responses.size(); ++p) {
-    double quiet = std::numeric_limits<double>::infinity();
-    for (const HitBlocks& hit : hits)
-      quiet = std::min(quiet, mean_square(std::span(hit.responses[p]).first(hit.onset)));
     for (const HitBlocks& hit : hits) {
       const auto decay = std::span(hit.responses[p]).first(window.frames).subspan(hit.contact_end);
-      left = std::max(left, left_at_end(decay, quiet));
+      left = std::max(left, left_at_end(decay));
     }
   }
   const double length_s = static_cast<double>(window.frames) / hits.front().rate_hz;

@@ -46,7 +46,7 @@ Channels chosen_channels(const recording::Recording& recording, const HitOptions
 
 std::vector<Blow> blows_of_force(recording::Reader& reader, std::size_t channel, FrameRange range,
                                  const base::Context& context) {
-  const Levels levels = measure_levels(reader, range, std::array{channel}, context).front();
+  const Levels levels = measure_levels(reader, range, std::array{channel}, false, context).front();
   const double rate = reader.recording().rate_hz;
   std::vector<Blow> blows;
   std::optional<std::int64_t> last;
@@ -60,7 +60,7 @@ std::vector<Blow> blows_of_force(recording::Reader& reader, std::size_t channel,
 
 std::vector<Blow> blows_of_responses(recording::Reader& reader, std::span<const std::size_t> channels, FrameRange range,
                                      const base::Context& context) {
-  const std::vector<Levels> levels = measure_levels(reader, range, channels, context);
+  const std::vector<Levels> levels = measure_levels(reader, range, channels, true, context);
   const auto loudest = static_cast<std::size_t>(std::ranges::max_element(levels, {}, &Levels::peak) - levels.begin());
   std::vector<Blow> blows;
   for (const std::int64_t trigger : response_rises(reader, channels[loudest], levels[loudest])) {
@@ -74,7 +74,7 @@ std::vector<Blow> blows_of_responses(recording::Reader& reader, std::span<const 
   return blows;
 }
 
-void find_room(const recording::Recording& recording, FrameRange range, std::vector<Blow>& blows) {
+void find_room(const recording::Recording& recording, FrameRange range, std::int64_t before, std::vector<Blow>& blows) {
   const auto guard = static_cast<std::int64_t>(guard_s * recording.rate_hz);
   for (std::size_t i = 0; i < blows.size(); ++i) {
     const std::int64_t frame = blows[i].hit.first_frame;
@@ -84,7 +84,7 @@ void find_room(const recording::Recording& recording, FrameRange range, std::vec
       blows[i].available_end = blows[i + 1].hit.first_frame - guard;
       blows[i].next_is_blow = true;
     }
-    if (frame - frames_before(recording.rate_hz) < segment.begin) {
+    if (frame - before < segment.begin) {
       blows[i].refuse(HitVerdict::cut_off, "the recording begins or pauses right before it");
     }
   }
@@ -133,8 +133,7 @@ void window_force(std::vector<double>& force, std::int64_t onset, std::int64_t w
 }
 
 std::optional<HitBlocks> cut_out(recording::Reader& reader, const Blow& blow, const Channels& channels,
-                                 std::int64_t length) {
-  const std::int64_t before = frames_before(reader.recording().rate_hz);
+                                 std::int64_t before, std::int64_t length) {
   std::vector<std::size_t> all = channels.responses;
   if (channels.force) all.push_back(*channels.force);
   auto samples = read_frames(reader, {blow.hit.first_frame - before, blow.hit.first_frame + length}, all);
@@ -214,7 +213,9 @@ HitSearch find_hits(recording::Reader& reader, const HitOptions& options, const 
 
   std::vector<Blow> blows = channels.force ? blows_of_force(reader, *channels.force, range, context)
                                            : blows_of_responses(reader, channels.responses, range, context);
-  find_room(recording, range, blows);
+  // A ring-down needs nothing of what was before it.
+  const std::int64_t before = channels.force ? frames_before(recording.rate_hz) : 0;
+  find_room(recording, range, before, blows);
   refuse_overloads(reader, channels.responses, blows);
   refuse_weak(blows);
   std::int64_t decayed = 0;
@@ -230,7 +231,7 @@ HitSearch find_hits(recording::Reader& reader, const HitOptions& options, const 
   for (Blow& blow : blows) {
     context.check_stop();
     if (blow.hit.used) {
-      auto blocks = cut_out(reader, blow, channels, length);
+      auto blocks = cut_out(reader, blow, channels, before, length);
       if (blocks)
         search.blocks.push_back(std::move(*blocks));
       else

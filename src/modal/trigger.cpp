@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
+#include <limits>
 #include <utility>
 
 #include "stillmass/numeric/statistics.hpp"
@@ -18,14 +19,20 @@ constexpr double of_highest_response = 0.10;
 constexpr double over_noise = 8.0;
 constexpr double over_level_before = 2.0;
 constexpr double level_before_s = 0.5;
+constexpr double infinity = std::numeric_limits<double>::infinity();
 
 /// Gathers one channel.
 struct Gatherer {
   struct Hop {
-    double low = 0.0;
-    double high = 0.0;
+    std::array<double, 2> low{infinity, infinity};     // the lowest and the one above it
+    std::array<double, 2> high{-infinity, -infinity};  // the highest and the one below it
     numeric::RunningMoments moments;
     bool valid = true;
+
+    void stretch(double x) {
+      if (x < low[1]) low = x < low[0] ? std::array{x, low[0]} : std::array{low[0], x};
+      if (x > high[1]) high = x > high[0] ? std::array{x, high[0]} : std::array{high[0], x};
+    }
   };
   std::vector<Hop> hops;
 
@@ -37,10 +44,7 @@ struct Gatherer {
       const std::size_t end = std::min(samples.size(), static_cast<std::size_t>(hop_end - at));
       if (hops.size() <= h) hops.resize(h + 1);
       const auto part = samples.subspan(i, end - i);
-      const auto [low, high] = std::ranges::minmax(part);
-      const bool first = hops[h].moments.count() == 0;
-      hops[h].low = first ? low : std::min(hops[h].low, low);
-      hops[h].high = first ? high : std::max(hops[h].high, high);
+      for (const double x : part) hops[h].stretch(x);
       hops[h].moments.add(part);
       const std::int64_t frame = chunk.first_frame + static_cast<std::int64_t>(i);
       if (!chunk.all_valid() && !chunk.is_valid(channel, {frame, frame + std::ssize(part)})) hops[h].valid = false;
@@ -48,7 +52,7 @@ struct Gatherer {
     }
   }
 
-  Levels levels(std::int64_t first_frame, std::int64_t hop) const {
+  Levels levels(std::int64_t first_frame, std::int64_t hop, bool second_extremes) const {
     Levels result;
     result.first_frame = first_frame;
     result.hop = hop;
@@ -63,9 +67,10 @@ struct Gatherer {
     result.offset = numeric::median(means);
     result.noise = numeric::quantile(deviations, 0.2);
     for (const Hop& h : hops) {
-      const bool usable = h.valid && h.moments.count() > 0;
-      result.low.push_back(usable ? h.low : result.offset);
-      result.high.push_back(usable ? h.high : result.offset);
+      const bool usable = h.valid && h.moments.count() > 1;
+      const std::size_t which = second_extremes ? 1 : 0;
+      result.low.push_back(usable ? h.low[which] : result.offset);
+      result.high.push_back(usable ? h.high[which] : result.offset);
     }
     const double above = std::ranges::max(result.high) - result.offset;
     const double below = result.offset - std::ranges::min(result.low);
@@ -75,12 +80,19 @@ struct Gatherer {
   }
 };
 
+/// The part of [begin, end) in the segment of its last frame.
+recording::FrameRange within_segment(const recording::Recording& recording, std::int64_t begin, std::int64_t end) {
+  end = std::min(end, recording.frames);
+  return {std::max(begin, segment_of(recording, end - 1).begin), end};
+}
+
 }  // namespace
 
 double Levels::distance(std::size_t h) const { return std::max(high[h] - offset, offset - low[h]); }
 
 std::vector<Levels> measure_levels(recording::Reader& reader, recording::FrameRange range,
-                                   std::span<const std::size_t> channels, const base::Context& context) {
+                                   std::span<const std::size_t> channels, bool second_extremes,
+                                   const base::Context& context) {
   const auto hop = std::max<std::int64_t>(2, std::llround(hop_s * reader.recording().rate_hz));
   std::vector<Gatherer> gatherers(channels.size());
   recording::Chunk chunk;
@@ -96,7 +108,7 @@ std::vector<Levels> measure_levels(recording::Reader& reader, recording::FrameRa
     }
   }
   std::vector<Levels> levels;
-  for (const Gatherer& gatherer : gatherers) levels.push_back(gatherer.levels(range.begin, hop));
+  for (const Gatherer& gatherer : gatherers) levels.push_back(gatherer.levels(range.begin, hop, second_extremes));
   return levels;
 }
 
@@ -108,12 +120,13 @@ std::vector<std::int64_t> force_pulses(recording::Reader& reader, std::size_t ch
   std::int64_t last_above = levels.first_frame - levels.hop;
   for (std::size_t h = 0; h < levels.high.size(); ++h) {
     if (!above(levels.upward ? levels.high[h] : levels.low[h])) continue;
-    const std::int64_t end = std::min(levels.frame(h) + levels.hop, reader.recording().frames);
-    const auto samples = read_frames(reader, {levels.frame(h), end}, std::array{channel});
+    const recording::FrameRange range =
+        within_segment(reader.recording(), levels.frame(h), levels.frame(h) + levels.hop);
+    const auto samples = read_frames(reader, range, std::array{channel});
     if (!samples) continue;
     for (std::size_t i = 0; i < samples->front().size(); ++i) {
       if (!above(samples->front()[i])) continue;
-      const std::int64_t frame = levels.frame(h) + static_cast<std::int64_t>(i);
+      const std::int64_t frame = range.begin + static_cast<std::int64_t>(i);
       if (frame - last_above > 3) pulses.push_back(frame);
       last_above = frame;
     }
@@ -133,13 +146,14 @@ std::vector<std::int64_t> response_rises(recording::Reader& reader, std::size_t 
     const bool same = !rises.empty() && h - last_rise <= 5;
     last_rise = h;
     if (same) continue;
-    const std::int64_t end = std::min(levels.frame(h) + levels.hop, reader.recording().frames);
-    const auto samples = read_frames(reader, {levels.frame(h - 1), end}, std::array{channel});
+    const recording::FrameRange range =
+        within_segment(reader.recording(), levels.frame(h - 1), levels.frame(h) + levels.hop);
+    const auto samples = read_frames(reader, range, std::array{channel});
     if (!samples) continue;
     const double start = std::max({0.1 * levels.distance(h), over_noise * levels.noise, before});
     const auto first =
         std::ranges::find_if(samples->front(), [&](double x) { return std::abs(x - levels.offset) > start; });
-    rises.push_back(levels.frame(h - 1) + (first - samples->front().begin()));
+    rises.push_back(range.begin + (first - samples->front().begin()));
   }
   return rises;
 }

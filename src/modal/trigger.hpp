@@ -25,9 +25,11 @@ struct Levels {
   double distance(std::size_t h) const;  ///< largest of the hop from the offset, either way
 };
 
-/// One pass over the range, all channels asked for. Hops with a sample that is not valid stand at the offset.
+/// One pass over the range, all channels asked for. Hops with a sample that is not valid stand at the offset. With
+/// `second_extremes` the highest and the lowest sample of a hop do not count, so that a single wrong sample is no blow.
 std::vector<Levels> measure_levels(recording::Reader& reader, recording::FrameRange range,
-                                   std::span<const std::size_t> channels, const base::Context& context);
+                                   std::span<const std::size_t> channels, bool second_extremes,
+                                   const base::Context& context);
 
 /// First frames of the pulses of a force: above 2 % of the highest and 8 times the noise, on the side of the highest.
 std::vector<std::int64_t> force_pulses(recording::Reader& reader, std::size_t channel, const Levels& levels);

@@ -75,7 +75,7 @@ Input rectangular_input(std::string name, base::Interval limits) {
   return {std::move(name), limits.middle(), 0.5 * limits.width() / std::numbers::sqrt3, Distribution::rectangular};
 }
 
-Cases::Cases(std::vector<Input> inputs, std::vector<double> correlation, std::uint64_t seed)
+Cases::Cases(std::vector<Input> inputs, const std::vector<double>& correlation, std::uint64_t seed)
     : inputs_(std::move(inputs)), seed_(seed) {
   if (inputs_.size() > most_inputs) throw base::Error(base::ErrorKind::internal, "Cases", "too many inputs");
   for (const Input& input : inputs_) check(input);

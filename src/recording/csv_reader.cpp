@@ -133,7 +133,8 @@ void note_bad_cells(base::Code code, const char* what, const BadCells& cells, co
                     Recording& recording) {
   if (cells.cells == 0) return;
   base::Finding finding{
-      code, fmt::format("{} {} in {} place{}", cells.cells, what, cells.places, cells.places == 1 ? "" : "s"), channel};
+      code, fmt::format("{}: {}, in {} place{}", what, cells.cells, cells.places, cells.places == 1 ? "" : "s"),
+      channel};
   finding.from_s = cells.first_s;
   finding.to_s = cells.last_s;
   for (const auto& place : cells.first_places_s) {

@@ -31,8 +31,8 @@ Census census_of(std::string_view block, char separator, bool stamps) {
   const Byte first_letter = stamps ? 'T' : 'E';  // of dates: "2024-05-01T12:00Z"
   const Byte second_letter = stamps ? 'Z' : 'E';
   Census census;
-  const bool starts_empty = bytes[0] == cell_end || bytes[0] == '\n' || bytes[0] == '\r';
-  census.odd = starts_empty || block.size() < 2 ? 1 : 0;
+  const bool starts_well = bytes[0] != cell_end && (bytes[0] == ' ' || (bytes[0] >= '+' && bytes[0] <= ';'));
+  census.odd = starts_well ? 0 : 1;
   for (std::size_t begin = 1; begin < block.size(); begin += strip) {
     const std::size_t end = std::min(begin + strip, block.size());
     Byte lines = 0;

@@ -38,8 +38,8 @@ TEST_CASE("every blow is found and each imperfect one refused for its own reason
     // A tenth of the peak is reached after 0.1 / pi of contact; a sample is 0.5 ms.
     CHECK(search.hits[i].time_s == Approx(simulation.blows[i].start_s).margin(0.001));
   }
-  // The peak lies between two samples and passes the recorder's filter: 1 % of it.
-  CHECK(search.hits[0].peak == Approx(simulation.blows[0].peak_n).epsilon(0.01));
+  // The peak lies between two samples (up to 1.2 % lower) and passes the recorder's filter: 2 % of it.
+  CHECK(search.hits[0].peak == Approx(simulation.blows[0].peak_n).epsilon(0.02));
   // Above a tenth of the peak for 0.936 of contact, counted in whole samples.
   CHECK(*search.hits[0].contact_s == Approx(0.936 * simulation.blows[0].contact_s).margin(0.0006));
   CHECK(search.hits[2].reason.find("ms after the first") != std::string::npos);

@@ -1,9 +1,11 @@
+#include <algorithm>
 #include <cmath>
 
 #include "stillmass/modal/ring_down_test.hpp"
 
 #include "modal/hammer_simulation.hpp"
 #include "support/catch.hpp"
+#include "support/demo.hpp"
 
 using namespace stillmass;
 
@@ -55,4 +57,32 @@ TEST_CASE("no ring-down and no mode in the band are refused") {
   const auto test = modal::ring_down_test(search.blocks, options, {});
   REQUIRE(!test);
   CHECK(test.refusal().code == "no-mode");
+}
+
+TEST_CASE("a measured blow on a footbridge has the bridge's natural frequencies") {
+  // Natural frequencies near 12.0 and 17.5 Hz: README of the measured recordings.
+  const auto file = tests::measured_recording("footbridge-blow-node.csv");
+  if (!file) {
+    WARN("skipped: no measured recordings here");
+    return;
+  }
+  recording::OpenOptions open;
+  recording::ChannelSetting setting;
+  setting.unit = *base::unit_named("g");
+  open.channels = {setting};
+  const auto reader = recording::open(*file, open);
+  const modal::HitSearch search = modal::find_hits(*reader, {}, {});
+  for (const auto& hit : search.hits) INFO(hit.time_s << " " << hit.peak << " " << hit.reason);
+  REQUIRE(!search.blocks.empty());
+  modal::RingDownOptions options;
+  options.band_hz = base::Interval{8.0, 25.0};
+  const auto test = modal::ring_down_test(search.blocks, options, {});
+  REQUIRE(test);
+  const auto near = [&](double f) {
+    return std::ranges::any_of(test->modes,
+                               [&](const modal::Mode& m) { return std::abs(m.frequency.value - f) < 0.3; });
+  };
+  for (const auto& mode : test->modes) WARN(mode.frequency.value << " " << mode.damping_ratio.value);
+  CHECK(near(12.0));
+  CHECK(near(17.5));
 }

@@ -176,7 +176,7 @@ TEST_CASE("missing cells and NaN are held out and reported with their times") {
   CHECK(missing->channel == "a");
   CHECK(*missing->from_s == Approx(0.1));
   CHECK(*missing->to_s == Approx(0.6));
-  CHECK(missing->text.find("3 cells without a number in 2 places") == 0);
+  CHECK(missing->text.find("cells without a number: 3, in 2 places") == 0);
   const auto* nan = found(recording.findings, base::Code::not_a_number);
   REQUIRE(nan != nullptr);
   CHECK(nan->channel == "b");
@@ -195,6 +195,17 @@ TEST_CASE("rows that lost their time are left out, and reading keeps in step") {
   CHECK(samples[6999] == 6999.0);
   CHECK(samples[7000] == 7001.0);
   CHECK(samples.back() == 19999.0);
+}
+
+TEST_CASE("a comment at the start of a block and a half-readable time are seen by both passes") {
+  // Blocks are read by 256 KiB: the comment is the last line, without a line end, and so a block of its own.
+  std::string text = "time [s],a [m/s2]\n";
+  for (int i = 0; i < 100; ++i) text += fmt::format("{:.3f},{}\n", 0.001 * i, i);
+  Opened comment(text + "#0.100,5");
+  CHECK(all_samples(*comment.reader)[0].size() == 100);
+  Opened half(text + "0.1.00,5\n0.101,7\n");
+  CHECK(half.recording().frames == 101);
+  CHECK(all_samples(*half.reader)[0].back() == 7.0);
 }
 
 TEST_CASE("long text is read the same from every handle and chunk size") {

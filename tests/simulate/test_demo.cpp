@@ -44,7 +44,7 @@ TEST_CASE("the demo skid rocks crosswise just below its running speed, with litt
   CHECK(near == 1);
 }
 
-TEST_CASE("the demo skid shakes at 7 to 8 mm/s for running speed alone, and 14 kg bring it below 2.8 mm/s") {
+TEST_CASE("the demo skid shakes at 7 to 8 mm/s for running speed alone, and its absorber brings it below 2.8 mm/s") {
   const auto truth = simulate::truth_of(demo());
   CHECK(truth.before.overall_rms[0] > 7e-3);
   CHECK(truth.before.overall_rms[0] < 8e-3);

@@ -36,11 +36,16 @@ struct FittedMode {
   double mass_kg(std::size_t p = 0) const { return 1.0 / std::abs(strength[p]); }
 };
 
-/// What lies outside the lines fitted: c0 + c2 s^2 / (largest |s|)^2, the mass line of the modes below and the
-/// stiffness line of those above.
+/// What lies outside the lines fitted: c0 + c1 (s/S) + c2 (s/S)^2, S the largest |s|: the mass line of the modes below,
+/// the stiffness line of those above, and between them what their damping and the sensors' phase leave.
 struct Residual {
   double mass_line = 0.0;
+  double damping_line = 0.0;
   double stiffness_line = 0.0;
+
+  std::complex<double> at(std::complex<double> relative_s) const {
+    return mass_line + relative_s * (damping_line + relative_s * stiffness_line);
+  }
 };
 
 struct CurveFit {

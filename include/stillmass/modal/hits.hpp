@@ -41,9 +41,9 @@ struct Hit {
 struct HitBlocks {
   double time_s = 0.0;
   double rate_hz = 0.0;
-  std::size_t onset = 0;                       ///< index of the first frame of contact (or of the response's rise)
-  std::size_t contact_end = 0;                 ///< index past the last frame of contact
-  std::vector<double> force;                   ///< N, offset removed, 0 outside the force window; empty: no force
+  std::size_t onset = 0;        ///< index of the first frame of contact; 0 without force: the response's rise
+  std::size_t contact_end = 0;  ///< index past the last frame of contact
+  std::vector<double> force;    ///< N, offset removed, 0 outside the force window; empty: no force
   std::vector<std::vector<double>> responses;  ///< SI, offset removed, one a response channel
 };
 
@@ -77,10 +77,11 @@ struct HitSearch {
 /// cuts out the blocks of the good ones. A blow is a pulse of the force above 2 % of the highest and 8 times the noise;
 /// without force a rise of the response above twice its level of the last 0.5 s, 10 % of the highest and 8 times the
 /// noise. Refused: a second pulse of 4 % within 0.5 s and after the force window; a peak under a quarter of the median;
-/// clipping; less than 0.5 s or half of the usual time to the next blow or the end (common practice, all of them). The
-/// force window is 1 over contact and its filter's ringing (at least 16 frames more), then falls to 0. Memory: the used
-/// blocks and 40 bytes for every 20 ms of the recording. No blow at all gives an empty list, no error. Throws what the
-/// reader throws, `Stopped`, and `Error` (usage) for a channel that is not there or no vibration channel at all.
+/// clipping; less than 0.5 s to the next blow or the end, or less than the response takes to die away, up to 0.8 of the
+/// usual time (common practice, all of them). The force window is 1 over contact and its filter's ringing (at least 16
+/// frames more), then falls to 0. Memory: the used blocks and about 100 bytes for every 20 ms of the recording. No blow
+/// at all gives an empty list, no error. Throws what the reader throws, `Stopped`, and `Error` (usage) for a channel
+/// that is not there or no vibration channel at all.
 HitSearch find_hits(recording::Reader& reader, const HitOptions& options, const base::Context& context);
 
 }  // namespace stillmass::modal

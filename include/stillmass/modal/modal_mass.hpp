@@ -20,9 +20,9 @@ struct AddedMass {
 
 /// Modal mass from the fall of a natural frequency under an added mass: m = dm / ((f0 / f1)^2 - 1), for one mode that
 /// moves along one axis. (A mass feels all three directions: then the result is 1 / (phi_x^2 + phi_y^2 + phi_z^2).)
-/// Several masses: the mean of least variance (the tests share f0, which is taken into account), widened where they scatter
-/// more than their uncertainties allow. Refuses `no-shift` where the frequency did not fall by more than twice its
-/// uncertainty.
+/// Several masses: the mean of least variance (the tests share f0, which is taken into account), widened where they
+/// scatter more than their uncertainties allow. Refuses `no-shift` where the frequency did not fall by more than twice
+/// its uncertainty.
 base::Answer<base::Estimate> mass_from_added_mass(const base::Estimate& frequency_without,
                                                   std::span<const AddedMass> tests);
 

@@ -43,7 +43,7 @@ class Cases {
   /// correlation: row by row, inputs x inputs, symmetric with ones on the diagonal; empty: independent inputs.
   /// Throws `Error` (usage) for a matrix of wrong size, not symmetric or not positive semidefinite, for a u that is
   /// negative or not finite, for a lognormal input with a mean that is not positive.
-  Cases(std::vector<Input> inputs, std::vector<double> correlation, std::uint64_t seed);
+  Cases(std::vector<Input> inputs, const std::vector<double>& correlation, std::uint64_t seed);
 
   const std::vector<Input>& inputs() const { return inputs_; }
   /// Fills `values` (one per input) with case number `n`.
