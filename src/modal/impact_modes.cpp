@@ -32,14 +32,27 @@ base::Interval own_band(const CurveFit& fit, std::size_t r) {
   return {0.5 * (below + f), 0.5 * (f + above)};
 }
 
+/// What was measured less what the fit ascribes to all but one mode.
+std::vector<double> magnitude_alone(const HitSpectra& spectra, const CurveFit& fit, std::size_t mode,
+                                    base::Interval band_hz, const std::vector<Complex>& measured) {
+  CurveFit others = fit;
+  others.modes.erase(others.modes.begin() + static_cast<std::ptrdiff_t>(mode));
+  std::vector<double> magnitude(measured.size(), 0.0);
+  for (std::size_t k = 0; k < measured.size(); ++k) {
+    if (!band_hz.contains(spectra.line_hz * static_cast<double>(k))) continue;
+    magnitude[k] = std::abs(measured[k] - others.accelerance(0, spectra.s(k)));
+  }
+  return magnitude;
+}
+
 Readings read(const Fitted& fitted, const CurveFit& fit, const std::vector<Complex>& first_response) {
-  std::vector<double> magnitude;
-  for (const Complex a : first_response) magnitude.push_back(std::abs(a));
+  const HitSpectra& spectra = fitted.spectra;
   Readings readings;
   for (std::size_t r = 0; r < fit.modes.size(); ++r) {
     Reading reading{fit.modes[r].system, fit.modes[r].mass_kg(), {}};
-    const auto half = half_power(magnitude, fitted.spectra.line_hz, own_band(fit, r), ResponseKind::accelerance,
-                                 fitted.spectra.decay_per_s);
+    const base::Interval band = own_band(fit, r);
+    const std::vector<double> magnitude = magnitude_alone(spectra, fit, r, band, first_response);
+    const auto half = half_power(magnitude, spectra.line_hz, band, ResponseKind::accelerance, spectra.decay_per_s);
     if (half && half->system.damping_ratio > 0.0) reading.half_power = half->system;
     readings.push_back(reading);
   }

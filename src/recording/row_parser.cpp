@@ -159,7 +159,10 @@ bool RowParser::read_time(const char*& at, const char* end) {
     if (!to_next_cell(cell)) return false;
   }
   if (!time_cell(cell, end)) return false;
-  if (*cell != separator_ && !is_blank(*cell) && *cell != '\r' && *cell != '\n') return false;
+  if (!blank_separated_) {
+    while (is_padding(*cell)) ++cell;
+  }
+  if (*cell != separator_ && !(blank_separated_ && is_blank(*cell)) && *cell != '\r' && *cell != '\n') return false;
   at = line_end(cell, end) + 1;
   return true;
 }

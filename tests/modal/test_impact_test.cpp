@@ -53,9 +53,11 @@ TEST_CASE("a hammer test with its imperfections gives frequency, damping and mod
     CHECK(mode.state == "stopped");
     CHECK(mode.methods.front().name == "curve fit");
   }
-  // The half-power bandwidth takes its neighbours for part of the peak: 24 and 31 Hz stand close, 58 and 91 free.
-  REQUIRE(test->modes[2].methods.size() == 2);
-  CHECK(test->modes[2].methods[1].damping_ratio.value == Approx(0.012).epsilon(0.03));
+  for (std::size_t r = 0; r < 4; ++r) {
+    REQUIRE(test->modes[r].methods.size() == 2);
+    CHECK(test->modes[r].methods[1].name == "half-power bandwidth");
+    CHECK(test->modes[r].methods[1].damping_ratio.value == Approx(simulation.modes[r].damping_ratio).epsilon(0.03));
+  }
   CHECK(test->responses[0].coherence.size() == test->responses[0].accelerance.size());
   CHECK(test->findings.empty());
 }

@@ -72,7 +72,6 @@ TEST_CASE("a measured blow on a footbridge has the bridge's natural frequencies"
   open.channels = {setting};
   const auto reader = recording::open(*file, open);
   const modal::HitSearch search = modal::find_hits(*reader, {}, {});
-  for (const auto& hit : search.hits) INFO(hit.time_s << " " << hit.peak << " " << hit.reason);
   REQUIRE(!search.blocks.empty());
   modal::RingDownOptions options;
   options.band_hz = base::Interval{8.0, 25.0};
@@ -82,7 +81,6 @@ TEST_CASE("a measured blow on a footbridge has the bridge's natural frequencies"
     return std::ranges::any_of(test->modes,
                                [&](const modal::Mode& m) { return std::abs(m.frequency.value - f) < 0.3; });
   };
-  for (const auto& mode : test->modes) WARN(mode.frequency.value << " " << mode.damping_ratio.value);
   CHECK(near(12.0));
   CHECK(near(17.5));
 }

@@ -55,10 +55,10 @@ struct ImpactTest {
 
 /// Modes from the blows of an instrumented hammer: averaged accelerances, mode search, curve fit; modal mass where one
 /// response is the driving point; uncertainty from the scatter over hits (jackknife) or about the fit, whichever is
-/// wider, and from calibration. The half-power bandwidth stands beside it as a second method. An exponential window is
-/// put on both signals where the response has not died away within the block, and its damping taken off exactly.
-/// Refuses `no-usable-hit` for no blocks, `no-mode` where no resonance stands out. Throws `Error` (internal) for blocks
-/// that do not fit together, and `Stopped`.
+/// wider, and from calibration. The half-power bandwidth of what is left when the fit's other modes are taken off
+/// stands beside it as a second method. An exponential window is put on both signals where the response has not died
+/// away within the block, and its damping taken off exactly. Refuses `no-usable-hit` for no blocks, `no-mode` where no
+/// resonance stands out. Throws `Error` (internal) for blocks that do not fit together, and `Stopped`.
 base::Answer<ImpactTest> impact_test(std::span<const HitBlocks> hits, const ImpactTestOptions& options,
                                      const base::Context& context);
 
