@@ -150,7 +150,7 @@ fs::path OutputFolder::stage(const std::string& name) {
     check_free(name);
     names_.push_back(name);
   }
-  const fs::path file = staging_ / name;
+  fs::path file = staging_ / name;
   std::error_code fault;
   fs::create_directories(file.parent_path(), fault);
   if (fault) throw cannot_write(file.parent_path(), fault.value());

@@ -146,9 +146,9 @@ SpectrumResult spectrum(const recording::Reader& reader, const SpectrumRequest& 
   }
   for (std::size_t i = 0; i < result.channels.size(); ++i) {
     ChannelSpectrum& each = result.channels[i];
-    for (spectral::Tone& tone : tones[i]) {
+    for (const spectral::Tone& tone : tones[i]) {
       machine::Cause cause = machine::cause_of_peak(tone.frequency, each.shown.line_hz, result.forcing, request.modes);
-      each.peaks.push_back({std::move(tone), std::move(cause)});
+      each.peaks.push_back({tone, std::move(cause)});
     }
     if (!is_motion(each.measured.quantity) || each.measured.density.empty()) {
       each.severity = base::Refusal{"limit-unknown", "the channel is not a vibration", ""};
