@@ -48,11 +48,6 @@ RequiredMargin required_margin(double amplification_factor) {
   return {below, below + 0.10};
 }
 
-double sweep_rate_limit(double frequency_hz, double damping_ratio) {
-  const double over_q = 2.0 * damping_ratio * frequency_hz;
-  return 54.0 / 60.0 * over_q * over_q;
-}
-
 std::optional<base::Finding> sweep_check(const Mode& mode, double rate_hz_per_s) {
   const double limit = sweep_rate_limit(mode.frequency.value, mode.damping_ratio.value);
   if (std::abs(rate_hz_per_s) <= limit) return std::nullopt;

@@ -9,6 +9,7 @@
 #include "stillmass/base/finding.hpp"
 #include "stillmass/base/interval.hpp"
 #include "stillmass/modal/mode.hpp"
+#include "stillmass/rotation/sweep.hpp"
 
 namespace stillmass::modal {
 
@@ -39,9 +40,8 @@ struct RequiredMargin {
 };
 RequiredMargin required_margin(double amplification_factor);
 
-/// The fastest linear sweep, Hz per second, that loses no more than about 5 % of a resonance peak:
-/// 54 f^2 / Q^2 Hz per minute, Q = 1 / (2 z) (ISO 7626-2; from memory. Direct simulation loses 5.4 to 5.7 %).
-double sweep_rate_limit(double frequency_hz, double damping_ratio);
+/// The fastest sweep that loses no more than about 5 % of a resonance peak.
+using rotation::sweep_rate_limit;
 /// Finding `sweep_too_fast` where |rate| (Hz/s of the exciting frequency) exceeds that limit.
 std::optional<base::Finding> sweep_check(const Mode& mode, double rate_hz_per_s);
 
