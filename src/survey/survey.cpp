@@ -304,6 +304,8 @@ SurveyResult run(const Survey& survey, const base::Context& context) {
     step::CheckRequest request;
     request.part = part_of(survey.recordings[i]);
     request.line_frequency_hz = survey.machine.line_frequency_hz;
+    request.pulses_per_turn = survey.recordings[i].pulses_per_turn;
+    request.falling_edge = survey.recordings[i].falling_edge;
     result.quality.push_back({i, step::check(*readers[i], request, part_of(context, step++, steps))});
   }
 

@@ -30,6 +30,9 @@ enum class Code {
   aliasing_suspected,
   identical_channels,
   unit_suspected,
+  channels_swapped,
+  mounting_resonance,
+  calibration_off,
   // of tests
   double_hit,
   weak_hit,
@@ -39,6 +42,7 @@ enum class Code {
   sweep_too_fast,
   missing_pulses,
   extra_pulses,
+  no_pulses,
   // of the chain from test to specification
   unit_assumed,
   calibration_assumed,
