@@ -314,6 +314,15 @@ std::string when(const base::Finding& finding) {
   return fmt::format(" from {:.2f} to {:.2f} s", *finding.from_s, *finding.to_s);
 }
 
+std::string uncertainty_note(const step::SpectrumResult& result) {
+  const bool is_calibrated =
+      std::all_of(result.channels.begin(), result.channels.end(),
+                  [](const step::ChannelSpectrum& each) { return each.channel.factor_u.has_value(); });
+  return is_calibrated ? "+- is the standard uncertainty, that of the sensor's calibration included."
+                       : "+- is the standard uncertainty from this recording; the sensor's calibration comes on top "
+                         "(usually 2 to 5 %).";
+}
+
 std::string sentence(const base::Refusal& refusal) {
   return refusal.measure.empty() ? refusal.seen : refusal.seen + "; " + refusal.measure;
 }
