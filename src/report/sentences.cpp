@@ -435,6 +435,10 @@ std::vector<std::string> cautions(const survey::SurveyResult& result) {
         "explosive "
         "atmospheres no hammer and no battery instrument without a permit.");
   }
+  const auto& recordings = result.survey.recordings;
+  if (std::any_of(recordings.begin(), recordings.end(), [](const auto& each) { return each.hung_mass.has_value(); })) {
+    out.push_back("Hang a test mass low, on rated gear with a second sling, and let nobody stand under it.");
+  }
   if (!result.runups.empty()) out.push_back("Keep to the motor's starts per hour; do not dwell on a resonance.");
   if (!result.absorbers.empty()) {
     for (const std::string& each : absorber_cautions()) out.push_back(each);

@@ -243,9 +243,12 @@ class Calibrator {
       for (ChannelSetting& setting : target.open.channels) {
         if (setting.role == Role::tacho || setting.role == Role::force) continue;
         if (setting.unit && setting.unit->quantity == Quantity::force) continue;
-        Correction correction = setting.correction.value_or(Correction{1.0, assumed_u, {}});
-        correction.relative_u = same_sensor(source, setting) ? 0.0 : std::hypot(correction.relative_u, response_u);
-        setting.correction = correction;
+        if (same_sensor(source, setting)) {
+          setting.correction = Correction{setting.correction ? setting.correction->factor : 1.0, 0.0,
+                                          setting.correction ? setting.correction->unit : std::nullopt};
+        } else if (setting.correction) {  // without one the hammer test assumes its uncertainty, and says so
+          setting.correction->relative_u = std::hypot(setting.correction->relative_u, response_u);
+        }
       }
     }
   }
