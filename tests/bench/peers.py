@@ -75,6 +75,10 @@ def runup(file):
     signal.spectrogram(angular, 64, window="hann", nperseg=512, noverlap=384, detrend=False, mode="complex")
 
 
+def clocks():
+    return time.perf_counter(), time.process_time()
+
+
 def cases(count):
     import numpy as np
     n = np.arange(1, count + 1)
@@ -94,11 +98,11 @@ def minimax(count):
     from scipy.optimize import minimize
     s = np.linspace(0.75, 1.2, 400)**2
     mu, z1, _ = cases(int(count))
-    before = time.perf_counter()
+    before = clocks()
     for m, z in zip(mu, z1):
         minimize(lambda p: velocity(s, m, z, p[0], p[1]).max(), [(1 + m)**-0.75, 0.6 * np.sqrt(m)], method="Nelder-Mead",
                  options={"xatol": 1e-4, "fatol": 1e-4})
-    print("kernel_s", time.perf_counter() - before)
+    print("kernel_s", *(after - then for then, after in zip(before, clocks())))
 
 
 def robust(count):
@@ -106,10 +110,10 @@ def robust(count):
     from scipy.optimize import minimize
     s = (np.linspace(0.7, 1.25, 300)**2)[:, None]
     mu, z1, frequency = cases(int(count))
-    before = time.perf_counter()
+    before = clocks()
     minimize(lambda p: np.quantile(velocity(s, mu, z1, p[0] / frequency, p[1]).max(axis=0), 0.95),
              [1.1**-0.75, 0.6 * np.sqrt(0.1)], method="Nelder-Mead", options={"xatol": 5e-4, "fatol": 1e-3})
-    print("kernel_s", time.perf_counter() - before)
+    print("kernel_s", *(after - then for then, after in zip(before, clocks())))
 
 
 def start():
