@@ -54,9 +54,10 @@ Tuned robust(std::span<const MachineCase> cases, Forcing forcing, Objective obje
     hints[i] = peaks;
     return std::max(response.value((*peaks)[0]), response.value((*peaks)[1]));
   };
+  constexpr std::size_t grain = 1024;  // a case takes 0.1 us: fewer are not worth a thread
   const auto cost = [&](double tuning, double damping) {
     base::for_ranges(
-        context, cases.size(), 128,
+        context, cases.size(), grain,
         [&](std::size_t begin, std::size_t end) {
           for (std::size_t i = begin; i < end; ++i) heights[i] = height(i, tuning, damping);
           return true;
