@@ -77,6 +77,8 @@ Tuned robust(std::span<const MachineCase> cases, Forcing forcing, Objective obje
     middle.machine_damping += machine.machine_damping / static_cast<double>(cases.size());
   }
   const Sizing start = minimax(middle);
+  const Coupled at_start(middle.mass_ratio, middle.machine_damping, start.tuning, start.damping_ratio);
+  hints.assign(cases.size(), two_peaks(Response(at_start, forcing, objective), {}));
   return least_cost(cost, {start.tuning, start.damping_ratio, 0.0}, 0.02, 0.2, 5e-4, middle.least_damping);
 }
 
