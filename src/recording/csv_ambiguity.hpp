@@ -2,12 +2,14 @@
 
 #include <string>
 
+#include "stillmass/recording/text_options.hpp"
+
 #include "recording/csv_dialect.hpp"
 
 namespace stillmass::recording {
 
-/// Throws `Error` (file, at `where`) for a comma that may be a decimal sign as well as something else: a guess would
-/// change the numbers.
-void refuse_ambiguity(const CsvDialect& dialect, const std::string& where);
+/// Throws `Error` (file, at `where`) for a comma or a point that may be a decimal sign as well as something else, unless
+/// the user has said what it is: a guess would change the numbers. Numbers with a sign between thousands are refused.
+void refuse_ambiguity(const CsvDialect& dialect, const TextOptions& options, const std::string& where);
 
 }  // namespace stillmass::recording

@@ -10,6 +10,7 @@
 
 #include "recording/csv_ambiguity.hpp"
 #include "recording/csv_cell.hpp"
+#include "recording/csv_dates.hpp"
 
 namespace stillmass::recording {
 namespace {
@@ -137,14 +138,21 @@ std::vector<Line> lines_of(std::string_view probe, bool whole_text) {
   return lines;
 }
 
-std::optional<CsvDialect> recognise(std::string_view probe, bool whole_text) {
+// The user's word goes first; commas alone can be both only within quotes.
+bool possible(const Way& way, const TextOptions& options, bool quotes) {
+  if (options.separator && *options.separator != way.separator) return false;
+  if (options.decimal && *options.decimal != way.decimal) return false;
+  return way.separator != ',' || way.decimal != ',' || quotes;
+}
+
+std::optional<CsvDialect> recognise(std::string_view probe, bool whole_text, const TextOptions& options) {
   const std::vector<Line> lines = lines_of(probe, whole_text);
   // Of a long header the end matters, of a long table any part: look at the last lines.
   const std::size_t skipped = lines.size() > lines_looked_at ? lines.size() - lines_looked_at : 0;
   const std::vector<Line> looked_at(lines.begin() + static_cast<std::ptrdiff_t>(skipped), lines.end());
   Reading best;
   for (const Way& way : ways) {
-    if (way.separator == ',' && way.decimal == ',' && probe.find('"') == std::string_view::npos) continue;
+    if (!possible(way, options, probe.find('"') != std::string_view::npos)) continue;
     Reading reading = read_in(looked_at, way);
     if (reading.score > best.score) best = std::move(reading);
   }
@@ -176,35 +184,26 @@ std::optional<CsvDialect> recognise(std::string_view probe, bool whole_text) {
 
 }  // namespace
 
-CsvDialect recognise_dialect(const TextSource& text) {
+CsvDialect recognise_dialect(const TextSource& text, const TextOptions& options) {
   std::optional<CsvDialect> dialect;
   for (const std::size_t bytes : probe_sizes) {
     std::string probe(bytes, '\0');
     probe.resize(text.read_at(0, probe.data(), probe.size()));
     const bool whole_text = static_cast<std::int64_t>(probe.size()) >= text.size();
-    dialect = recognise(probe, whole_text);
+    dialect = recognise(probe, whole_text, options);
     if (dialect || whole_text) break;
   }
   const std::string& name = text.file().name();
   if (!dialect || dialect->numeric.empty()) {
-    throw base::file_error(name, "is text without a table of numbers of at least two rows",
+    const bool told = options.separator || options.decimal;
+    throw base::file_error(name,
+                           std::string("is text without a table of numbers of at least two rows") +
+                               (told ? ", written as the options say" : ""),
                            "give one row of samples a line, columns apart by comma, semicolon, tab or blanks");
   }
-  refuse_ambiguity(*dialect, name);
+  refuse_ambiguity(*dialect, options, name);
+  settle_date_order(*dialect, text, options);
   return *dialect;
-}
-
-std::string_view separator_name(char separator) {
-  switch (separator) {
-    case '\t':
-      return "tab";
-    case ';':
-      return "semicolon";
-    case ',':
-      return "comma";
-    default:
-      return "blanks";
-  }
 }
 
 }  // namespace stillmass::recording
