@@ -104,6 +104,29 @@ std::string cell_with_thousands(const CsvDialect& dialect) {
 
 }  // namespace
 
+namespace {
+
+// "10:15:00,250,1.5": clock times without a fraction and, behind the comma, digits of equal number in every row, three or
+// six: a column, or the fraction?
+bool fraction_split_off(const CsvDialect& dialect) {
+  if (dialect.separator != ',' || dialect.quoted) return false;
+  std::vector<std::string_view> cells;
+  for (std::size_t c = 0; c + 1 < dialect.numeric.size(); ++c) {
+    bool all = true;
+    for (const std::string& row : dialect.rows) {
+      split_cells(row, ',', cells);
+      const bool split = c + 1 < cells.size() && parse_timestamp(cells[c]) && fraction_digits(cells[c]) == 0 &&
+                         all_digits(bare(cells[c + 1])) &&
+                         (bare(cells[c + 1]).size() == 3 || bare(cells[c + 1]).size() == 6);
+      all = all && split;
+    }
+    if (all) return true;
+  }
+  return false;
+}
+
+}  // namespace
+
 void refuse_ambiguity(const CsvDialect& dialect, const TextOptions& options, const std::string& where) {
   if (!options.separator && !options.decimal && comma_is_ambiguous(dialect)) {
     throw base::file_error(
@@ -111,6 +134,10 @@ void refuse_ambiguity(const CsvDialect& dialect, const TextOptions& options, con
         fmt::format("a comma in \"{}\" may be a decimal sign or stand between columns",
                     base::printable(base::trimmed(dialect.rows.front()).substr(0, 40))),
         "say which with --separator comma or --decimal comma, or export it with semicolons between columns");
+  }
+  if (fraction_split_off(dialect)) {
+    throw base::file_error(where, "the comma behind the clock times may be a decimal sign or stand between columns",
+                           "export it with a point in the times, or with semicolons between columns");
   }
   const std::string grouped_number = cell_with_thousands(dialect);
   if (!grouped_number.empty()) {

@@ -126,6 +126,25 @@ std::vector<bool> numeric_columns(const Reading& reading, std::size_t first) {
   return numeric;
 }
 
+// The line in which names of other columns stand between rows of different length: two tables in one file.
+std::optional<std::size_t> next_table(const Reading& reading, std::size_t first) {
+  const auto is_row = [](const std::string& letters) { return count(letters, 'n') > 0; };
+  std::size_t row_before = first;
+  std::optional<std::size_t> names;
+  for (std::size_t i = first; i < reading.signatures.size(); ++i) {
+    const std::string& letters = reading.signatures[i];
+    if (letters.empty()) continue;
+    if (is_row(letters)) {
+      if (names && letters.size() != reading.signatures[row_before].size()) return names;
+      names.reset();
+      row_before = i;
+    } else if (count(letters, 't') >= 2) {
+      names = i;
+    }
+  }
+  return {};
+}
+
 std::vector<Line> lines_of(std::string_view probe, bool whole_text) {
   std::vector<Line> lines;
   std::size_t begin = 0;
@@ -163,8 +182,19 @@ std::optional<CsvDialect> recognise(std::string_view probe, bool whole_text, con
     all.row = best.row;
     return all;
   }();
-  const auto first = first_row(whole);
+  auto first = first_row(whole);
   if (!first) return {};
+  while (const auto other = next_table(whole, *first)) {
+    const auto rows = static_cast<std::size_t>(
+        std::count_if(whole.signatures.begin() + static_cast<std::ptrdiff_t>(*first),
+                      whole.signatures.begin() + static_cast<std::ptrdiff_t>(*other),
+                      [&](const std::string& letters) { return fits(letters, whole.row); }));
+    // A few rows of numbers above the table belong to its header; a table that follows the first one does not count.
+    if (rows >= following_lines) return recognise(probe.substr(0, lines[*other].offset), true, options);
+    first = other;
+    while (*first < lines.size() && !fits(whole.signatures[*first], whole.row)) ++*first;
+    if (*first == lines.size()) return {};
+  }
 
   CsvDialect dialect;
   dialect.separator = best.way.separator;
@@ -199,7 +229,8 @@ CsvDialect recognise_dialect(const TextSource& text, const TextOptions& options)
     throw base::file_error(name,
                            std::string("is text without a table of numbers of at least two rows") +
                                (told ? ", written as the options say" : ""),
-                           "give one row of samples a line, columns apart by comma, semicolon, tab or blanks");
+                           told ? "leave --separator and --decimal out, or check them"
+                                : "give one row of samples a line, columns apart by comma, semicolon, tab or blanks");
   }
   refuse_ambiguity(*dialect, options, name);
   settle_date_order(*dialect, text, options);

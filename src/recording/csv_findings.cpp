@@ -33,11 +33,11 @@ void note_bad_cells(base::Code code, const char* what, const BadCells& cells, co
   recording.findings.push_back(std::move(finding));
 }
 
-void note_lines(base::Code code, const OddLines& odd, std::string_view one, std::string_view many,
+void note_lines(base::Code code, const OddLines& odd, std::string_view what, std::string_view then,
                 base::Strength strength, Recording& recording) {
   if (odd.lines == 0) return;
-  base::Finding finding{code, fmt::format("{}, {}line {}", counted(odd.lines, one, many),
-                                          odd.lines == 1 ? "" : "the first in ", odd.first_line)};
+  base::Finding finding{code, fmt::format("{} in line {}{}{}", what, odd.first_line,
+                                          odd.lines == 1 ? "" : fmt::format(" and {} more", odd.lines - 1), then)};
   finding.from_s = odd.first_s;
   finding.to_s = odd.last_s;
   finding.strength = strength;
@@ -46,8 +46,7 @@ void note_lines(base::Code code, const OddLines& odd, std::string_view one, std:
 
 void note_other_table(const OddLines& other, Recording& recording) {
   base::Finding finding{base::Code::odd_lines,
-                        fmt::format("another table begins in line {}; it is left out, save it as a file of its own",
-                                    other.first_line)};
+                        fmt::format("a table of other columns follows and is left out, from line {} on", other.first_line)};
   finding.from_s = other.first_s;
   recording.findings.push_back(std::move(finding));
 }
@@ -73,16 +72,15 @@ void note_scan(const CsvScan& scan, const TextSource& text, Recording& recording
         "than 1 % up to {} Hz",
         base::rounded(recording.rate_hz, 5), base::rounded(even_limit_hz(scan.grid.widest_step_s), 2));
   }
-  note_lines(Code::odd_lines, scan.headers, "time the header stands again: the logger was restarted",
-             "times the header stands again: the logger was restarted", Strength::strong, recording);
-  note_lines(Code::odd_lines, scan.texts, "place where text stands between the rows",
-             "places where text stands between the rows",
+  note_lines(Code::odd_lines, scan.headers, "the header stands again", ": the logger was restarted", Strength::strong,
+             recording);
+  note_lines(Code::odd_lines, scan.texts, "text stands between the rows", "",
              scan.restarts.empty() ? Strength::weak : Strength::strong, recording);
-  note_lines(Code::odd_lines, scan.too_long, "row has more cells than columns, the rest of it is left out",
-             "rows have more cells than columns, the rest of them is left out", Strength::fair, recording);
+  note_lines(Code::odd_lines, scan.too_long, "a row has more cells than columns, those are left out,", "",
+             Strength::fair, recording);
   if (scan.other_table) note_other_table(*scan.other_table, recording);
-  note_lines(Code::missing_values, scan.without_time, "row without a time is left out",
-             "rows without a time are left out", Strength::strong, recording);
+  note_lines(Code::missing_values, scan.without_time, "a row has no time and is left out,", "", Strength::strong,
+             recording);
   note_padding(text, recording);
   for (std::size_t c = 0; c < recording.channels.size(); ++c) {
     const std::string& name = recording.channels[c].name;

@@ -16,7 +16,7 @@ constexpr auto time_names = std::to_array<std::string_view>(
     {"t",          "x_value",      "x value",     "elapsed",   "elapsed time", "abs time", "absolute time",
      "rel time",   "relative time", "date/time",  "datetime",  "date time",    "zeit",     "uhrzeit",
      "messzeit",   "zeitstempel",  "zeitpunkt",   "temps",     "tiempo",       "tempo",    "tijd",
-     "tid",        "czas",         "aika",        "clock",     "epoch",        "unix",     "unixtime"});
+     "tid",        "czas",         "aika",        "clock",     "epoch",        "ts", "timestamp", "unix",     "unixtime"});
 constexpr auto counter_names = std::to_array<std::string_view>(
     {"index", "idx", "sample",  "samples", "sample no", "sample no.", "sample number", "sample_number", "no",   "no.",
      "nr",    "nr.", "#",       "n",       "row",       "count",      "counter",       "scan",          "record", "point",

@@ -53,7 +53,9 @@ bool may_be_days(const CsvColumn& column) {
 
 TimeUnit unit_of(const CsvColumn& column, const ColumnLabel& label, const OpenOptions& options,
                  const std::string& where, std::size_t field) {
-  if (options.text.time_unit_s) return {*options.text.time_unit_s, "unit as stated"};
+  if (options.text.time_unit_s) {
+    return {*options.text.time_unit_s, fmt::format("{}, as stated", time_unit_name(*options.text.time_unit_s))};
+  }
   if (label.unit && label.unit->quantity == base::Quantity::time) {
     return {label.unit->to_si, std::string(label.unit->name)};
   }
@@ -81,7 +83,9 @@ TimeUnit unit_of(const CsvColumn& column, const ColumnLabel& label, const OpenOp
 bool has_times(const CsvDialect& dialect, const std::vector<ColumnLabel>& labels, std::size_t field) {
   if (!dialect.numeric[field]) return false;
   const CsvColumn column = column_of(dialect, field);
-  return (labels[field].is_time || column.stamps) && column.grows();
+  if (column.values.empty()) return false;
+  const bool epoch = field == 0 && !labels[field].unit && column.median_step() > 0.0 && since_1970(column);
+  return (labels[field].is_time || column.stamps || epoch) && column.grows();
 }
 
 // Of the times that stand before the first signal, the first that goes on with each row: a date and time in whole

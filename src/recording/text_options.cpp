@@ -23,9 +23,9 @@ std::optional<T> named(const std::array<Word<T>, count>& words, std::string_view
   return found == words.end() ? std::nullopt : std::optional(found->second);
 }
 
-template <std::size_t count>
-std::string_view name_of(const std::array<Word<char>, count>& words, char sign) {
-  const auto found = std::find_if(words.begin(), words.end(), [&](const auto& each) { return each.second == sign; });
+template <typename T, std::size_t count>
+std::string_view name_of(const std::array<Word<T>, count>& words, T meant) {
+  const auto found = std::find_if(words.begin(), words.end(), [&](const auto& each) { return each.second == meant; });
   return found == words.end() ? std::string_view() : found->first;
 }
 
@@ -38,5 +38,6 @@ std::optional<bool> day_first_named(std::string_view word) { return named(date_o
 
 std::string_view separator_name(char separator) { return name_of(separators, separator); }
 std::string_view decimal_name(char decimal) { return name_of(decimals, decimal); }
+std::string_view time_unit_name(double unit_s) { return name_of(time_units, unit_s); }
 
 }  // namespace stillmass::recording

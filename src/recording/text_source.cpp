@@ -11,6 +11,7 @@ namespace stillmass::recording {
 namespace {
 
 constexpr std::size_t probe_bytes = 64 * 1024;
+constexpr std::size_t damaged_share = 100;   // one control character in so many is damage, more are no text
 constexpr std::size_t unmarked_bytes = 512;  // looked at for UTF-16 without a byte order mark
 
 bool is_control(char c) {
@@ -52,7 +53,8 @@ TextSource::TextSource(std::shared_ptr<const InputFile> file) : file_(std::move(
 
   std::string text(probe_bytes, '\0');
   text.resize(read_at(0, text.data(), text.size()));
-  if (std::any_of(text.begin(), text.end(), is_control)) {
+  const auto controls = static_cast<std::size_t>(std::count_if(text.begin(), text.end(), is_control));
+  if (controls > text.size() / damaged_share) {
     throw base::file_error(file_->name(), "is neither a sound file nor text",
                            "give a recording as WAV, RF64, W64, FLAC, AIFF or as CSV text");
   }

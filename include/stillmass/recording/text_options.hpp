@@ -22,5 +22,6 @@ std::optional<bool> day_first_named(std::string_view word);    ///< day-first, m
 
 std::string_view separator_name(char separator);
 std::string_view decimal_name(char decimal);
+std::string_view time_unit_name(double unit_s);
 
 }  // namespace stillmass::recording
