@@ -54,26 +54,13 @@ bool grouped(std::string_view number, char sign) {
          number.size() - at - 1 == 3;
 }
 
-// Groups of three digits with signs between and decimals behind, or two such signs: "1.234,5", "1,234,567".
-bool surely_grouped(std::string_view cell) {
-  for (const std::string_view signs : {".,", ",.", "'.", "',"}) {
-    const auto first = cell.find(signs[0]);
-    if (first == std::string_view::npos || first == 0 || first > 3 || cell.front() == '0') continue;
-    const auto next = cell.find_first_not_of("0123456789", first + 1);
-    if (!all_digits(cell.substr(0, first)) || next != first + 4) continue;
-    const std::string_view rest = cell.substr(next);
-    if ((rest.front() == signs[1] || rest.front() == signs[0]) && all_digits(rest.substr(1, 3))) return true;
-  }
-  return false;
-}
-
 template <typename Visit>
 void for_each_number(const CsvDialect& dialect, Visit visit) {
   std::vector<std::string_view> cells;
   for (const std::string& row : dialect.rows) {
     split_cells(row, dialect.separator, cells);
-    for (std::size_t c = 0; c < cells.size() && c < dialect.numeric.size(); ++c) {
-      if (!visit(without_sign(bare(cells[c])))) return;
+    for (const std::string_view cell : cells) {
+      if (!visit(without_sign(bare(cell)))) return;
     }
   }
 }
@@ -85,9 +72,11 @@ bool thousands_possible(const CsvDialect& dialect) {
   bool seen = false;
   bool all = true;
   for_each_number(dialect, [&](std::string_view number) {
-    if (number.find(dialect.decimal) == std::string_view::npos) return true;
-    seen = true;
-    all = grouped(number, dialect.decimal);
+    const CellKind kind = read_cell(number, dialect.decimal).kind;
+    const bool signed_number = kind == CellKind::number && number.find(dialect.decimal) != std::string_view::npos;
+    const bool fine_stamp = kind == CellKind::time && fraction_digits(number) > 0;
+    seen = seen || signed_number || fine_stamp;
+    all = all && !fine_stamp && (!signed_number || grouped(number, dialect.decimal));
     return all;
   });
   return seen && all;
@@ -96,13 +85,32 @@ bool thousands_possible(const CsvDialect& dialect) {
 std::string cell_with_thousands(const CsvDialect& dialect) {
   std::string found;
   for_each_number(dialect, [&](std::string_view number) {
-    if (surely_grouped(number)) found = base::printable(number);
+    if (is_grouped_number(number)) found = base::printable(number);
     return found.empty();
   });
   return found;
 }
 
 }  // namespace
+
+bool is_grouped_number(std::string_view cell) {
+  cell = without_sign(bare(cell));
+  for (const std::string_view signs : {".,", ",.", "'.", "',"}) {
+    std::string_view rest = cell;
+    const auto whole = rest.find(signs[0]);
+    if (whole == std::string_view::npos || whole > 3 || !all_digits(rest.substr(0, whole))) continue;
+    if (rest.front() == '0') continue;
+    rest.remove_prefix(whole);
+    int groups = 0;
+    while (rest.size() >= 4 && rest.front() == signs[0] && all_digits(rest.substr(1, 3))) {
+      rest.remove_prefix(4);
+      ++groups;
+    }
+    const bool decimals = rest.size() > 1 && rest.front() == signs[1] && all_digits(rest.substr(1));
+    if ((groups >= 1 && decimals) || (groups >= 2 && rest.empty())) return true;
+  }
+  return false;
+}
 
 namespace {
 

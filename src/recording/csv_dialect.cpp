@@ -40,7 +40,9 @@ std::string signature_of(std::string_view line, const Way& way, std::vector<std:
   std::string letters;
   for (const std::string_view cell : cells) {
     const CellKind kind = read_cell(cell, way.decimal).kind;
-    letters.push_back(kind == CellKind::empty ? 'e' : (kind == CellKind::text ? 't' : 'n'));
+    // A number with signs between thousands is one here, so that it is refused as such and not as text.
+    const bool text = kind == CellKind::text && !is_grouped_number(cell);
+    letters.push_back(kind == CellKind::empty ? 'e' : (text ? 't' : 'n'));
   }
   letters.erase(letters.find_last_not_of('e') + 1);
   return letters;
@@ -62,7 +64,9 @@ Reading read_in(const std::vector<Line>& lines, const Way& way) {
   std::vector<std::string_view> cells;
   std::map<std::string, long> rows;
   for (const Line& line : lines) {
-    reading.signatures.push_back(is_blank_or_comment(line.text) ? "" : signature_of(line.text, way, cells));
+    const bool comment = is_blank_or_comment(line.text) ||
+                         (way.separator != ';' && base::trimmed(line.text).starts_with(';'));
+    reading.signatures.push_back(comment ? "" : signature_of(line.text, way, cells));
     ++rows[reading.signatures.back()];
   }
   for (const auto& [letters, times] : rows) {

@@ -106,8 +106,8 @@ class Scanner {
       }
       if (!between_.empty() && settle_between(line)) return;
       mark(start, parser_.time_s());
-      if (too_long(line)) count(scan_.too_long);
       if (table_.has_time) grid_.add(parser_.time_s());
+      if (too_long(line)) count(scan_.too_long);
       for (const RowParser::BadCell& bad : parser_.bad_cells()) note(bad);
       ++rows_;
     }

@@ -169,9 +169,21 @@ void note_missing_end(Recording& recording, std::int64_t promised) {
   const double from = static_cast<double>(recording.frames) / recording.rate_hz;
   const double to = static_cast<double>(promised) / recording.rate_hz;
   base::Finding finding{base::Code::truncated, fmt::format("the file ends after {} s, its header promises {} s",
-                                                           base::rounded(from, 5), base::rounded(to, 5))};
+                                                           base::plain(from), base::plain(to))};
   finding.from_s = from;
   finding.to_s = to;
+  recording.findings.push_back(std::move(finding));
+}
+
+// The recorder never came to fill in the sizes: all that is there is read, but nobody knows whether more was recorded.
+void note_open_end(Recording& recording, const std::optional<RiffHeader>& riff) {
+  if (!riff || riff->declared_bytes) return;
+  const double end = recording.duration_s();
+  base::Finding finding{base::Code::truncated,
+                        fmt::format("the header was never completed; the file is read to its end at {} s",
+                                    base::plain(end))};
+  finding.from_s = end;
+  finding.strength = base::Strength::weak;
   recording.findings.push_back(std::move(finding));
 }
 
@@ -221,6 +233,7 @@ std::unique_ptr<Reader> open_sound(std::shared_ptr<const InputFile> file, const 
   }
   recording->segments = {{0, recording->frames, 0.0}};
   note_missing_end(*recording, promised_frames(*source->file, riff, sound));
+  note_open_end(*recording, riff);
   recording->channels = plain_channels(sound);
   apply_settings(recording->channels, options.channels, path, recording->findings);
   return std::make_unique<SoundRecording>(std::move(source), std::move(recording));

@@ -68,6 +68,11 @@ double round_rate(double rate_hz, double relative_uncertainty) {
   return rate_hz;
 }
 
+std::string missing_text(double from_s, double jump_s, double samples) {
+  return fmt::format("after {} s the times jump by {} s, {:.0f} {} missing", base::plain(from_s), base::rounded(jump_s),
+                     samples, samples == 1.0 ? "sample is" : "samples are");
+}
+
 base::Finding finding(base::Code code, std::string text, double from_s, double to_s) {
   base::Finding found{code, std::move(text)};
   found.from_s = from_s;
@@ -173,9 +178,8 @@ GridVerdict TimeGrid::verdict(const std::vector<RowTime>& remembered, const std:
     const bool back = std::find(jumps_back_.begin(), jumps_back_.end(), i) != jumps_back_.end();
     std::string text =
         back ? fmt::format("after {} s the times jump back by {} s; how long the pause was is not known",
-                           base::rounded(from, 5), base::rounded(-jump))
-             : fmt::format("after {} s the times jump by {} s, {:.0f} samples are missing", base::rounded(from, 5),
-                           base::rounded(jump), std::max(1.0, std::round(jump * verdict.rate_hz) - 1.0));
+                           base::plain(from), base::rounded(-jump))
+             : missing_text(from, jump, std::max(1.0, std::round(jump * verdict.rate_hz) - 1.0));
     if (i == gaps_listed && parts.size() - 1 > gaps_listed) {
       text += fmt::format("; {} more gaps follow", parts.size() - 1 - gaps_listed);
     }
