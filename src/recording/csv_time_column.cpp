@@ -131,6 +131,17 @@ std::size_t stated_field(const CsvDialect& dialect, int column, const std::strin
   return field;
 }
 
+// Times before it and signals behind it: the second of two tables side by side.
+bool begins_table(const CsvDialect& dialect, const std::vector<ColumnLabel>& labels, std::size_t field) {
+  bool times_before = false;
+  bool signals_behind = false;
+  for (std::size_t c = 0; c < labels.size(); ++c) {
+    if (c < field) times_before = times_before || has_times(dialect, labels, c);
+    if (c > field) signals_behind = signals_behind || (dialect.numeric[c] && !has_times(dialect, labels, c));
+  }
+  return times_before && signals_behind;
+}
+
 std::string stamps_text(const CsvColumn& column, std::size_t field) {
   const std::string& first = column.texts.front();
   if (date_part(first).empty()) return fmt::format("time of day in column {}", field + 1);
@@ -154,7 +165,7 @@ std::optional<TimeColumn> find_time_column(const CsvDialect& dialect, const std:
   if (!field) return {};
   time.field = *field;
   time.column = column_of(dialect, *field);
-  for (std::size_t c = 0; stated && c < *field; ++c) time.other_table |= has_times(dialect, labels, c);
+  time.other_table = stated && begins_table(dialect, labels, *field);
   if (time.counts) {
     time.to_s = 1.0 / *options.rate_hz;
     time.text = fmt::format("times from the row numbers in column {}", *field + 1);

@@ -42,9 +42,10 @@ void read_format(const Walker& walker, std::int64_t at, RiffHeader& header) {
   header.bits = static_cast<int>(walker.number(at + 14, 2));
   if (header.format_tag == extensible) header.format_tag = static_cast<int>(walker.number(at + 24, 2));
   const int least_bytes = (header.bits + 7) / 8;
-  const bool sound = header.channels > 0 && header.frame_bytes % header.channels == 0 &&
-                     header.sample_bytes() >= least_bytes && header.sample_bytes() <= 8;
-  if (!sound) header.frame_bytes = header.channels * least_bytes;
+  // 24 bits in 4 bytes are seen; else a sample takes the bytes that its bits need.
+  const bool agrees = header.channels > 0 && header.frame_bytes % header.channels == 0 &&
+                      (header.sample_bytes() == least_bytes || (header.bits == 24 && header.sample_bytes() == 4));
+  if (!agrees) header.frame_bytes = header.channels * least_bytes;
 }
 
 // Sizes of the data chunk: what the header says against what is there.

@@ -54,7 +54,9 @@ class SoundRecording : public Reader {
     for (std::size_t done = 0; done < chunk.frames;) {
       const std::size_t count = std::min(frames_at_once, chunk.frames - done);
       const auto read = sound_.read(interleaved_.data(), static_cast<std::int64_t>(count));
-      if (read != static_cast<std::int64_t>(count)) broken_at(at_ + static_cast<std::int64_t>(done));
+      if (read != static_cast<std::int64_t>(count)) {
+        broken_at(at_ + static_cast<std::int64_t>(done) + std::max<std::int64_t>(0, read));
+      }
       for (std::size_t c = 0; c < channels; ++c) spread(chunk, c, done, count);
       done += count;
     }
@@ -85,7 +87,7 @@ class SoundRecording : public Reader {
 
   [[noreturn]] void broken_at(std::int64_t frame) const {
     throw base::file_error(source_->file->name(),
-                           fmt::format("cannot be read from {} s on", base::rounded(recording_->time_s(frame), 6)),
+                           fmt::format("cannot be read from {} s on", base::plain(recording_->time_s(frame))),
                            "copy it again, or use --to to stop before that");
   }
 
