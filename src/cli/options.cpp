@@ -24,6 +24,15 @@ constexpr auto options = std::to_array<Option>({
      "mm, m, N, V, 1, tacho; SCALE in units per 1.0 of the stored sample (full scale of an integer file)",
      recordings},
     {"--rate", "HZ", Rule::positive, false, "sampling rate of a text file without a time column", recordings},
+    {"--separator", "comma|semicolon|tab|blanks", Rule::choice, false,
+     "what stands between the columns of a text file (default: recognised)", recordings},
+    {"--decimal", "point|comma", Rule::choice, false, "decimal sign of a text file (default: recognised)", recordings},
+    {"--time-column", "N", Rule::column, false,
+     "column of a text file that holds the times, every column counted from 1; 0: none (default: recognised)",
+     recordings},
+    {"--time-unit", "s|ms|us|ns|min|h|d", Rule::choice, false,
+     "unit of the times of a text file (default: from the column's name)", recordings},
+    {"--dates", "day-first|month-first", Rule::choice, false, "order in dates such as 03/04/2024", recordings},
     {"--from", "S", Rule::not_negative, false, "use the recording from this time", recordings},
     {"--to", "S", Rule::positive, false, "use the recording to this time", recordings},
     {"--json", "FILE", Rule::file, false, "write the result as JSON (- for standard output)", results},
@@ -137,6 +146,10 @@ std::string broken_rule(const Option& option, std::string_view text) {
     case Rule::whole_number: {
       const auto whole = base::parse_integer(text);
       return ok(whole && *whole >= 1 && *whole <= 1'000'000, "a whole number from 1");
+    }
+    case Rule::column: {
+      const auto column = base::parse_integer(text);
+      return ok(column && *column >= 0 && *column <= 100'000, "a column's number from 1, or 0 for none");
     }
     case Rule::number:
       return ok(number.has_value(), "a number");

@@ -14,6 +14,7 @@ enum class Rule {
   folder,
   choice,        ///< one of the words in `argument`, "a|b|c"
   whole_number,  ///< 1 or more
+  column,        ///< 1 or more, or 0 for none
   number,        ///< any finite number
   positive,      ///< finite and above 0
   not_negative,

@@ -28,6 +28,15 @@ void check_writable(const std::string& file) {
     throw base::file_error(file, "cannot be written: its folder is closed to writing", "choose another folder");
 }
 
+// What the options say of text files goes over what the survey file says.
+void take_text_options(const Arguments& arguments, recording::TextOptions& text) {
+  if (const auto word = arguments.text("--separator")) text.separator = recording::separator_named(*word);
+  if (const auto word = arguments.text("--decimal")) text.decimal = recording::decimal_named(*word);
+  if (const auto word = arguments.text("--time-unit")) text.time_unit_s = recording::time_unit_named(*word);
+  if (const auto column = arguments.whole("--time-column")) text.time_column = column;
+  if (const auto word = arguments.text("--dates")) text.day_first = recording::day_first_named(*word);
+}
+
 void put(std::FILE* stream, const std::string& text) {
   if (std::fwrite(text.data(), 1, text.size(), stream) != text.size() || std::fflush(stream) != 0) {
     throw base::file_error("standard output", "cannot be written");
@@ -123,6 +132,7 @@ std::unique_ptr<recording::Reader> Session::open(const std::string& file) {
   recording::OpenOptions options;
   if (const survey::SurveyRecording* known = entry(file)) options = known->open;
   if (const auto rate = arguments_.number("--rate")) options.rate_hz = rate;
+  take_text_options(arguments_, options.text);
   for (const std::string& text : arguments_.all("--channel")) {
     const recording::ChannelSetting setting = parse_channel(text);
     std::erase_if(options.channels, [&](const recording::ChannelSetting& each) { return each.index == setting.index; });

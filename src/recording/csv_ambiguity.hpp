@@ -1,13 +1,20 @@
 #pragma once
 
 #include <string>
+#include <string_view>
+
+#include "stillmass/recording/text_options.hpp"
 
 #include "recording/csv_dialect.hpp"
 
 namespace stillmass::recording {
 
-/// Throws `Error` (file, at `where`) for a comma that may be a decimal sign as well as something else: a guess would
-/// change the numbers.
-void refuse_ambiguity(const CsvDialect& dialect, const std::string& where);
+/// Groups of three digits with signs between: two groups or more behind the first, or decimals behind another sign:
+/// "1.234,5", "1,234,567".
+bool is_grouped_number(std::string_view cell);
+
+/// Throws `Error` (file, at `where`) for a comma or a point that may be a decimal sign as well as something else, unless
+/// the user has said what it is: a guess would change the numbers. Numbers with a sign between thousands are refused.
+void refuse_ambiguity(const CsvDialect& dialect, const TextOptions& options, const std::string& where);
 
 }  // namespace stillmass::recording

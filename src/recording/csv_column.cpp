@@ -14,6 +14,7 @@ namespace {
 constexpr std::size_t rows_for_time = 3;  // fewer do not show that a column without a name is time
 constexpr double backward_share = 0.05;   // of the steps of a column of times
 constexpr double even_share = 0.9;        // of the steps of a column of times without a name ...
+constexpr double counting_share = 0.5;    // of the steps of row numbers are 1, however many rows were lost
 constexpr double even_tolerance = 0.5;    // ... lie so close to the median, relative
 
 // Decimals of the last printed digit: "0.048" 3, "1.25E-3" 5.
@@ -38,9 +39,17 @@ CsvColumn column_of(const CsvDialect& dialect, std::size_t field) {
     if (field >= cells.size()) continue;
     const Cell cell = read_cell(cells[field], dialect.decimal);
     if (cell.kind != CellKind::number && cell.kind != CellKind::time) continue;
-    column.stamps = column.stamps || cell.kind == CellKind::time;
-    column.values.push_back(cell.value);
     column.texts.emplace_back(bare(cells[field]));
+    double value = cell.value;
+    if (cell.kind == CellKind::time) {
+      if (!column.stamps) {
+        column.stamps = true;
+        column.reading.order = dialect.date_order;
+        if (date_part(cells[field]).empty()) column.reading.begin_at(value);
+      }
+      value = column.reading.seconds(column.texts.back()).value_or(value);
+    }
+    column.values.push_back(value);
   }
   return column;
 }
@@ -66,6 +75,24 @@ bool CsvColumn::grows() const {
   return forth && static_cast<double>(back) <= backward_share * static_cast<double>(all.size());
 }
 
+bool CsvColumn::runs_back() const {
+  return values.size() > 1 && values.back() < values.front() && median_step() < 0.0;
+}
+
+bool CsvColumn::moves() const {
+  return std::any_of(values.begin(), values.end(), [&](double value) { return value != values.front(); });
+}
+
+bool CsvColumn::turns_back() const {
+  const std::vector<double> all = steps();
+  return std::any_of(all.begin(), all.end(), [](double step) { return step < 0.0; });
+}
+
+bool CsvColumn::repeats() const {
+  const std::vector<double> all = steps();
+  return std::any_of(all.begin(), all.end(), [](double step) { return step == 0.0; });
+}
+
 bool CsvColumn::grows_evenly() const {
   if (values.size() < rows_for_time || !grows()) return false;
   const std::vector<double> all = steps();
@@ -86,9 +113,16 @@ bool CsvColumn::counts_rows() const {
          std::all_of(all.begin(), all.end(), [](double step) { return step == 1.0; });
 }
 
+bool CsvColumn::counts() const {
+  const std::vector<double> all = steps();
+  const auto ones = std::count(all.begin(), all.end(), 1.0);
+  return values.size() >= rows_for_time && whole_numbers() &&
+         static_cast<double>(ones) >= counting_share * static_cast<double>(all.size());
+}
+
 double CsvColumn::last_digit() const {
   int decimals = std::numeric_limits<int>::min();
-  for (const std::string& text : texts) decimals = std::max(decimals, decimals_of(text));
+  for (const std::string& text : texts) decimals = std::max(decimals, stamps ? fraction_digits(text) : decimals_of(text));
   return texts.empty() ? 0.0 : std::pow(10.0, -decimals);
 }
 

@@ -10,6 +10,7 @@
 
 #include "recording/csv_ambiguity.hpp"
 #include "recording/csv_cell.hpp"
+#include "recording/csv_dates.hpp"
 
 namespace stillmass::recording {
 namespace {
@@ -39,7 +40,9 @@ std::string signature_of(std::string_view line, const Way& way, std::vector<std:
   std::string letters;
   for (const std::string_view cell : cells) {
     const CellKind kind = read_cell(cell, way.decimal).kind;
-    letters.push_back(kind == CellKind::empty ? 'e' : (kind == CellKind::text ? 't' : 'n'));
+    // A number with signs between thousands is one here, so that it is refused as such and not as text.
+    const bool text = kind == CellKind::text && !is_grouped_number(cell);
+    letters.push_back(kind == CellKind::empty ? 'e' : (text ? 't' : 'n'));
   }
   letters.erase(letters.find_last_not_of('e') + 1);
   return letters;
@@ -61,7 +64,9 @@ Reading read_in(const std::vector<Line>& lines, const Way& way) {
   std::vector<std::string_view> cells;
   std::map<std::string, long> rows;
   for (const Line& line : lines) {
-    reading.signatures.push_back(is_blank_or_comment(line.text) ? "" : signature_of(line.text, way, cells));
+    const bool comment = is_blank_or_comment(line.text) ||
+                         (way.separator != ';' && base::trimmed(line.text).starts_with(';'));
+    reading.signatures.push_back(comment ? "" : signature_of(line.text, way, cells));
     ++rows[reading.signatures.back()];
   }
   for (const auto& [letters, times] : rows) {
@@ -125,6 +130,25 @@ std::vector<bool> numeric_columns(const Reading& reading, std::size_t first) {
   return numeric;
 }
 
+// The line in which names of other columns stand between rows of different length: two tables in one file.
+std::optional<std::size_t> next_table(const Reading& reading, std::size_t first) {
+  const auto is_row = [](const std::string& letters) { return count(letters, 'n') > 0; };
+  std::size_t row_before = first;
+  std::optional<std::size_t> names;
+  for (std::size_t i = first; i < reading.signatures.size(); ++i) {
+    const std::string& letters = reading.signatures[i];
+    if (letters.empty()) continue;
+    if (is_row(letters)) {
+      if (names && letters.size() != reading.signatures[row_before].size()) return names;
+      names.reset();
+      row_before = i;
+    } else if (count(letters, 't') >= 2) {
+      names = i;
+    }
+  }
+  return {};
+}
+
 std::vector<Line> lines_of(std::string_view probe, bool whole_text) {
   std::vector<Line> lines;
   std::size_t begin = 0;
@@ -137,14 +161,21 @@ std::vector<Line> lines_of(std::string_view probe, bool whole_text) {
   return lines;
 }
 
-std::optional<CsvDialect> recognise(std::string_view probe, bool whole_text) {
+// The user's word goes first; commas alone can be both only within quotes.
+bool possible(const Way& way, const TextOptions& options, bool quotes) {
+  if (options.separator && *options.separator != way.separator) return false;
+  if (options.decimal && *options.decimal != way.decimal) return false;
+  return way.separator != ',' || way.decimal != ',' || quotes;
+}
+
+std::optional<CsvDialect> recognise(std::string_view probe, bool whole_text, const TextOptions& options) {
   const std::vector<Line> lines = lines_of(probe, whole_text);
   // Of a long header the end matters, of a long table any part: look at the last lines.
   const std::size_t skipped = lines.size() > lines_looked_at ? lines.size() - lines_looked_at : 0;
   const std::vector<Line> looked_at(lines.begin() + static_cast<std::ptrdiff_t>(skipped), lines.end());
   Reading best;
   for (const Way& way : ways) {
-    if (way.separator == ',' && way.decimal == ',' && probe.find('"') == std::string_view::npos) continue;
+    if (!possible(way, options, probe.find('"') != std::string_view::npos)) continue;
     Reading reading = read_in(looked_at, way);
     if (reading.score > best.score) best = std::move(reading);
   }
@@ -155,8 +186,19 @@ std::optional<CsvDialect> recognise(std::string_view probe, bool whole_text) {
     all.row = best.row;
     return all;
   }();
-  const auto first = first_row(whole);
+  auto first = first_row(whole);
   if (!first) return {};
+  while (const auto other = next_table(whole, *first)) {
+    const auto rows = static_cast<std::size_t>(
+        std::count_if(whole.signatures.begin() + static_cast<std::ptrdiff_t>(*first),
+                      whole.signatures.begin() + static_cast<std::ptrdiff_t>(*other),
+                      [&](const std::string& letters) { return fits(letters, whole.row); }));
+    // A few rows of numbers above the table belong to its header; a table that follows the first one does not count.
+    if (rows >= following_lines) return recognise(probe.substr(0, lines[*other].offset), true, options);
+    first = other;
+    while (*first < lines.size() && !fits(whole.signatures[*first], whole.row)) ++*first;
+    if (*first == lines.size()) return {};
+  }
 
   CsvDialect dialect;
   dialect.separator = best.way.separator;
@@ -176,35 +218,27 @@ std::optional<CsvDialect> recognise(std::string_view probe, bool whole_text) {
 
 }  // namespace
 
-CsvDialect recognise_dialect(const TextSource& text) {
+CsvDialect recognise_dialect(const TextSource& text, const TextOptions& options) {
   std::optional<CsvDialect> dialect;
   for (const std::size_t bytes : probe_sizes) {
     std::string probe(bytes, '\0');
     probe.resize(text.read_at(0, probe.data(), probe.size()));
     const bool whole_text = static_cast<std::int64_t>(probe.size()) >= text.size();
-    dialect = recognise(probe, whole_text);
+    dialect = recognise(probe, whole_text, options);
     if (dialect || whole_text) break;
   }
   const std::string& name = text.file().name();
   if (!dialect || dialect->numeric.empty()) {
-    throw base::file_error(name, "is text without a table of numbers of at least two rows",
-                           "give one row of samples a line, columns apart by comma, semicolon, tab or blanks");
+    const bool told = options.separator || options.decimal;
+    throw base::file_error(name,
+                           std::string("is text without a table of numbers of at least two rows") +
+                               (told ? ", written as the options say" : ""),
+                           told ? "leave --separator and --decimal out, or check them"
+                                : "give one row of samples a line, columns apart by comma, semicolon, tab or blanks");
   }
-  refuse_ambiguity(*dialect, name);
+  refuse_ambiguity(*dialect, options, name);
+  settle_date_order(*dialect, text, options);
   return *dialect;
-}
-
-std::string_view separator_name(char separator) {
-  switch (separator) {
-    case '\t':
-      return "tab";
-    case ';':
-      return "semicolon";
-    case ',':
-      return "comma";
-    default:
-      return "blanks";
-  }
 }
 
 }  // namespace stillmass::recording

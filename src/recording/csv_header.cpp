@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <array>
+#include <utility>
 
 #include "stillmass/base/text.hpp"
 
@@ -10,70 +11,177 @@
 namespace stillmass::recording {
 namespace {
 
-constexpr auto time_names =
-    std::to_array<std::string_view>({"t", "x_value", "x value", "elapsed", "elapsed time", "abs time", "absolute time",
-                                     "rel time", "relative time", "seconds", "sec", "date/time", "datetime", "zeit"});
-constexpr auto counter_names =
-    std::to_array<std::string_view>({"index", "idx", "sample", "samples", "sample no", "no", "no.", "nr", "nr.", "#",
-                                     "n", "row", "count", "counter", "scan", "record"});
+// Times and counters as loggers name them in several languages, in lower case.
+constexpr auto time_names = std::to_array<std::string_view>(
+    {"t",          "x_value",      "x value",     "elapsed",   "elapsed time", "abs time", "absolute time",
+     "rel time",   "relative time", "date/time",  "datetime",  "date time",    "zeit",     "uhrzeit",
+     "messzeit",   "zeitstempel",  "zeitpunkt",   "temps",     "tiempo",       "tempo",    "tijd",
+     "tid",        "czas",         "aika",        "clock",     "epoch",        "ts", "timestamp", "unix",     "unixtime"});
+constexpr auto counter_names = std::to_array<std::string_view>(
+    {"index", "idx", "sample",  "samples", "sample no", "sample no.", "sample number", "sample_number", "no",   "no.",
+     "nr",    "nr.", "#",       "n",       "row",       "count",      "counter",       "scan",          "record", "point",
+     "seq",   "id",  "messung", "lfd. nr.", "lfd.nr."});
+constexpr auto detector_words = std::to_array<std::string_view>(
+    {"rms", "r.m.s.", "eff", "eff.", "peak", "pk", "0-pk", "0-p", "pp", "p-p", "pk-pk", "peak-peak", "peak-to-peak"});
+
+struct Spelling {
+  std::string_view word;
+  base::Unit unit;
+};
+constexpr base::Unit nanosecond{"ns", base::Quantity::time, 1e-9};
+constexpr base::Unit microsecond{"us", base::Quantity::time, 1e-6};
+constexpr base::Unit millisecond{"ms", base::Quantity::time, 1e-3};
+constexpr base::Unit second{"s", base::Quantity::time, 1.0};
+constexpr base::Unit minute{"min", base::Quantity::time, 60.0};
+constexpr base::Unit hour{"h", base::Quantity::time, 3600.0};
+
+// Units of time beyond those that quantities of a machine have, and words that are name and unit at once.
+constexpr auto time_spellings = std::to_array<Spelling>(
+    {{"ns", nanosecond},          {"nsec", nanosecond},    {"nanoseconds", nanosecond}, {"us", microsecond},
+     {"usec", microsecond},       {"micros", microsecond}, {"microseconds", microsecond}, {"\xc2\xb5s", microsecond},
+     {"\xce\xbcs", microsecond},  {"ms", millisecond},     {"msec", millisecond},       {"msecs", millisecond},
+     {"millis", millisecond},     {"milliseconds", millisecond}, {"millisekunden", millisecond}, {"s", second},
+     {"sec", second},             {"secs", second},        {"sek", second},             {"second", second},
+     {"seconds", second},         {"sekunden", second},    {"min", minute},             {"mins", minute},
+     {"minute", minute},          {"minutes", minute},     {"minuten", minute},         {"h", hour},
+     {"hr", hour},                {"hrs", hour},           {"hour", hour},              {"hours", hour},
+     {"stunden", hour}});
+// Units behind an underline, where no brackets or powers can be written.
+constexpr auto plain_spellings = std::to_array<std::pair<std::string_view, std::string_view>>(
+    {{"m_s2", "m/s2"}, {"mps2", "m/s2"}, {"ms2", "m/s2"}, {"mm_s", "mm/s"}, {"mmps", "mm/s"}, {"mms", "mm/s"},
+     {"m_s", "m/s"}, {"mps", "m/s"}, {"in_s", "in/s"}, {"ips", "in/s"}, {"mg", "mg"}, {"um", "um"}, {"mm", "mm"},
+     {"mil", "mil"}, {"mils", "mil"}, {"mv", "mV"}, {"kn", "kN"}, {"lbf", "lbf"}, {"rpm", "rpm"}});
 
 template <std::size_t count>
 bool among(const std::string& word, const std::array<std::string_view, count>& words) {
   return std::find(words.begin(), words.end(), word) != words.end();
 }
 
+std::optional<base::Unit> time_unit_in(std::string_view text) {
+  const std::string low = base::lower(base::trimmed(text));
+  const auto found = std::find_if(time_spellings.begin(), time_spellings.end(),
+                                  [&](const Spelling& each) { return each.word == low; });
+  return found == time_spellings.end() ? std::nullopt : std::optional(found->unit);
+}
+
+// The text without a word such as "RMS" at its end, which goes to `detector`.
+std::string_view without_detector(std::string_view text, std::string_view& detector) {
+  const auto blank = text.find_last_of(" ,");
+  if (blank == std::string_view::npos || !among(base::lower(text.substr(blank + 1)), detector_words)) return text;
+  detector = text.substr(blank + 1);
+  return base::trimmed(text.substr(0, text.find_last_not_of(" ,", blank) + 1));
+}
+
+bool named_like_time(const std::string& low) {
+  return low.starts_with("time") || low.starts_with("zeit") || low.starts_with("elapsed") || low.starts_with("t_") ||
+         among(low, time_names);
+}
+
+struct UnitText {
+  std::optional<base::Unit> unit;
+  std::string_view detector;
+};
+
 // A unit in brackets or alone; a plain number is no unit here, it is a name.
-std::optional<base::Unit> unit_in(std::string_view text) {
+UnitText unit_text(std::string_view text) {
   text = base::trimmed(text);
-  if (text.size() >= 2 && (text.front() == '[' || text.front() == '(') && (text.back() == ']' || text.back() == ')')) {
+  const auto closed_by = [&](char open, char close) { return text.front() == open && text.back() == close; };
+  while (text.size() >= 2 && (closed_by('[', ']') || closed_by('(', ')') || closed_by('{', '}') || closed_by('<', '>'))) {
     text = base::trimmed(text.substr(1, text.size() - 2));
   }
-  if (text.empty() || text == "-" || text.find_first_not_of("0123456789.+-") == std::string_view::npos) return {};
-  return base::unit_named(text);
+  UnitText out;
+  text = without_detector(text, out.detector);
+  if (text.empty() || text == "-" || text.find_first_not_of("0123456789.+-") == std::string_view::npos) return out;
+  out.unit = base::unit_named(text);
+  if (!out.unit) out.unit = time_unit_in(text);
+  return out;
 }
 
-void split_off(ColumnLabel& label, std::string_view name, std::optional<base::Unit> unit) {
-  label.name = std::string(base::trimmed(name));
-  label.unit = unit;
+std::optional<base::Unit> unit_in(std::string_view text) { return unit_text(text).unit; }
+
+// The name, without the signs that stood between it and the unit; a detector stays part of it.
+void split_off(ColumnLabel& label, std::string_view name, const UnitText& found) {
+  const auto last = name.find_last_not_of(" \t,/:=|");
+  label.name = std::string(base::trimmed(name.substr(0, last == std::string_view::npos ? 0 : last + 1)));
+  if (!found.detector.empty()) label.name += (label.name.empty() ? "" : " ") + std::string(found.detector);
+  label.unit = found.unit;
 }
 
-// "Ax [g]", "Ax(g)"
+// "Ax [g]", "Ax(g)", "[g] Ax", "Ax [g] left": the last brackets that hold a unit.
 bool bracketed(std::string_view cell, ColumnLabel& label) {
-  if (cell.empty() || (cell.back() != ']' && cell.back() != ')')) return false;
-  const auto open = cell.find(cell.back() == ']' ? '[' : '(');
-  if (open == std::string_view::npos) return false;
-  const auto unit = unit_in(cell.substr(open));
-  if (unit) split_off(label, cell.substr(0, open), unit);
-  return unit.has_value();
+  for (auto close = cell.find_last_of("])}>"); close != std::string_view::npos && close > 0;
+       close = cell.find_last_of("])}>", close - 1)) {
+    constexpr std::string_view opening = "[({<";
+    const char open_sign = opening[std::string_view("])}>").find(cell[close])];
+    std::size_t open = close;
+    for (int depth = 1; depth > 0 && open > 0;) {
+      --open;
+      depth += cell[open] == cell[close] ? 1 : (cell[open] == open_sign ? -1 : 0);
+    }
+    if (cell[open] != open_sign) continue;
+    const UnitText found = unit_text(cell.substr(open, close - open + 1));
+    if (!found.unit) continue;
+    const std::string_view behind = base::trimmed(cell.substr(close + 1));
+    const std::string_view before = base::trimmed(cell.substr(0, open));
+    split_off(label, before.empty() ? behind : before, found);
+    if (!before.empty() && !behind.empty()) label.name += " " + std::string(behind);
+    return true;
+  }
+  return false;
 }
 
-// "a in g", "a / g", "Velocity mm/s"; a single letter without "in" or "/" is part of the name ("Motor N").
+// "a in g", "a / g", "t/s", "Velocity mm/s", "Velocity mm/s RMS"; a single letter without "in" or "/" is part of the
+// name ("Motor N"). A unit by itself is no name with a unit.
 bool trailing(std::string_view cell, ColumnLabel& label) {
-  for (const std::string_view between : {" in ", " / ", ", "}) {
-    const auto at = cell.rfind(between);
-    if (at == std::string_view::npos) continue;
-    if (const auto unit = unit_in(cell.substr(at + between.size()))) {
-      split_off(label, cell.substr(0, at), unit);
+  if (base::unit_named(cell)) return false;
+  for (const std::string_view between : {" in ", " / ", ", ", "/"}) {
+    const auto at = between == "/" ? cell.find(between) : cell.rfind(between);
+    if (at == std::string_view::npos || at == 0) continue;
+    const UnitText found = unit_text(cell.substr(at + between.size()));
+    const bool part_of_unit = between == "/" && unit_in(cell.substr(cell.rfind(' ', at) + 1)).has_value();
+    if (found.unit && !part_of_unit) {
+      split_off(label, cell.substr(0, at), found);
       return true;
     }
   }
-  const auto blank = cell.rfind(' ');
-  if (blank == std::string_view::npos || cell.size() - blank < 3) return false;
-  const auto unit = unit_in(cell.substr(blank + 1));
-  if (unit) split_off(label, cell.substr(0, blank), unit);
-  return unit.has_value();
+  std::string_view detector;
+  const std::string_view rest = without_detector(cell, detector);
+  const auto blank = rest.rfind(' ');
+  if (blank == std::string_view::npos || rest.size() - blank < 3) return false;
+  UnitText found = unit_text(rest.substr(blank + 1));
+  found.detector = detector;
+  const bool of_time = found.unit && found.unit->quantity == base::Quantity::time;
+  if (!found.unit || (of_time && !named_like_time(base::lower(rest.substr(0, blank))))) return false;  // "Speed min"
+  split_off(label, rest.substr(0, blank), found);
+  return true;
 }
 
-// "time_ms", "t_s"
-void time_suffix(ColumnLabel& label) {
-  const auto underline = label.name.rfind('_');
-  if (!label.is_time || label.unit || underline == std::string::npos) return;
-  const auto unit = base::unit_named(label.name.substr(underline + 1));
-  if (unit && unit->quantity == base::Quantity::time) label.unit = unit;
+// "time_ms", "t_s", "acc_x_g", "vel_mm_s": the longest unit behind an underline. A single letter counts for times and,
+// as g, for accelerations only.
+void underlined(ColumnLabel& label) {
+  if (label.unit) return;
+  const std::string low = base::lower(label.name);
+  for (auto at = low.find('_'); at != std::string::npos; at = low.find('_', at + 1)) {
+    const std::string behind = low.substr(at + 1);
+    if (label.is_time) {
+      label.unit = time_unit_in(behind);
+    } else if (behind == "g" && low.starts_with("a")) {
+      label.unit = base::unit_named("g");
+    } else {
+      const auto found = std::find_if(plain_spellings.begin(), plain_spellings.end(),
+                                      [&](const auto& each) { return each.first == behind; });
+      if (found != plain_spellings.end()) label.unit = base::unit_named(found->second);
+    }
+    if (label.unit) return;
+  }
 }
 
 std::vector<std::string> header_cells(std::string_view line, char separator) {
-  if (is_blank_or_comment(line)) line.remove_prefix(std::min(line.find_first_of("#%/") + 1, line.size()));
+  const std::string_view bare_line = base::trimmed(line);
+  const bool semicolon = separator != ';' && bare_line.starts_with(';');
+  if (!bare_line.empty() && (is_blank_or_comment(line) || semicolon)) {
+    line = bare_line.substr(std::min(bare_line.find_first_not_of("#%/;! \t"), bare_line.size()));
+  }
   std::vector<std::string_view> parts;
   split_cells(line, separator, parts);
   std::vector<std::string> cells;
@@ -133,10 +241,13 @@ ColumnLabel read_label(std::string_view cell) {
   if (!bracketed(cell, label) && !trailing(cell, label)) label.name = std::string(cell);
   const std::string low = base::lower(label.name);
   const bool time_unit = label.unit && label.unit->quantity == base::Quantity::time;
-  label.is_time =
-      low.starts_with("time") || among(low, time_names) || low.starts_with("t_") || (low.empty() && time_unit);
+  const bool may_be_minimum = low.size() < 2 || low == "min" || low == "mins" || low == "hr";
+  const auto named_by_unit = may_be_minimum || label.unit ? std::nullopt : time_unit_in(low);
+  const bool named = named_like_time(low) && (time_unit || !label.unit);
+  label.is_time = named_by_unit || named || (low.empty() && time_unit);
+  if (named_by_unit) label.unit = named_by_unit;
   label.is_counter = among(low, counter_names) && !label.unit;
-  time_suffix(label);
+  underlined(label);
   return label;
 }
 
@@ -158,7 +269,8 @@ std::vector<ColumnLabel> read_header(const CsvDialect& dialect, const TextSource
     if (c < names.size()) labels[c] = read_label(base::printable(names[c]));
     if (labels[c].unit || c >= units.size()) continue;
     labels[c].unit = unit_in(units[c]);
-    time_suffix(labels[c]);
+    const bool of_time = labels[c].unit && labels[c].unit->quantity == base::Quantity::time;
+    if (labels[c].name.empty() && of_time) labels[c].is_time = true;
   }
   return labels;
 }

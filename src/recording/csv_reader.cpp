@@ -9,6 +9,7 @@
 #include "stillmass/base/number.hpp"
 #include "stillmass/recording/scale.hpp"
 
+#include "recording/csv_findings.hpp"
 #include "recording/csv_rows.hpp"
 #include "recording/even_rows.hpp"
 #include "recording/validity.hpp"
@@ -129,38 +130,15 @@ void set_segments(const CsvScan& scan, Recording& recording) {
   }
 }
 
-void note_bad_cells(base::Code code, const char* what, const BadCells& cells, const std::string& channel,
-                    Recording& recording) {
-  if (cells.cells == 0) return;
-  base::Finding finding{
-      code, fmt::format("{}: {}, in {} place{}", what, cells.cells, cells.places, cells.places == 1 ? "" : "s"),
-      channel};
-  finding.from_s = cells.first_s;
-  finding.to_s = cells.last_s;
-  for (const auto& place : cells.first_places_s) {
-    finding.evidence.push_back(fmt::format("{} s to {} s", base::rounded(place[0], 6), base::rounded(place[1], 6)));
-  }
-  recording.findings.push_back(std::move(finding));
-}
-
-void note_scan(const CsvScan& scan, Recording& recording) {
-  recording.findings.insert(recording.findings.end(), scan.grid.findings.begin(), scan.grid.findings.end());
-  if (!scan.grid.even) {
-    recording.findings.back().text += fmt::format(
-        "; the samples are brought to an even {} Hz by a polynomial of degree 5, which alters a tone by less "
-        "than 1 % up to {} Hz",
-        base::rounded(recording.rate_hz, 5), base::rounded(even_limit_hz(scan.grid.widest_step_s), 2));
-  }
-  if (scan.rows_without_time > 0) {
-    recording.findings.push_back(
-        {base::Code::missing_values, fmt::format("{} row{} without a time left out", scan.rows_without_time,
-                                                 scan.rows_without_time == 1 ? " is" : "s are")});
-  }
-  for (std::size_t c = 0; c < recording.channels.size(); ++c) {
-    const std::string& name = recording.channels[c].name;
-    note_bad_cells(base::Code::missing_values, "cells without a number", scan.missing[c], name, recording);
-    note_bad_cells(base::Code::not_a_number, "samples that are not numbers", scan.not_a_number[c], name, recording);
-  }
+// Without times nobody knows how long a restart took: a new segment, which follows at once.
+void set_restarts(const CsvScan& scan, Recording& recording) {
+  std::int64_t begin = 0;
+  const auto end_at = [&](std::int64_t end) {
+    recording.segments.push_back({begin, end - begin, static_cast<double>(begin) / recording.rate_hz});
+    begin = end;
+  };
+  for (const std::int64_t row : scan.restarts) end_at(row);
+  end_at(scan.rows);
 }
 
 // Beyond these no recorder samples, and numbers of frames computed from the rate would leave their range.
@@ -180,7 +158,7 @@ void check_rate(const OpenOptions& options, const Recording& recording, const st
   throw base::usage_error(where,
                           fmt::format("its times say {} Hz, not {} Hz", base::rounded(recording.rate_hz, 6),
                                       base::shortest(*options.rate_hz)),
-                          "leave --rate out, the column of times is enough");
+                          "leave --rate out, or say with --time-unit what the times are, or --time-column 0 for none");
 }
 
 }  // namespace
@@ -189,7 +167,7 @@ std::unique_ptr<Reader> open_csv(std::shared_ptr<const InputFile> file, const st
                                  const OpenOptions& options, const base::Context& context) {
   const std::string where = file->name();
   TextSource text(std::move(file));
-  CsvTable table = describe_table(recognise_dialect(text), text, options.rate_hz);
+  CsvTable table = describe_table(recognise_dialect(text, options.text), text, options);
   CsvScan scan = scan_rows(text, table, options.rate_hz, context);
 
   auto recording = std::make_shared<Recording>();
@@ -197,6 +175,7 @@ std::unique_ptr<Reader> open_csv(std::shared_ptr<const InputFile> file, const st
   recording->format = table.format;
   if (table.has_time) {
     recording->rate_hz = scan.grid.rate_hz;
+    if (table.time_is_count) recording->rate_hz = *options.rate_hz;
     check_plausible(*recording, true, where);
     check_rate(options, *recording, where);
     set_segments(scan, *recording);
@@ -204,11 +183,11 @@ std::unique_ptr<Reader> open_csv(std::shared_ptr<const InputFile> file, const st
     recording->rate_hz = *options.rate_hz;
     check_plausible(*recording, false, where);
     recording->frames = scan.rows;
-    recording->segments = {{0, scan.rows, 0.0}};
+    set_restarts(scan, *recording);
   }
   recording->channels = table.channels;
   apply_settings(recording->channels, options.channels, path, recording->findings);
-  note_scan(scan, *recording);
+  note_scan(scan, text, *recording);
 
   const bool even = scan.grid.even;
   auto source = std::make_shared<const CsvSource>(std::move(text), std::move(table), std::move(scan));

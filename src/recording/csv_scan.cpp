@@ -2,9 +2,14 @@
 
 #include <algorithm>
 #include <cstring>
+#include <string>
+#include <string_view>
 
 #include "stillmass/base/error.hpp"
+#include "stillmass/base/text.hpp"
 
+#include "recording/csv_between.hpp"
+#include "recording/csv_census.hpp"
 #include "recording/line_blocks.hpp"
 #include "recording/row_parser.hpp"
 
@@ -12,60 +17,7 @@ namespace stillmass::recording {
 namespace {
 
 constexpr std::size_t places_listed = 10;
-
-// What a block of lines consists of, counted without telling its lines apart.
-struct Census {
-  std::size_t lines = 0;
-  std::size_t separators = 0;
-  std::size_t ended_by_separator = 0;  // lines
-  std::size_t odd = 0;                 // bytes of anything but numbers, empty cells, blank lines
-};
-
-// Bytes are counted in strips short enough for counters of 8 bits, and without branches: so the compiler turns the loop
-// into vector code.
-Census census_of(std::string_view block, char separator, bool stamps) {
-  constexpr std::size_t strip = 240;
-  using Byte = unsigned char;
-  const auto* const bytes = reinterpret_cast<const Byte*>(block.data());
-  const auto cell_end = static_cast<Byte>(separator);
-  const Byte first_letter = stamps ? 'T' : 'E';  // of dates: "2024-05-01T12:00Z"
-  const Byte second_letter = stamps ? 'Z' : 'E';
-  Census census;
-  const bool starts_well = bytes[0] != cell_end && (bytes[0] == ' ' || (bytes[0] >= '+' && bytes[0] <= ';'));
-  census.odd = starts_well ? 0 : 1;
-  for (std::size_t begin = 1; begin < block.size(); begin += strip) {
-    const std::size_t end = std::min(begin + strip, block.size());
-    Byte lines = 0;
-    Byte separators = 0;
-    Byte ended = 0;
-    Byte odd = 0;
-    for (std::size_t i = begin; i < end; ++i) {
-      const Byte c = bytes[i];
-      const Byte previous = bytes[i - 1];
-      const Byte is_line_end = c == '\n';
-      const Byte is_cell_end = c == cell_end;
-      const Byte closes_line = static_cast<Byte>(is_line_end + (c == '\r'));
-      const Byte after_line = previous == '\n';
-      const Byte after_cell = previous == cell_end;
-      // Sums, not "or": the compiler would make a bit test of an "or" of comparisons, and no vector code.
-      const Byte of_numbers = static_cast<Byte>(c - '+') <= ';' - '+';
-      const Byte of_letters = static_cast<Byte>((c == 'e') + (c == 'E') + (c == first_letter) + (c == second_letter));
-      const Byte of_blanks = static_cast<Byte>((c == ' ') + (c == '\t'));
-      const Byte known = static_cast<Byte>(of_numbers + of_letters + of_blanks + closes_line);
-      const Byte unknown = known == 0;
-      const Byte empty_line = after_line & static_cast<Byte>(is_cell_end + closes_line);
-      lines = static_cast<Byte>(lines + is_line_end);
-      separators = static_cast<Byte>(separators + is_cell_end);
-      ended = static_cast<Byte>(ended + (after_cell & closes_line));
-      odd = static_cast<Byte>(odd | unknown | empty_line | (after_cell & is_cell_end));
-    }
-    census.lines += lines;
-    census.separators += separators;
-    census.ended_by_separator += ended;
-    census.odd += odd;
-  }
-  return census;
-}
+constexpr std::size_t lines_between = 200;
 
 class Scanner {
  public:
@@ -75,7 +27,8 @@ class Scanner {
         parser_(table),
         values_(table.channels.size()),
         grid_(table.first_times_s, table.time_resolution_s, table.single_precision),
-        step_s_(rate_hz ? 1.0 / *rate_hz : 0.0) {
+        step_s_(rate_hz ? 1.0 / *rate_hz : 0.0),
+        line_(static_cast<std::int64_t>(table.header.size())) {
     scan_.missing.resize(table.channels.size());
     scan_.not_a_number.resize(table.channels.size());
   }
@@ -83,8 +36,13 @@ class Scanner {
   void take(std::string_view block, std::int64_t offset) {
     if (!(is_plain(block) && take_plain(block, offset))) take_carefully(block, offset);
   }
+  bool ended() const { return scan_.other_table.has_value(); }
 
   CsvScan finish() {
+    if (!between_.empty()) {  // at the end of the file
+      count(scan_.texts);
+      if (scan_.texts.lines == 1) scan_.texts.first_line = between_line_;
+    }
     scan_.rows = rows_;
     if (table_.has_time) {
       scan_.mark_times.push_back({rows_ - 1, grid_.last_s()});
@@ -112,7 +70,9 @@ class Scanner {
       for (const char* at = block.data(); at < end; ++rows_) {
         mark(offset + (at - block.data()));
         at = static_cast<const char*>(std::memchr(at, '\n', static_cast<std::size_t>(end - at))) + 1;
+        ++line_;
       }
+      between_.clear();
       return true;
     }
     times_.clear();
@@ -127,20 +87,27 @@ class Scanner {
       grid_.add(times_[i]);
       ++rows_;
     }
+    line_ += static_cast<std::int64_t>(times_.size());
+    between_.clear();
     return true;
   }
 
   void take_carefully(std::string_view block, std::int64_t offset) {
     const char* const end = block.data() + block.size();
     for (const char* at = block.data(); at < end;) {
-      const std::int64_t start = offset + (at - block.data());
+      const char* const begin = at;
+      const std::int64_t start = offset + (begin - block.data());
       const bool row = parser_.read_with_time(at, end, values_.data(), 1);
+      const std::string_view line(begin, static_cast<std::size_t>(at - begin - 1));
+      ++line_;
       if (!row) {
-        scan_.rows_without_time += parser_.lost_time() ? 1 : 0;
+        note_no_row(line);
         continue;
       }
+      if (!between_.empty() && settle_between(line)) return;
       mark(start, parser_.time_s());
       if (table_.has_time) grid_.add(parser_.time_s());
+      if (too_long(line)) count(scan_.too_long);
       for (const RowParser::BadCell& bad : parser_.bad_cells()) note(bad);
       ++rows_;
     }
@@ -152,18 +119,70 @@ class Scanner {
     if (table_.has_time) scan_.mark_times.push_back({rows_, time_s});
   }
 
+  double now_s() const { return table_.has_time ? grid_.elapsed_s() : static_cast<double>(rows_) * step_s_; }
+
+  void count(OddLines& odd) const {
+    if (odd.lines == 0) {
+      odd.first_line = line_;
+      odd.first_s = now_s();
+    }
+    odd.last_s = now_s();
+    ++odd.lines;
+  }
+
+  void note_no_row(std::string_view line) {
+    if (parser_.lost_time()) {
+      count(scan_.without_time);
+    } else if (!is_blank_or_comment(line) && !base::trimmed(line).starts_with(';')) {
+      if (between_.empty()) between_line_ = line_;
+      if (between_.size() < lines_between) between_.emplace_back(line);
+    }
+  }
+
+  // Lines of text that stood before this row: the header again, the header of another table (true: the rows end here),
+  // or something else.
+  bool settle_between(std::string_view row) {
+    const TextBetween kind = rows_ == 0 ? TextBetween::text : kind_of(between_, row, table_);
+    OddLines& odd = kind == TextBetween::header_again ? scan_.headers : scan_.texts;
+    if (kind == TextBetween::other_table) {
+      scan_.other_table = OddLines{1, between_line_, now_s(), now_s()};
+    } else {
+      count(odd);
+      if (odd.lines == 1) odd.first_line = between_line_;
+      if (!table_.has_time && rows_ > 0) scan_.restarts.push_back(rows_);
+    }
+    between_.clear();
+    return kind == TextBetween::other_table;
+  }
+
+  bool too_long(std::string_view line) const {
+    if (table_.quoted || table_.separator == ' ') return false;
+    std::size_t at = 0;
+    for (std::size_t cell = 0; cell < table_.cells; ++cell) {
+      at = line.find(table_.separator, at);
+      if (at == std::string_view::npos) return false;
+      ++at;
+    }
+    const std::string_view rest = line.substr(at);
+    return std::any_of(rest.begin(), rest.end(),
+                       [&](char c) { return c != table_.separator && c != ' ' && c != '\t' && c != '\r'; });
+  }
+
   void note(const RowParser::BadCell& bad) {
     const auto c = static_cast<std::size_t>(bad.channel);
     BadCells& cells = bad.kind == CellKind::not_a_number ? scan_.not_a_number[c] : scan_.missing[c];
-    const double now_s = table_.has_time ? grid_.elapsed_s() : static_cast<double>(rows_) * step_s_;
-    if (cells.cells == 0) cells.first_s = now_s;
-    cells.last_s = now_s;
+    const double at_s = now_s();
+    if (cells.cells == 0) {
+      cells.first_s = at_s;
+      cells.first_line = line_;
+    }
+    cells.last_s = at_s;
     ++cells.cells;
     if (cells.last_row + 1 != rows_) {
       ++cells.places;
-      if (cells.first_places_s.size() < places_listed) cells.first_places_s.push_back({now_s, now_s});
+      if (cells.first_places_s.size() < places_listed) cells.first_places_s.push_back({at_s, at_s});
     } else if (static_cast<std::size_t>(cells.places) == cells.first_places_s.size()) {
-      cells.first_places_s.back()[1] = now_s;
+      cells.first_places_s.back()[1] = at_s;
     }
     cells.last_row = rows_;
   }
@@ -175,6 +194,9 @@ class Scanner {
   TimeGrid grid_;
   double step_s_;
   std::int64_t rows_ = 0;
+  std::int64_t line_;  // of the file, read last
+  std::vector<std::string> between_;  // lines of text since the last row
+  std::int64_t between_line_ = 0;
   CsvScan scan_;
   std::vector<double> times_;
   std::vector<std::int64_t> starts_;
@@ -188,7 +210,7 @@ CsvScan scan_rows(const TextSource& text, const CsvTable& table, std::optional<d
   LineBlocks blocks(text, table.decimal == ',' && table.separator != ',');
   blocks.seek(table.data_offset);
   const std::string what = "looking at " + text.file().name();
-  for (std::string_view block = blocks.next(); !block.empty(); block = blocks.next()) {
+  for (std::string_view block = blocks.next(); !block.empty() && !scanner.ended(); block = blocks.next()) {
     context.check_stop();
     scanner.take(block, blocks.offset());
     context.report(what, static_cast<double>(blocks.offset()) / static_cast<double>(text.size()));

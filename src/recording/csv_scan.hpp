@@ -25,9 +25,18 @@ struct BadCells {
   std::int64_t cells = 0;
   std::int64_t places = 0;
   std::int64_t last_row = -2;
+  std::int64_t first_line = 0;  ///< of the file, from 1
   double first_s = 0.0;
   double last_s = 0.0;
   std::vector<std::array<double, 2>> first_places_s;
+};
+
+/// Lines of one kind that do not fit the table.
+struct OddLines {
+  std::int64_t lines = 0;
+  std::int64_t first_line = 0;  ///< of the file, from 1
+  double first_s = 0.0;         ///< where it stands among the rows
+  double last_s = 0.0;
 };
 
 /// What the first pass over a text file finds: everything but the values.
@@ -36,7 +45,12 @@ struct CsvScan {
   std::vector<RowMark> marks;          ///< every 4096 rows, ascending, from row 0 on
   std::vector<RowTime> mark_times;     ///< stamps of these rows and of the last one; empty without times
   GridVerdict grid;                    ///< of a table with times
-  std::int64_t rows_without_time = 0;  ///< left out
+  OddLines without_time;               ///< rows left out
+  OddLines texts;                      ///< no rows, no comments
+  OddLines headers;                    ///< the header again: the logger was restarted
+  OddLines too_long;                   ///< rows with more cells than columns
+  std::optional<OddLines> other_table;  ///< the scan ends before it
+  std::vector<std::int64_t> restarts;  ///< without times: rows that follow a line of text
   std::vector<BadCells> missing;       ///< per channel
   std::vector<BadCells> not_a_number;  ///< per channel
 };
@@ -44,7 +58,8 @@ struct CsvScan {
 inline constexpr std::int64_t rows_per_mark = 4096;
 
 /// Reads the times and counts the rows; blocks of lines that hold nothing but numbers are not looked at cell by cell.
-/// rate_hz: for a table without times. Throws `Error` (file).
+/// It ends where another table
+/// begins. rate_hz: for a table without times. Throws `Error` (file).
 CsvScan scan_rows(const TextSource& text, const CsvTable& table, std::optional<double> rate_hz,
                   const base::Context& context);
 

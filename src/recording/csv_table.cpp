@@ -1,23 +1,22 @@
 #include "recording/csv_table.hpp"
 
 #include <algorithm>
-#include <array>
 #include <cmath>
 #include <limits>
+#include <map>
 
 #include <fmt/format.h>
 
 #include "stillmass/base/error.hpp"
-#include "stillmass/base/number.hpp"
 #include "stillmass/base/text.hpp"
 
+#include "recording/csv_cell.hpp"
 #include "recording/csv_column.hpp"
 #include "recording/csv_header.hpp"
+#include "recording/csv_time_column.hpp"
 
 namespace stillmass::recording {
 namespace {
-
-constexpr double rate_agreement = 0.05;  // between stated rate and whole-number times in a candidate unit
 
 // Fills in what the printed times show of their resolution.
 void read_resolution(const CsvColumn& column, CsvTable& table) {
@@ -31,36 +30,6 @@ void read_resolution(const CsvColumn& column, CsvTable& table) {
   table.time_resolution_s = last_digit * table.time_to_s;
   table.single_precision =
       all_single && widest * static_cast<double>(std::numeric_limits<float>::epsilon()) > 10.0 * last_digit;
-}
-
-struct TimeUnit {
-  double to_s;
-  std::string_view name;
-};
-constexpr auto time_units = std::to_array<TimeUnit>({{1.0, "s"}, {1e-3, "ms"}, {1e-6, "us"}, {1e-9, "ns"}});
-
-// The unit of the times: stated, or s where they have decimals, or the one that gives the stated rate.
-TimeUnit time_unit_of(const CsvColumn& column, const ColumnLabel& label, std::optional<double> rate_hz,
-                      const std::string& where, std::size_t field) {
-  if (column.stamps) return time_units[0];
-  if (label.unit && label.unit->quantity == base::Quantity::time) {
-    return {label.unit->to_si, label.unit->name};
-  }
-  if (!column.whole_numbers()) return time_units[0];
-  if (rate_hz) {
-    const double step = column.median_step();
-    for (const TimeUnit& unit : time_units) {
-      if (std::abs(step * unit.to_s * *rate_hz - 1.0) <= rate_agreement) return unit;
-    }
-    throw base::usage_error(where,
-                            fmt::format("the times in column {} do not fit a rate of {} Hz in any unit", field + 1,
-                                        base::shortest(*rate_hz)),
-                            "check --rate");
-  }
-  throw base::usage_error(where,
-                          fmt::format("column {} counts {} a row, in a unit that nothing states", field + 1,
-                                      base::shortest(column.median_step())),
-                          "give the sampling rate with --rate HZ, or put the unit into the column's name");
 }
 
 Role role_from_name(const std::string& name) {
@@ -86,40 +55,33 @@ Channel channel_from(const ColumnLabel& label, std::size_t place) {
   return channel;
 }
 
-// Which column is time: named so, or the first one if nothing names it and it grows evenly.
-std::optional<std::size_t> time_field(const std::vector<ColumnLabel>& labels, const CsvDialect& dialect) {
-  for (std::size_t c = 0; c < labels.size(); ++c) {
-    if (!dialect.numeric[c]) continue;
-    const CsvColumn column = column_of(dialect, c);
-    if ((labels[c].is_time || column.stamps) && column.grows()) return c;
-  }
-  if (!dialect.numeric.front() || labels.front().is_counter || labels.front().unit) return {};
-  const CsvColumn first = column_of(dialect, 0);
-  return first.grows_evenly() && !first.counts_rows() ? std::optional<std::size_t>(0) : std::nullopt;
-}
-
 // A first column of row numbers is not a signal, and none that is named so.
 bool is_counter(std::size_t field, const std::vector<ColumnLabel>& labels, const CsvDialect& dialect) {
-  const bool suspected = field == 0 ? !labels[field].unit : labels[field].is_counter;
-  return suspected && column_of(dialect, field).counts_rows();
+  if (labels[field].is_counter) return column_of(dialect, field).counts();
+  return field == 0 && !labels[field].unit && column_of(dialect, field).counts_rows();
 }
 
 void place_columns(const CsvDialect& dialect, const std::vector<ColumnLabel>& labels,
-                   std::optional<std::size_t> time_at, CsvTable& table, std::string& left_out) {
+                   const std::optional<TimeColumn>& time, CsvTable& table, std::string& left_out) {
   for (std::size_t c = 0; c < labels.size(); ++c) {
     int target = CsvTable::skip;
-    const bool second_time = time_at && c > *time_at && labels[c].is_time && dialect.numeric[c];
-    if (time_at == c) {
+    const bool before = time && time->other_table && c < time->field;
+    const bool more_times = time && !before && c != time->field && labels[c].is_time && dialect.numeric[c] &&
+                            column_of(dialect, c).grows();
+    if (time && time->field == c) {
       target = CsvTable::time;
-    } else if (second_time && column_of(dialect, c).grows()) {
-      left_out += fmt::format("; columns from {} on (a second table) left out", c + 1);
+      if (time->other_table) left_out += fmt::format("; columns 1 to {} (another table) left out", c);
+    } else if (more_times && c > time->field && !table.channels.empty()) {
+      left_out += fmt::format("; columns from {} on (a second table) left out, --time-column {} reads it", c + 1, c + 1);
       break;
+    } else if (before) {
+      target = CsvTable::skip;
     } else if (!dialect.numeric[c]) {
       if (!labels[c].name.empty()) left_out += fmt::format("; column {} (no numbers) left out", c + 1);
     } else if (is_counter(c, labels, dialect)) {
       left_out += fmt::format("; column {} (row numbers) left out", c + 1);
-    } else if (!time_at && labels[c].is_time) {
-      left_out += fmt::format("; column {} (times that stand still) left out", c + 1);
+    } else if (more_times || (!time && labels[c].is_time) || column_of(dialect, c).stamps) {
+      left_out += fmt::format("; column {} (times) left out", c + 1);
     } else {
       target = static_cast<int>(table.channels.size());
       table.channels.push_back(channel_from(labels[c], table.channels.size()));
@@ -129,18 +91,38 @@ void place_columns(const CsvDialect& dialect, const std::vector<ColumnLabel>& la
   while (!table.targets.empty() && table.targets.back() == CsvTable::skip) table.targets.pop_back();
 }
 
-[[noreturn]] void refuse_without_rate(const std::vector<ColumnLabel>& labels, const std::string& where) {
-  const auto time = std::find_if(labels.begin(), labels.end(), [](const ColumnLabel& label) { return label.is_time; });
-  if (time != labels.end()) {
-    throw base::file_error(where, fmt::format("the times in column {} stand still", time - labels.begin() + 1),
+[[noreturn]] void refuse_without_rate(const std::vector<ColumnLabel>& labels, const CsvDialect& dialect,
+                                      const std::string& where) {
+  for (std::size_t c = 0; c < labels.size(); ++c) {
+    if (!labels[c].is_time || !dialect.numeric[c]) continue;
+    const CsvColumn column = column_of(dialect, c);
+    const char* what = !column.moves() ? "stand still" : (column.runs_back() ? "run backwards" : "run back and forth");
+    throw base::file_error(where, fmt::format("the times in column {} {}", c + 1, what),
                            "export it with times that go on, or give the sampling rate with --rate HZ");
   }
   throw base::usage_error(where, "has no column of times", "give the sampling rate with --rate HZ");
 }
 
+// Cells of most rows, or of a header line that has more.
+std::size_t usual_cells(const CsvDialect& dialect) {
+  std::map<std::size_t, std::size_t> times;
+  std::vector<std::string_view> cells;
+  const auto count = [&](const std::string& line) {
+    split_cells(line, dialect.separator, cells);
+    while (!cells.empty() && bare(cells.back()).empty()) cells.pop_back();
+    return cells.size();
+  };
+  for (const std::string& row : dialect.rows) ++times[count(row)];
+  const auto most = std::max_element(times.begin(), times.end(),
+                                     [](const auto& a, const auto& b) { return a.second < b.second; });
+  std::size_t usual = most == times.end() ? 0 : most->first;
+  for (const std::string& line : dialect.header) usual = std::max(usual, count(line));
+  return std::max(usual, dialect.numeric.size());
+}
+
 }  // namespace
 
-CsvTable describe_table(const CsvDialect& dialect, const TextSource& text, std::optional<double> rate_hz) {
+CsvTable describe_table(const CsvDialect& dialect, const TextSource& text, const OpenOptions& options) {
   const std::string& where = text.file().name();
   const std::vector<ColumnLabel> labels = read_header(dialect, text);
   CsvTable table;
@@ -148,31 +130,29 @@ CsvTable describe_table(const CsvDialect& dialect, const TextSource& text, std::
   table.decimal = dialect.decimal;
   table.quoted = dialect.quoted;
   table.data_offset = dialect.data_offset;
+  table.header = dialect.header;
+  table.cells = usual_cells(dialect);
   table.format = fmt::format("CSV: {}, decimal {}, {} header line{}", separator_name(dialect.separator),
-                             dialect.decimal == ',' ? "comma" : "point", dialect.header.size(),
+                             decimal_name(dialect.decimal), dialect.header.size(),
                              dialect.header.size() == 1 ? "" : "s");
 
-  const auto time_at = time_field(labels, dialect);
+  const std::optional<TimeColumn> time = find_time_column(dialect, labels, options, where);
   std::string left_out;
-  place_columns(dialect, labels, time_at, table, left_out);
-  if (!time_at && !rate_hz) refuse_without_rate(labels, where);
+  place_columns(dialect, labels, time, table, left_out);
+  if (!time && !options.rate_hz) refuse_without_rate(labels, dialect, where);
   if (table.channels.empty()) {
     throw base::file_error(where, "has no column of samples beside the time", "export the signals with the time");
   }
-  if (time_at) {
-    const CsvColumn column = column_of(dialect, *time_at);
-    const TimeUnit unit = time_unit_of(column, labels[*time_at], rate_hz, where, *time_at);
+  if (time) {
     table.has_time = true;
-    table.time_is_stamp = column.stamps;
-    table.time_to_s = unit.to_s;
-    read_resolution(column, table);
-    for (const double value : column.values) table.first_times_s.push_back(value * unit.to_s);
-    table.format += column.stamps ? fmt::format(", time of day in column {}", *time_at + 1)
-                                  : fmt::format(", time in column {} [{}]", *time_at + 1, unit.name);
-  } else {
-    table.format += ", no times";
+    table.time_is_stamp = time->column.stamps;
+    table.time_is_count = time->counts;
+    table.stamps = time->column.reading;
+    table.time_to_s = time->to_s;
+    read_resolution(time->column, table);
+    for (const double value : time->column.values) table.first_times_s.push_back(value * time->to_s);
   }
-  table.format += left_out;
+  table.format += ", " + (time ? time->text : std::string("no times")) + left_out;
   return table;
 }
 

@@ -37,10 +37,15 @@ void read_format(const Walker& walker, std::int64_t at, RiffHeader& header) {
   constexpr int extensible = 0xFFFE;
   header.format_tag = static_cast<int>(walker.number(at, 2));
   header.channels = static_cast<int>(walker.number(at + 2, 2));
-  header.rate_hz = static_cast<int>(walker.number(at + 4, 4) & 0x7FFFFFFF);
+  header.rate_hz = static_cast<std::int64_t>(walker.number(at + 4, 4));
   header.frame_bytes = static_cast<int>(walker.number(at + 12, 2));
   header.bits = static_cast<int>(walker.number(at + 14, 2));
   if (header.format_tag == extensible) header.format_tag = static_cast<int>(walker.number(at + 24, 2));
+  const int least_bytes = (header.bits + 7) / 8;
+  // 24 bits in 4 bytes are seen; else a sample takes the bytes that its bits need.
+  const bool agrees = header.channels > 0 && header.frame_bytes % header.channels == 0 &&
+                      (header.sample_bytes() == least_bytes || (header.bits == 24 && header.sample_bytes() == 4));
+  if (!agrees) header.frame_bytes = header.channels * least_bytes;
 }
 
 // Sizes of the data chunk: what the header says against what is there.
@@ -48,12 +53,13 @@ void settle_sizes(Family family, std::uint64_t declared, bool header_complete, s
                   RiffHeader& header) {
   constexpr std::uint64_t wrap = std::uint64_t{1} << 32;
   const auto there = static_cast<std::uint64_t>(file_size - header.data_offset);
-  const bool never_written = family == Family::riff && (declared == wrap - 1 || (declared == 0 && !header_complete));
+  constexpr std::uint64_t sane = std::uint64_t{1} << 62;
+  const bool never_written = family == Family::riff ? declared == wrap - 1 || (declared == 0 && !header_complete)
+                                                    : declared > sane || (declared == 0 && there > 0);
   if (family == Family::riff && !never_written && there > declared) {
     declared += (there - declared) / wrap * wrap;
   }
-  constexpr std::uint64_t sane = std::uint64_t{1} << 62;
-  if (!never_written) header.declared_bytes = static_cast<std::int64_t>(std::min(declared, sane));
+  if (!never_written) header.declared_bytes = static_cast<std::int64_t>(declared);
   header.real_bytes = static_cast<std::int64_t>(never_written ? there : std::min(there, declared));
   if (header.frame_bytes > 0) header.real_bytes -= header.real_bytes % header.frame_bytes;
 }
@@ -69,7 +75,7 @@ std::optional<RiffHeader> read_riff_header(const InputFile& file) {
   const std::string magic = file.read_at(0, 4);
   const bool big_endian = magic == "RIFX";
   Family family = Family::riff;
-  if (magic == "RF64") {
+  if (magic == "RF64" || magic == "BW64") {
     family = Family::rf64;
   } else if (magic == "riff") {
     family = Family::w64;

@@ -60,7 +60,7 @@ bool RowParser::time_cell(const char*& at, const char* end) {
   if (table_->time_is_stamp) {
     const char* stop = at;
     while (*stop != separator_ && *stop != '\n' && *stop != '\r') ++stop;
-    const auto stamp = parse_timestamp({at, static_cast<std::size_t>(stop - at)});
+    const auto stamp = table_->stamps.seconds({at, static_cast<std::size_t>(stop - at)});
     if (!stamp) return false;
     value = *stamp;
     at = stop;
@@ -110,6 +110,7 @@ bool RowParser::read_slowly(std::string_view line, double* values, std::size_t s
     if (target == CsvTable::time) {
       timed = cell.kind == (table_->time_is_stamp ? CellKind::time : CellKind::number);
       time_s_ = cell.value * table_->time_to_s;
+      if (timed && table_->time_is_stamp) time_s_ = table_->stamps.seconds(bare(cells_[field])).value_or(0.0);
       continue;
     }
     const bool good = cell.kind == CellKind::number;

@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <array>
 #include <cstdio>
+#include <utility>
 #include <vector>
 
 #include <fmt/format.h>
@@ -113,13 +114,13 @@ const Coding* coding_of(int format) {
 
 int raw_subtype(const RiffHeader& header) {
   constexpr int float_tag = 3;
-  if (header.format_tag == float_tag) return header.bits == 64 ? SF_FORMAT_DOUBLE : SF_FORMAT_FLOAT;
-  switch (header.bits) {
-    case 8:
+  if (header.format_tag == float_tag) return header.sample_bytes() == 8 ? SF_FORMAT_DOUBLE : SF_FORMAT_FLOAT;
+  switch (header.sample_bytes()) {
+    case 1:
       return SF_FORMAT_PCM_U8;
-    case 16:
+    case 2:
       return SF_FORMAT_PCM_16;
-    case 24:
+    case 3:
       return SF_FORMAT_PCM_24;
     default:
       return SF_FORMAT_PCM_32;
@@ -130,25 +131,38 @@ int raw_subtype(const RiffHeader& header) {
 
 struct SoundReader::Handle {
   Window window;
+  SF_INFO wanted{};  // what is told to the library: nothing, or where the samples are
   SF_INFO info{};
   SNDFILE* sound = nullptr;
+
+  ~Handle() {
+    if (sound != nullptr) sf_close(sound);
+  }
 };
 
 SoundReader::SoundReader(std::shared_ptr<const InputFile> file, const RiffHeader* samples_at)
     : handle_(std::make_unique<Handle>()) {
-  const std::string name = file->name();
   Handle& h = *handle_;
   h.window.length = file->size();
   if (samples_at != nullptr) {
     h.window.begin = samples_at->data_offset;
     h.window.length = samples_at->real_bytes;
-    h.info.samplerate = samples_at->rate_hz;
+    h.info.samplerate = static_cast<int>(samples_at->rate_hz);
     h.info.channels = samples_at->channels;
     h.info.format =
         SF_FORMAT_RAW | raw_subtype(*samples_at) | (samples_at->big_endian ? SF_ENDIAN_BIG : SF_ENDIAN_LITTLE);
   }
   h.window.file = std::move(file);
+  h.wanted = h.info;
+  open();
+}
 
+void SoundReader::open() {
+  Handle& h = *handle_;
+  const std::string name = h.window.file->name();
+  if (h.sound != nullptr) sf_close(h.sound);
+  h.window.at = 0;
+  h.info = h.wanted;
   SF_VIRTUAL_IO io{window_length, window_seek, window_read, window_write, window_tell};
   h.sound = sf_open_virtual(&io, SFM_READ, &h.info, &h.window);
   if (h.sound == nullptr) {
@@ -157,24 +171,43 @@ SoundReader::SoundReader(std::shared_ptr<const InputFile> file, const RiffHeader
   }
   const char* container = container_text(h.info.format);
   if (container == nullptr || coding_of(h.info.format) == nullptr) {
-    sf_close(h.sound);
+    sf_close(std::exchange(h.sound, nullptr));
     throw base::file_error(name, "holds sound in a coding that is not taken",
                            "save it as WAV with integer or floating-point samples, not compressed");
   }
 }
 
-SoundReader::~SoundReader() { sf_close(handle_->sound); }
+SoundReader::~SoundReader() = default;
 
 int SoundReader::channels() const { return handle_->info.channels; }
 int SoundReader::rate_hz() const { return handle_->info.samplerate; }
-std::int64_t SoundReader::frames() const { return handle_->info.frames; }
+std::optional<std::int64_t> SoundReader::frames() const {
+  constexpr sf_count_t not_stated = sf_count_t{1} << 62;
+  return handle_->info.frames < not_stated ? std::optional<std::int64_t>(handle_->info.frames) : std::nullopt;
+}
+bool SoundReader::is_compressed() const { return (handle_->info.format & SF_FORMAT_TYPEMASK) == SF_FORMAT_FLAC; }
 int SoundReader::integer_bits() const { return coding_of(handle_->info.format)->integer_bits; }
 
 std::string SoundReader::format() const {
   return fmt::format("{}, {}", container_text(handle_->info.format), coding_of(handle_->info.format)->text);
 }
 
-bool SoundReader::seek(std::int64_t frame) { return sf_seek(handle_->sound, frame, SEEK_SET) == frame; }
+bool SoundReader::seek(std::int64_t frame) {
+  if (sf_seek(handle_->sound, frame, SEEK_SET) == frame) return true;
+  return is_compressed() && decode_up_to(frame);
+}
+
+bool SoundReader::decode_up_to(std::int64_t frame) {
+  constexpr std::int64_t frames_at_once = 4096;
+  open();
+  std::vector<double> passed(static_cast<std::size_t>(frames_at_once * channels()));
+  while (frame > 0) {
+    const std::int64_t got = read(passed.data(), std::min(frame, frames_at_once));
+    if (got <= 0) return false;
+    frame -= got;
+  }
+  return true;
+}
 
 SoundReader::Stored SoundReader::stored() const {
   if (integer_bits() > 0) return Stored::integer;

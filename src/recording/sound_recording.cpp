@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
+#include <cstdint>
 #include <limits>
 
 #include <fmt/format.h>
@@ -11,6 +12,7 @@
 #include "stillmass/base/number.hpp"
 #include "stillmass/recording/scale.hpp"
 
+#include "recording/form_header.hpp"
 #include "recording/interleaved.hpp"
 #include "recording/riff_header.hpp"
 #include "recording/sound_reader.hpp"
@@ -50,7 +52,9 @@ class SoundRecording : public Reader {
     for (std::size_t done = 0; done < chunk.frames;) {
       const std::size_t count = std::min(Interleaved::most_frames, chunk.frames - done);
       const std::int64_t read = frames_.read(sound_, static_cast<std::int64_t>(count));
-      if (read != static_cast<std::int64_t>(count)) broken_at(at_ + static_cast<std::int64_t>(done));
+      if (read != static_cast<std::int64_t>(count)) {
+        broken_at(at_ + static_cast<std::int64_t>(done) + std::max<std::int64_t>(0, read));
+      }
       for (std::size_t c = 0; c < channels; ++c) spread(chunk, c, done, count);
       done += count;
     }
@@ -82,7 +86,7 @@ class SoundRecording : public Reader {
 
   [[noreturn]] void broken_at(std::int64_t frame) const {
     throw base::file_error(source_->file->name(),
-                           fmt::format("cannot be read from {} s on", base::rounded(recording_->time_s(frame), 6)),
+                           fmt::format("cannot be read from {} s on", base::plain(recording_->time_s(frame))),
                            "copy it again, or use --to to stop before that");
   }
 
@@ -93,13 +97,28 @@ class SoundRecording : public Reader {
   Validity validity_;
 };
 
-// Up to which frame the file can be read: a compressed file says how long it was, even if its end is lost.
+// The frames that can be decoded one after the other.
+std::int64_t decoded_frames(SoundReader& sound) {
+  constexpr std::int64_t at_once = 4096;
+  std::vector<double> frames(static_cast<std::size_t>(at_once * sound.channels()));
+  if (!sound.seek(0)) return 0;
+  std::int64_t count = 0;
+  for (std::int64_t got = sound.read(frames.data(), at_once); got > 0; got = sound.read(frames.data(), at_once)) {
+    count += got;
+  }
+  return count;
+}
+
+// Up to which frame the file can be read: a compressed file says how long it was, even if its end is lost, or it does
+// not say it.
 std::int64_t readable_frames(SoundReader& sound) {
   std::vector<double> frame(static_cast<std::size_t>(sound.channels()));
   const auto readable = [&](std::int64_t at) { return sound.seek(at) && sound.read(frame.data(), 1) == 1; };
+  if (!sound.frames()) return decoded_frames(sound);
   std::int64_t good = 0;
-  std::int64_t bad = sound.frames();
+  std::int64_t bad = *sound.frames();
   if (bad == 0 || readable(bad - 1)) return bad;
+  if (sound.is_compressed()) return decoded_frames(sound);
   while (good < bad) {
     const std::int64_t middle = good + (bad - good) / 2;
     if (readable(middle)) {
@@ -111,15 +130,39 @@ std::int64_t readable_frames(SoundReader& sound) {
   return good;
 }
 
-// Frames that the header promises: of a RIFF by its data chunk, of an AIFF by the size of the whole.
+// Frames that the header promises: at least those that the library sees, of a RIFF by its data chunk, of an AIFF by
+// its chunks.
 std::int64_t promised_frames(const InputFile& file, const std::optional<RiffHeader>& riff, const SoundReader& sound) {
-  if (riff) return riff->declared_frames().value_or(riff->frames());
-  const std::string head = file.read_at(0, 8);
-  if (!head.starts_with("FORM")) return sound.frames();
-  std::int64_t size = 8;
-  for (std::size_t i = 4; i < 8; ++i) size += std::int64_t{static_cast<unsigned char>(head[i])} << (8 * (7 - i));
-  const int bytes = std::max(1, sound.integer_bits() / 8) * sound.channels();
-  return sound.frames() + std::max<std::int64_t>(0, (size - file.size()) / bytes);
+  const std::int64_t seen = sound.frames().value_or(0);
+  if (riff) return std::max(seen, riff->declared_frames().value_or(seen));
+  return std::max(seen, promised_form_frames(file).value_or(seen));
+}
+
+// What no library would read, in words of its own.
+void check_header(const RiffHeader& riff, const std::string& where) {
+  constexpr int most_channels = 1024;  // libsndfile's limit
+  constexpr std::int64_t highest_rate_hz = std::numeric_limits<std::int32_t>::max();
+  if (riff.channels < 1 || riff.channels > most_channels) {
+    throw base::file_error(where, fmt::format("its header states {} channels", riff.channels),
+                           "copy it again from the recorder; at most 1024 channels are taken");
+  }
+  if (riff.rate_hz < 1 || riff.rate_hz > highest_rate_hz) {
+    throw base::file_error(where, fmt::format("its header states a sampling rate of {} Hz", riff.rate_hz),
+                           "copy it again from the recorder");
+  }
+}
+
+// True where the library sees other samples than the header walk of our own, or none at all.
+bool needs_repair(const Source& source, const RiffHeader& riff) {
+  const int bytes = riff.sample_bytes();
+  const bool integer = riff.format_tag == 1 && bytes >= 1 && bytes <= 4;
+  const bool floating = riff.format_tag == 3 && (bytes == 4 || bytes == 8);
+  if ((!integer && !floating) || riff.frames() == 0) return false;
+  try {
+    return source.open().frames() != riff.frames();
+  } catch (const base::Error&) {
+    return true;
+  }
 }
 
 void note_missing_end(Recording& recording, std::int64_t promised) {
@@ -127,9 +170,21 @@ void note_missing_end(Recording& recording, std::int64_t promised) {
   const double from = static_cast<double>(recording.frames) / recording.rate_hz;
   const double to = static_cast<double>(promised) / recording.rate_hz;
   base::Finding finding{base::Code::truncated, fmt::format("the file ends after {} s, its header promises {} s",
-                                                           base::rounded(from, 5), base::rounded(to, 5))};
+                                                           base::plain(from), base::plain(to))};
   finding.from_s = from;
   finding.to_s = to;
+  recording.findings.push_back(std::move(finding));
+}
+
+// The recorder never came to fill in the sizes: all that is there is read, but nobody knows whether more was recorded.
+void note_open_end(Recording& recording, const std::optional<RiffHeader>& riff) {
+  if (!riff || riff->declared_bytes) return;
+  const double end = recording.duration_s();
+  base::Finding finding{base::Code::truncated,
+                        fmt::format("the header was never completed; the file is read to its end at {} s",
+                                    base::plain(end))};
+  finding.from_s = end;
+  finding.strength = base::Strength::weak;
   recording.findings.push_back(std::move(finding));
 }
 
@@ -149,7 +204,7 @@ std::vector<Channel> plain_channels(const SoundReader& sound) {
 }  // namespace
 
 bool is_sound(std::string_view first_bytes) {
-  constexpr auto starts = std::to_array<std::string_view>({"RIFF", "RIFX", "RF64", "riff", "FORM", "fLaC"});
+  constexpr auto starts = std::to_array<std::string_view>({"RIFF", "RIFX", "RF64", "BW64", "riff", "FORM", "fLaC"});
   return std::any_of(starts.begin(), starts.end(),
                      [&](std::string_view start) { return first_bytes.starts_with(start); });
 }
@@ -159,9 +214,8 @@ std::unique_ptr<Reader> open_sound(std::shared_ptr<const InputFile> file, const 
   auto source = std::make_shared<Source>();
   source->file = std::move(file);
   const std::optional<RiffHeader> riff = read_riff_header(*source->file);
-  if (riff && (riff->format_tag == 1 || riff->format_tag == 3) && riff->frames() > 0) {
-    if (source->open().frames() != riff->frames()) source->repair = riff;
-  }
+  if (riff) check_header(*riff, source->file->name());
+  if (riff && needs_repair(*source, *riff)) source->repair = riff;
   SoundReader sound = source->open();
 
   auto recording = std::make_shared<Recording>();
@@ -172,9 +226,6 @@ std::unique_ptr<Reader> open_sound(std::shared_ptr<const InputFile> file, const 
   if (recording->frames == 0) {
     throw base::file_error(source->file->name(), "holds no samples, only a header", "record it again");
   }
-  if (!(recording->rate_hz > 0.0)) {
-    throw base::file_error(source->file->name(), "states a sampling rate of 0", "copy it again from the recorder");
-  }
   if (options.rate_hz && std::abs(*options.rate_hz - recording->rate_hz) > 1e-6 * recording->rate_hz) {
     throw base::usage_error(source->file->name(),
                             fmt::format("its header says {} Hz, not {} Hz", base::shortest(recording->rate_hz),
@@ -182,7 +233,8 @@ std::unique_ptr<Reader> open_sound(std::shared_ptr<const InputFile> file, const 
                             "leave --rate out, it is for text files without a time column");
   }
   recording->segments = {{0, recording->frames, 0.0}};
-  note_missing_end(*recording, std::max(promised_frames(*source->file, riff, sound), sound.frames()));
+  note_missing_end(*recording, promised_frames(*source->file, riff, sound));
+  note_open_end(*recording, riff);
   recording->channels = plain_channels(sound);
   apply_settings(recording->channels, options.channels, path, recording->findings);
   return std::make_unique<SoundRecording>(std::move(source), std::move(recording));

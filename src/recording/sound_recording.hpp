@@ -9,7 +9,8 @@
 
 namespace stillmass::recording {
 
-/// True where the first bytes are those of a sound file that `open_sound` knows: RIFF, RIFX, RF64, W64, AIFF, FLAC.
+/// True where the first bytes are those of a sound file that `open_sound` knows: RIFF, RIFX, RF64, BW64, W64, AIFF,
+/// FLAC.
 bool is_sound(std::string_view first_bytes);
 
 /// Opens a sound file through libsndfile. Taken are integer samples of 8 to 32 bits, float and double. Throws `Error`

@@ -11,6 +11,8 @@ namespace stillmass::recording {
 namespace {
 
 constexpr std::size_t probe_bytes = 64 * 1024;
+constexpr std::size_t damaged_share = 100;   // one control character in so many is damage, more are no text
+constexpr std::size_t unmarked_bytes = 512;  // looked at for UTF-16 without a byte order mark
 
 bool is_control(char c) {
   const auto byte = static_cast<unsigned char>(c);
@@ -41,6 +43,26 @@ TextSource::TextSource(std::shared_ptr<const InputFile> file) : file_(std::move(
       throw base::file_error(file_->name(), std::string(foreign.what), std::string(foreign.remedy));
     }
   }
+  find_encoding(head);
+  size_ = file_->size() - begin_;
+  if (encoding_ != Encoding::bytes) size_ /= 2;
+  leave_out_padding();
+  if (size_ == 0) {
+    throw base::file_error(file_->name(), "holds nothing but zeros", "copy it again from the recorder");
+  }
+
+  std::string text(probe_bytes, '\0');
+  text.resize(read_at(0, text.data(), text.size()));
+  const auto controls = static_cast<std::size_t>(std::count_if(text.begin(), text.end(), is_control));
+  if (controls > text.size() / damaged_share) {
+    throw base::file_error(file_->name(), "is neither a sound file nor text",
+                           "give a recording as WAV, RF64, W64, FLAC, AIFF or as CSV text");
+  }
+  carriage_returns_ = text.find('\n') == std::string::npos && text.find('\r') != std::string::npos;
+}
+
+// A byte order mark says it; without one, text of Latin letters in UTF-16 has a zero in every other byte.
+void TextSource::find_encoding(std::string_view head) {
   if (head.starts_with("\xFF\xFE")) {
     encoding_ = Encoding::utf16_little;
     begin_ = 2;
@@ -49,17 +71,28 @@ TextSource::TextSource(std::shared_ptr<const InputFile> file) : file_(std::move(
     begin_ = 2;
   } else if (head.starts_with("\xEF\xBB\xBF")) {
     begin_ = 3;
+  } else {
+    const std::size_t pairs = std::min(head.size(), unmarked_bytes) / 2;
+    std::array<std::size_t, 2> zeros{};
+    for (std::size_t i = 0; i < 2 * pairs; ++i) zeros[i % 2] += head[i] == '\0' ? 1 : 0;
+    if (zeros[0] == 0 && 10 * zeros[1] >= 9 * pairs && pairs > 1) encoding_ = Encoding::utf16_little;
+    if (zeros[1] == 0 && 10 * zeros[0] >= 9 * pairs && pairs > 1) encoding_ = Encoding::utf16_big;
   }
-  size_ = file_->size() - begin_;
-  if (encoding_ != Encoding::bytes) size_ /= 2;
+}
 
-  std::string text(probe_bytes, '\0');
-  text.resize(read_at(0, text.data(), text.size()));
-  if (std::any_of(text.begin(), text.end(), is_control)) {
-    throw base::file_error(file_->name(), "is neither a sound file nor text",
-                           "give a recording as WAV, RF64, W64, FLAC, AIFF or as CSV text");
+void TextSource::leave_out_padding() {
+  const std::int64_t width = encoding_ == Encoding::bytes ? 1 : 2;
+  const std::int64_t written = size_;
+  std::string block;
+  while (size_ > 0) {
+    const auto count = static_cast<std::size_t>(std::min<std::int64_t>(size_, probe_bytes));
+    block.resize(count);
+    block.resize(read_at(size_ - static_cast<std::int64_t>(count), block.data(), count));
+    const auto last = block.find_last_not_of(std::string_view("\0\x1A", 2));
+    size_ -= static_cast<std::int64_t>(block.size() - (last == std::string::npos ? 0 : last + 1));
+    if (last != std::string::npos || block.size() < count) break;
   }
-  carriage_returns_ = text.find('\n') == std::string::npos && text.find('\r') != std::string::npos;
+  padding_ = (written - size_) * width;
 }
 
 std::size_t TextSource::read_at(std::int64_t offset, char* to, std::size_t count) const {

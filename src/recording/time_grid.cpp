@@ -38,6 +38,24 @@ double share_of(const std::vector<double>& values, double from) {
   return static_cast<double>(many) / static_cast<double>(values.size());
 }
 
+// Of the steps forward, one that few exceed; 0 where there is none.
+double usual_rise(std::vector<double> steps) {
+  std::erase_if(steps, [](double step) { return step <= 0.0; });
+  return steps.empty() ? 0.0 : quantile_of(std::move(steps), 0.9);
+}
+
+// Gaps and restarts of the clock among the steps do not count.
+double mean_without_jumps(const std::vector<double>& steps, double most) {
+  double sum = 0.0;
+  double count = 0.0;
+  for (const double step : steps) {
+    if (step < 0.0 || step > most) continue;
+    sum += step;
+    count += 1.0;
+  }
+  return count > 0.0 ? sum / count : 0.0;
+}
+
 // The rate with the fewest digits within the uncertainty of the stamps.
 double round_rate(double rate_hz, double relative_uncertainty) {
   const double exponent = std::floor(std::log10(rate_hz));
@@ -48,6 +66,11 @@ double round_rate(double rate_hz, double relative_uncertainty) {
     if (std::abs(candidate - rate_hz) <= relative_uncertainty * rate_hz) return candidate;
   }
   return rate_hz;
+}
+
+std::string missing_text(double from_s, double jump_s, double samples) {
+  return fmt::format("after {} s the times jump by {} s, {:.0f} {} missing", base::plain(from_s), base::rounded(jump_s),
+                     samples, samples == 1.0 ? "sample is" : "samples are");
 }
 
 base::Finding finding(base::Code code, std::string text, double from_s, double to_s) {
@@ -73,9 +96,9 @@ TimeGrid::TimeGrid(const std::vector<double>& first_times_s, double resolution_s
   resolution_s_ = std::max(resolution_s_, latest * relative_resolution_);
 
   const double median = median_of(steps);
-  const double mean = (first_times_s.back() - first_times_s.front()) / static_cast<double>(steps.size());
   repeated_ = 1.0 - share_of(steps, 0.0) > repeated_share;
-  if (repeated_) resolution_s_ = std::max(resolution_s_, *std::max_element(steps.begin(), steps.end()));
+  if (repeated_) resolution_s_ = std::max(resolution_s_, usual_rise(steps));
+  const double mean = mean_without_jumps(steps, wide_gap_steps * std::max(median, 0.0) + 2.0 * resolution_s_);
   // Coarse stamps: the median is a multiple of their resolution, the mean is not.
   step_s_ = median > 4.0 * resolution_s_ ? median : mean;
 
@@ -154,9 +177,9 @@ GridVerdict TimeGrid::verdict(const std::vector<RowTime>& remembered, const std:
     const double jump = parts[i].first_s - parts[i - 1].last_s;
     const bool back = std::find(jumps_back_.begin(), jumps_back_.end(), i) != jumps_back_.end();
     std::string text =
-        back ? fmt::format("the times jump back by {} s; how long the pause was is not known", base::rounded(-jump))
-             : fmt::format("the times jump by {} s, {:.0f} samples are missing", base::rounded(jump),
-                           std::max(1.0, std::round(jump * verdict.rate_hz) - 1.0));
+        back ? fmt::format("after {} s the times jump back by {} s; how long the pause was is not known",
+                           base::plain(from), base::rounded(-jump))
+             : missing_text(from, jump, std::max(1.0, std::round(jump * verdict.rate_hz) - 1.0));
     if (i == gaps_listed && parts.size() - 1 > gaps_listed) {
       text += fmt::format("; {} more gaps follow", parts.size() - 1 - gaps_listed);
     }

@@ -178,6 +178,16 @@ void read_calibration(const Table& row, SurveyRecording& out) {
   }
 }
 
+recording::TextOptions read_text_options(const Table& row) {
+  recording::TextOptions text;
+  if (const auto word = row.text("separator")) text.separator = recording::separator_named(*word);
+  if (const auto word = row.text("decimal")) text.decimal = recording::decimal_named(*word);
+  if (const auto word = row.text("time_unit")) text.time_unit_s = recording::time_unit_named(*word);
+  if (const auto word = row.text("dates")) text.day_first = recording::day_first_named(*word);
+  if (const auto column = row.integer("time_column")) text.time_column = static_cast<int>(*column);
+  return text;
+}
+
 SurveyRecording read_recording(const Table& row, const Survey& survey) {
   SurveyRecording out;
   out.written = *row.text("file");
@@ -192,6 +202,7 @@ SurveyRecording read_recording(const Table& row, const Survey& survey) {
   out.part_s = row.interval("part_s");
   out.added_mass_kg = row.number("added_mass_kg");
   out.open.rate_hz = row.number("rate_hz");
+  out.open.text = read_text_options(row);
   std::set<int> seen;
   for (const Table& channel : row.tables("channel")) {
     out.open.channels.push_back(read_channel(channel, survey, out));

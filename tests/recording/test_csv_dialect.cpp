@@ -150,7 +150,7 @@ const std::vector<Sample>& samples() {
        {"a"},
        {"g"},
        {{g, 2 * g, 3 * g}},
-       "time of day"},
+       "date and time in column 1"},
       {"time of day and date apart",
        "Date;Time;a [g]\n2024-02-28;12:00:00,5;1\n2024-02-28;12:00:01,0;2\n2024-02-28;12:00:01,5;3\n",
        2,
@@ -259,7 +259,7 @@ TEST_CASE("without times the rate must be given") {
 }
 
 TEST_CASE("whole-number times without a unit need the rate, and get their unit from it") {
-  const std::string text = "timestamp,a [g]\n1700000000000,1\n1700000000010,2\n1700000000020,3\n";
+  const std::string text = "timestamp,a [g]\n1700000,1\n1700010,2\n1700020,3\n";
   CHECK(open_error(text).remedy.find("--rate") != std::string::npos);
   OpenOptions options;
   options.rate_hz = 100.0;

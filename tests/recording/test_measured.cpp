@@ -58,7 +58,7 @@ TEST_CASE("three wired accelerometers on a footbridge are read at 6400 Hz in g")
   REQUIRE(recording.channels.size() == 3);
   CHECK(recording.channels[2].name == "Acceleration_2");
   CHECK(recording.channels[2].unit.name == "g");
-  CHECK(recording.format == "CSV: comma, decimal point, 23 header lines, time in column 1 [s]");
+  CHECK(recording.format == "CSV: comma, decimal point, 23 header lines, time in column 1 [s, assumed]");
   CHECK(recording.findings.empty());
   CHECK(all_samples(*reader)[0][0] == Approx(-0.003235 * base::standard_gravity).epsilon(1e-14));
 }
@@ -74,7 +74,7 @@ TEST_CASE("a shaker's beam is read at 3200 Hz from its times, not from its stale
   CHECK(recording.channels[1].unit.name == "lbf");
   CHECK(recording.channels[1].role == recording::Role::force);
   CHECK(recording.channels[2].unit.name == "g");
-  CHECK(recording.format == "CSV: tab, decimal point, 23 header lines, time in column 1 [s]");
+  CHECK(recording.format == "CSV: tab, decimal point, 23 header lines, time in column 1 [s, assumed]");
   CHECK(recording.findings.empty());
 }
 

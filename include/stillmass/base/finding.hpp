@@ -19,6 +19,7 @@ enum class Code {
   not_a_number,
   gap,
   uneven_times,
+  odd_lines,
   truncated,
   no_signal,
   spikes,

@@ -8,6 +8,7 @@
 
 #include "stillmass/base/context.hpp"
 #include "stillmass/recording/chunk.hpp"
+#include "stillmass/recording/text_options.hpp"
 
 namespace stillmass::recording {
 
@@ -32,6 +33,7 @@ class Reader {
 struct OpenOptions {
   std::vector<ChannelSetting> channels;
   std::optional<double> rate_hz;  ///< a CSV without a time column needs it
+  TextOptions text;
 };
 
 /// Opens by content, not by name. Throws `Error` of kind `file` (not there, not a regular file, not understood, empty)
