@@ -68,13 +68,15 @@ std::optional<SlowMean::Shift> SlowMean::shift() const {
   for (std::size_t i = 1; i < n; ++i) steps.push_back(mean[i] - mean[i - 1]);
   const double scatter = numeric::mad_scale(steps) / std::sqrt(2.0);
   const double noticed = std::max(quality_limit::drift_scatter * scatter, quality_limit::drift_share * usual);
+  // A blow at the beginning has a mean of its own, which its swing exceeds by far.
+  const double noticed_at_first = std::max(noticed, quality_limit::drift_share * swing[0]);
 
   const double last = numeric::median({mean.begin() + static_cast<std::ptrdiff_t>(n / 2), mean.end()});
   const double at_first = mean[0] - last;
   const auto far = [&](std::size_t i) {
     return std::abs(mean[i] - last) > std::max(0.1 * std::abs(at_first), 4.0 * scatter);
   };
-  if (std::abs(at_first) > noticed) {
+  if (std::abs(at_first) > noticed_at_first) {
     std::size_t settled = 0;
     while (settled < n && far(settled)) ++settled;
     std::size_t away = 0;

@@ -11,8 +11,8 @@
 
 namespace stillmass::recording {
 
-/// The mean of a signal in columns of half a second or longer, at most 240 of them: how the level that the signal swings
-/// about moves over the recording.
+/// The mean of a signal in columns of half a second or longer, at most 240 of them: how the level that the signal
+/// swings about moves over the recording.
 class SlowMean {
  public:
   SlowMean(FrameRange range, double rate_hz);

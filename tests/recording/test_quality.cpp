@@ -106,7 +106,9 @@ TEST_CASE("a ring-down that ends in silence has no dropout, nor the next blow a 
       samples.push_back(static_cast<int>(std::lround(20000.0 * std::exp(-0.004 * i) * std::sin(0.3 * i))));
     }
   }
-  CHECK(quality_of(wav16(samples).file()).findings.empty());
+  const auto quality = quality_of(wav16(samples).file());
+  for (const auto& each : quality.findings) UNSCOPED_INFO(each.text);
+  CHECK(quality.findings.empty());
 }
 
 TEST_CASE("a value that stands still for long is a flat line") {
