@@ -114,8 +114,8 @@ bool is_grouped_number(std::string_view cell) {
 
 namespace {
 
-// "10:15:00,250,1.5": clock times without a fraction and, behind the comma, digits of equal number in every row, three or
-// six: a column, or the fraction?
+// "10:15:00,250,1.5": clock times without a fraction and, behind the comma, digits of equal number in every row, three
+// or six: a column, or the fraction?
 bool fraction_split_off(const CsvDialect& dialect) {
   if (dialect.separator != ',' || dialect.quoted) return false;
   std::vector<std::string_view> cells;
@@ -149,17 +149,18 @@ void refuse_ambiguity(const CsvDialect& dialect, const TextOptions& options, con
   }
   const std::string grouped_number = cell_with_thousands(dialect);
   if (!grouped_number.empty()) {
-    throw base::file_error(where, fmt::format("has numbers with a sign between thousands, such as \"{}\"", grouped_number),
+    throw base::file_error(where,
+                           fmt::format("has numbers with a sign between thousands, such as \"{}\"", grouped_number),
                            "export it without such a sign");
   }
   if (!options.decimal && thousands_possible(dialect)) {
     const bool comma = dialect.decimal == ',';
-    throw base::file_error(where,
-                           fmt::format("a {} in the numbers may be a decimal sign or stand between thousands",
-                                       comma ? "comma" : "point"),
-                           fmt::format("if it is the decimal sign say --decimal {}; else export it without a sign "
-                                       "between thousands",
-                                       decimal_name(dialect.decimal)));
+    throw base::file_error(
+        where,
+        fmt::format("a {} in the numbers may be a decimal sign or stand between thousands", comma ? "comma" : "point"),
+        fmt::format("if it is the decimal sign say --decimal {}; else export it without a sign "
+                    "between thousands",
+                    decimal_name(dialect.decimal)));
   }
 }
 

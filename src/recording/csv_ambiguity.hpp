@@ -13,8 +13,9 @@ namespace stillmass::recording {
 /// "1.234,5", "1,234,567".
 bool is_grouped_number(std::string_view cell);
 
-/// Throws `Error` (file, at `where`) for a comma or a point that may be a decimal sign as well as something else, unless
-/// the user has said what it is: a guess would change the numbers. Numbers with a sign between thousands are refused.
+/// Throws `Error` (file, at `where`) for a comma or a point that may be a decimal sign as well as something else,
+/// unless the user has said what it is: a guess would change the numbers. Numbers with a sign between thousands are
+/// refused.
 void refuse_ambiguity(const CsvDialect& dialect, const TextOptions& options, const std::string& where);
 
 }  // namespace stillmass::recording

@@ -13,14 +13,15 @@ namespace {
 
 // Times and counters as loggers name them in several languages, in lower case.
 constexpr auto time_names = std::to_array<std::string_view>(
-    {"t",          "x_value",      "x value",     "elapsed",   "elapsed time", "abs time", "absolute time",
-     "rel time",   "relative time", "date/time",  "datetime",  "date time",    "zeit",     "uhrzeit",
-     "messzeit",   "zeitstempel",  "zeitpunkt",   "temps",     "tiempo",       "tempo",    "tijd",
-     "tid",        "czas",         "aika",        "clock",     "epoch",        "ts", "timestamp", "unix",     "unixtime"});
+    {"t",        "x_value",       "x value",   "elapsed",  "elapsed time", "abs time", "absolute time",
+     "rel time", "relative time", "date/time", "datetime", "date time",    "zeit",     "uhrzeit",
+     "messzeit", "zeitstempel",   "zeitpunkt", "temps",    "tiempo",       "tempo",    "tijd",
+     "tid",      "czas",          "aika",      "clock",    "epoch",        "ts",       "timestamp",
+     "unix",     "unixtime"});
 constexpr auto counter_names = std::to_array<std::string_view>(
-    {"index", "idx", "sample",  "samples", "sample no", "sample no.", "sample number", "sample_number", "no",   "no.",
-     "nr",    "nr.", "#",       "n",       "row",       "count",      "counter",       "scan",          "record", "point",
-     "seq",   "id",  "messung", "lfd. nr.", "lfd.nr."});
+    {"index",  "idx",   "sample", "samples", "sample no", "sample no.", "sample number", "sample_number", "no",
+     "no.",    "nr",    "nr.",    "#",       "n",         "row",        "count",         "counter",       "scan",
+     "record", "point", "seq",    "id",      "messung",   "lfd. nr.",   "lfd.nr."});
 constexpr auto detector_words = std::to_array<std::string_view>(
     {"rms", "r.m.s.", "eff", "eff.", "peak", "pk", "0-pk", "0-p", "pp", "p-p", "pk-pk", "peak-peak", "peak-to-peak"});
 
@@ -36,21 +37,59 @@ constexpr base::Unit minute{"min", base::Quantity::time, 60.0};
 constexpr base::Unit hour{"h", base::Quantity::time, 3600.0};
 
 // Units of time beyond those that quantities of a machine have, and words that are name and unit at once.
-constexpr auto time_spellings = std::to_array<Spelling>(
-    {{"ns", nanosecond},          {"nsec", nanosecond},    {"nanoseconds", nanosecond}, {"us", microsecond},
-     {"usec", microsecond},       {"micros", microsecond}, {"microseconds", microsecond}, {"\xc2\xb5s", microsecond},
-     {"\xce\xbcs", microsecond},  {"ms", millisecond},     {"msec", millisecond},       {"msecs", millisecond},
-     {"millis", millisecond},     {"milliseconds", millisecond}, {"millisekunden", millisecond}, {"s", second},
-     {"sec", second},             {"secs", second},        {"sek", second},             {"second", second},
-     {"seconds", second},         {"sekunden", second},    {"min", minute},             {"mins", minute},
-     {"minute", minute},          {"minutes", minute},     {"minuten", minute},         {"h", hour},
-     {"hr", hour},                {"hrs", hour},           {"hour", hour},              {"hours", hour},
-     {"stunden", hour}});
+constexpr auto time_spellings = std::to_array<Spelling>({{"ns", nanosecond},
+                                                         {"nsec", nanosecond},
+                                                         {"nanoseconds", nanosecond},
+                                                         {"us", microsecond},
+                                                         {"usec", microsecond},
+                                                         {"micros", microsecond},
+                                                         {"microseconds", microsecond},
+                                                         {"\xc2\xb5s", microsecond},
+                                                         {"\xce\xbcs", microsecond},
+                                                         {"ms", millisecond},
+                                                         {"msec", millisecond},
+                                                         {"msecs", millisecond},
+                                                         {"millis", millisecond},
+                                                         {"milliseconds", millisecond},
+                                                         {"millisekunden", millisecond},
+                                                         {"s", second},
+                                                         {"sec", second},
+                                                         {"secs", second},
+                                                         {"sek", second},
+                                                         {"second", second},
+                                                         {"seconds", second},
+                                                         {"sekunden", second},
+                                                         {"min", minute},
+                                                         {"mins", minute},
+                                                         {"minute", minute},
+                                                         {"minutes", minute},
+                                                         {"minuten", minute},
+                                                         {"h", hour},
+                                                         {"hr", hour},
+                                                         {"hrs", hour},
+                                                         {"hour", hour},
+                                                         {"hours", hour},
+                                                         {"stunden", hour}});
 // Units behind an underline, where no brackets or powers can be written.
-constexpr auto plain_spellings = std::to_array<std::pair<std::string_view, std::string_view>>(
-    {{"m_s2", "m/s2"}, {"mps2", "m/s2"}, {"ms2", "m/s2"}, {"mm_s", "mm/s"}, {"mmps", "mm/s"}, {"mms", "mm/s"},
-     {"m_s", "m/s"}, {"mps", "m/s"}, {"in_s", "in/s"}, {"ips", "in/s"}, {"mg", "mg"}, {"um", "um"}, {"mm", "mm"},
-     {"mil", "mil"}, {"mils", "mil"}, {"mv", "mV"}, {"kn", "kN"}, {"lbf", "lbf"}, {"rpm", "rpm"}});
+constexpr auto plain_spellings = std::to_array<std::pair<std::string_view, std::string_view>>({{"m_s2", "m/s2"},
+                                                                                               {"mps2", "m/s2"},
+                                                                                               {"ms2", "m/s2"},
+                                                                                               {"mm_s", "mm/s"},
+                                                                                               {"mmps", "mm/s"},
+                                                                                               {"mms", "mm/s"},
+                                                                                               {"m_s", "m/s"},
+                                                                                               {"mps", "m/s"},
+                                                                                               {"in_s", "in/s"},
+                                                                                               {"ips", "in/s"},
+                                                                                               {"mg", "mg"},
+                                                                                               {"um", "um"},
+                                                                                               {"mm", "mm"},
+                                                                                               {"mil", "mil"},
+                                                                                               {"mils", "mil"},
+                                                                                               {"mv", "mV"},
+                                                                                               {"kn", "kN"},
+                                                                                               {"lbf", "lbf"},
+                                                                                               {"rpm", "rpm"}});
 
 template <std::size_t count>
 bool among(const std::string& word, const std::array<std::string_view, count>& words) {
@@ -86,7 +125,8 @@ struct UnitText {
 UnitText unit_text(std::string_view text) {
   text = base::trimmed(text);
   const auto closed_by = [&](char open, char close) { return text.front() == open && text.back() == close; };
-  while (text.size() >= 2 && (closed_by('[', ']') || closed_by('(', ')') || closed_by('{', '}') || closed_by('<', '>'))) {
+  while (text.size() >= 2 &&
+         (closed_by('[', ']') || closed_by('(', ')') || closed_by('{', '}') || closed_by('<', '>'))) {
     text = base::trimmed(text.substr(1, text.size() - 2));
   }
   UnitText out;

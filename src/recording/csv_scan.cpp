@@ -194,7 +194,7 @@ class Scanner {
   TimeGrid grid_;
   double step_s_;
   std::int64_t rows_ = 0;
-  std::int64_t line_;  // of the file, read last
+  std::int64_t line_;                 // of the file, read last
   std::vector<std::string> between_;  // lines of text since the last row
   std::int64_t between_line_ = 0;
   CsvScan scan_;

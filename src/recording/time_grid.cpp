@@ -176,10 +176,9 @@ GridVerdict TimeGrid::verdict(const std::vector<RowTime>& remembered, const std:
     const double from = parts[i - 1].start_s + (parts[i - 1].last_s - parts[i - 1].first_s);
     const double jump = parts[i].first_s - parts[i - 1].last_s;
     const bool back = std::find(jumps_back_.begin(), jumps_back_.end(), i) != jumps_back_.end();
-    std::string text =
-        back ? fmt::format("after {} s the times jump back by {} s; how long the pause was is not known",
-                           base::plain(from), base::rounded(-jump))
-             : missing_text(from, jump, std::max(1.0, std::round(jump * verdict.rate_hz) - 1.0));
+    std::string text = back ? fmt::format("after {} s the times jump back by {} s; how long the pause was is not known",
+                                          base::plain(from), base::rounded(-jump))
+                            : missing_text(from, jump, std::max(1.0, std::round(jump * verdict.rate_hz) - 1.0));
     if (i == gaps_listed && parts.size() - 1 > gaps_listed) {
       text += fmt::format("; {} more gaps follow", parts.size() - 1 - gaps_listed);
     }
