@@ -93,6 +93,12 @@ std::string cell_with_thousands(const CsvDialect& dialect) {
 
 }  // namespace
 
+bool has_typeset_minus(std::string_view cell, char decimal) {
+  constexpr std::string_view minus = "\xE2\x88\x92";
+  cell = bare(cell);
+  return cell.starts_with(minus) && read_cell(cell.substr(minus.size()), decimal).kind == CellKind::number;
+}
+
 bool is_grouped_number(std::string_view cell) {
   cell = without_sign(bare(cell));
   for (const std::string_view signs : {".,", ",.", "'.", "',"}) {
@@ -142,6 +148,15 @@ void refuse_ambiguity(const CsvDialect& dialect, const TextOptions& options, con
         fmt::format("a comma in \"{}\" may be a decimal sign or stand between columns",
                     base::printable(base::trimmed(dialect.rows.front()).substr(0, 40))),
         "say which with --separator comma or --decimal comma, or export it with semicolons between columns");
+  }
+  bool typeset = false;
+  for_each_number(dialect, [&](std::string_view cell) {
+    typeset = has_typeset_minus(cell, dialect.decimal);
+    return !typeset;
+  });
+  if (typeset) {
+    throw base::file_error(where, "has minus signs of typesetting (U+2212) in its numbers",
+                           "replace them by hyphens, or export it as plain text");
   }
   if (fraction_split_off(dialect)) {
     throw base::file_error(where, "the comma behind the clock times may be a decimal sign or stand between columns",

@@ -40,8 +40,8 @@ std::string signature_of(std::string_view line, const Way& way, std::vector<std:
   std::string letters;
   for (const std::string_view cell : cells) {
     const CellKind kind = read_cell(cell, way.decimal).kind;
-    // A number with signs between thousands is one here, so that it is refused as such and not as text.
-    const bool text = kind == CellKind::text && !is_grouped_number(cell);
+    // Numbers that are refused for how they are written are numbers here, so that the refusal says so.
+    const bool text = kind == CellKind::text && !is_grouped_number(cell) && !has_typeset_minus(cell, way.decimal);
     letters.push_back(kind == CellKind::empty ? 'e' : (text ? 't' : 'n'));
   }
   letters.erase(letters.find_last_not_of('e') + 1);

@@ -283,7 +283,8 @@ ColumnLabel read_label(std::string_view cell) {
   const bool time_unit = label.unit && label.unit->quantity == base::Quantity::time;
   const bool may_be_minimum = low.size() < 2 || low == "min" || low == "mins" || low == "hr";
   const auto named_by_unit = may_be_minimum || label.unit ? std::nullopt : time_unit_in(low);
-  const bool named = named_like_time(low) && (time_unit || !label.unit);
+  const bool spelt = low.find("time") != std::string::npos || low.find("zeit") != std::string::npos;
+  const bool named = time_unit ? named_like_time(low) || spelt : named_like_time(low) && !label.unit;
   label.is_time = named_by_unit || named || (low.empty() && time_unit);
   if (named_by_unit) label.unit = named_by_unit;
   label.is_counter = among(low, counter_names) && !label.unit;
@@ -291,11 +292,38 @@ ColumnLabel read_label(std::string_view cell) {
   return label;
 }
 
+namespace {
+
+// The lines of the header as UTF-8; a line end within quotes is a blank.
+std::vector<std::string> logical_lines(const CsvDialect& dialect, const TextSource& text) {
+  constexpr std::size_t most_joined = 8;  // beyond that it is a lone quote
+  std::vector<std::string> lines;
+  std::size_t joined = 0;
+  bool open = false;
+  for (const std::string& line : dialect.header) {
+    std::string read = text.utf8(line);
+    const bool odd_quotes = std::count(read.begin(), read.end(), '"') % 2 != 0;
+    if (open && joined < most_joined) {
+      lines.back() = std::string(base::trimmed(lines.back())) + " " + read;
+      ++joined;
+    } else {
+      lines.push_back(std::move(read));
+      open = false;
+      joined = 0;
+    }
+    open = open != odd_quotes;
+  }
+  return lines;
+}
+
+}  // namespace
+
 std::vector<ColumnLabel> read_header(const CsvDialect& dialect, const TextSource& text) {
   std::vector<std::string> names;
   std::vector<std::string> units;
-  for (auto line = dialect.header.rbegin(); line != dialect.header.rend(); ++line) {
-    const std::vector<std::string> cells = cells_of(text.utf8(*line), dialect);
+  const std::vector<std::string> lines = logical_lines(dialect, text);
+  for (auto line = lines.rbegin(); line != lines.rend(); ++line) {
+    const std::vector<std::string> cells = cells_of(*line, dialect);
     if (units.empty() && are_units(cells, dialect)) {
       units = cells;
     } else if (names.empty() && are_names(cells, dialect)) {

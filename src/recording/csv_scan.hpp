@@ -46,6 +46,7 @@ struct CsvScan {
   std::vector<RowTime> mark_times;      ///< stamps of these rows and of the last one; empty without times
   GridVerdict grid;                     ///< of a table with times
   OddLines without_time;                ///< rows left out
+  bool look_at_times = false;           ///< only the time tells whether a line is a row
   OddLines texts;                       ///< no rows, no comments
   OddLines headers;                     ///< the header again: the logger was restarted
   OddLines too_long;                    ///< rows with more cells than columns

@@ -111,6 +111,12 @@ const std::vector<Row>& rows() {
        "comma", "column 1 [s]", 10, "T[degC]", {20}, {22}},
       {"separators within quotes", "\"t [s]\",\"Pump, DE [g]\"\n0.0,1\n0.1,2\n0.2,3\n",
        "comma", "column 1 [s]", 10, "Pump, DE[g]", {1}, {3}},
+      {"a line end within quotes", "\"Time\n[s]\",\"Acceleration\n[g]\"\n0.0,1\n0.1,2\n0.2,3\n",
+       "comma, decimal point, 3 header lines", "column 1 [s]", 10, "Acceleration[g]", {1}, {3}},
+      {"a separator stated for spreadsheets", "sep=;\nt [s];a [g]\n0.0;1\n0.1;2\n0.2;3\n",
+       "semicolon, decimal point, 2 header lines", "column 1 [s]", 10, "a[g]", {1}, {3}},
+      {"numbers in the header", "Channel;1;2\nGain;50;50\nUnit;g;V\nt [s];a;b\n0.0;1;4\n0.1;2;5\n0.2;3;6\n",
+       "semicolon, decimal point, 4 header lines", "column 1 [s]", 10, "a[g] b[V]", {1, 4}, {3, 6}},
       {"comments with #", "# t [s], a [g]\n0.0,1\n# a note\n0.1,2\n0.2,3\n",
        "comma", "column 1 [s]", 10, "a[g]", {1}, {3}},
       {"comments with %", "% made by a script\n% t [s]   a [g]\n0.0 1\n0.1 2\n0.2 3\n",
@@ -177,6 +183,9 @@ const std::vector<Row>& rows() {
        "Date Time;Elapsed [s];a [g]\n2024-02-28 10:00:00;0.0;1\n2024-02-28 10:00:00;0.1;2\n"
        "2024-02-28 10:00:00;0.2;3\n",
        "semicolon", "column 2 [s]; column 1 (times) left out", 10, "a[g]", {1}, {3}},
+      {"a date that stands still before a finer time", "Date/Time;Rel. Time [s];a [g]\n2024-02-28 10:00:00;0.0;1\n"
+       "2024-02-28 10:00:00;0.1;2\n2024-02-28 10:00:00;0.2;3\n",
+       "semicolon", "column 2 [s]", 10, "a[g]", {1}, {3}},
       {"a column of remarks", "t [s],State,a [g]\n0.0,run,1\n0.1,run,2\n0.2,run,3\n",
        "comma", "column 1 [s]; column 2 (no numbers) left out", 10, "a[g]", {1}, {3}},
   };
