@@ -33,7 +33,8 @@ std::optional<double> settle(const Response& response, double start) {
     const double change = -slope.first / slope.second;
     s += change;
     if (!(std::abs(s - start) < 0.1 * start)) return {};
-    if (std::abs(change) < 1e-5 * s) return s;  // the next change would be its square
+    // The next change would be near its square, and the height at a peak errs by the square of that.
+    if (std::abs(change) < 1e-4 * s) return s;
   }
   return {};
 }
@@ -95,20 +96,21 @@ Response::Slope Response::log_slope(double s) const {
 
   const double a = own_ * t - s;
   const double b = own_ * c;
-  const double n = a * a + s * b * b;
-  const double n1 = (b * b - 2.0 * a) / n;
-  const double n2 = 2.0 / n;
+  const double per_n = 1.0 / (a * a + s * b * b);
+  const double n1 = (b * b - 2.0 * a) * per_n;
+  const double n2 = 2.0 * per_n;
 
   const double real = (1.0 - s) * (t - s) - mu * t * s - 2.0 * z * c * s;
   const double real1 = 2.0 * s - (1.0 + t + mu * t + 2.0 * z * c);
   const double imag = c * (1.0 - (1.0 + mu) * s) + 2.0 * z * (t - s);
   const double imag1 = -c * (1.0 + mu) - 2.0 * z;
-  const double d = real * real + s * imag * imag;
-  const double d1 = (2.0 * real * real1 + imag * imag + 2.0 * s * imag * imag1) / d;
-  const double d2 = (2.0 * real1 * real1 + 4.0 * real + 4.0 * imag * imag1 + 2.0 * s * imag1 * imag1) / d;
+  const double per_d = 1.0 / (real * real + s * imag * imag);
+  const double d1 = (2.0 * real * real1 + imag * imag + 2.0 * s * imag * imag1) * per_d;
+  const double d2 = (2.0 * real1 * real1 + 4.0 * real + 4.0 * imag * imag1 + 2.0 * s * imag1 * imag1) * per_d;
 
-  const double w1 = base_ / (1.0 + base_ * s);
-  return {power_ / s + w1 + n1 - d1, -power_ / (s * s) - w1 * w1 + n2 - n1 * n1 - d2 + d1 * d1};
+  const double w1 = base_ == 0.0 ? 0.0 : base_ / (1.0 + base_ * s);
+  const double per_s = 1.0 / s;
+  return {power_ * per_s + w1 + n1 - d1, -power_ * per_s * per_s - w1 * w1 + n2 - n1 * n1 - d2 + d1 * d1};
 }
 
 Response::Sensitivity Response::sensitivity(double s) const {
@@ -146,7 +148,11 @@ std::optional<std::array<double, 2>> two_peaks(const Response& response,
   std::size_t count = 0;
   double before = 0.0;
   bool rising = false;
-  for (const double s : spread(resonant_range(response), 80)) {
+  constexpr int points = 80;
+  const base::Interval range = resonant_range(response);
+  const double ratio = std::pow(range.hi / range.lo, 1.0 / (points - 1));
+  double s = range.lo;
+  for (int i = 0; i < points; ++i, s *= ratio) {
     const bool rises = response.log_slope(s).first > 0.0;
     if (rising && !rises) {
       if (count == 2) return {};

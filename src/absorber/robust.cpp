@@ -54,9 +54,10 @@ Tuned robust(std::span<const MachineCase> cases, Forcing forcing, Objective obje
     hints[i] = peaks;
     return std::max(response.value((*peaks)[0]), response.value((*peaks)[1]));
   };
+  constexpr std::size_t grain = 1024;  // a case takes 0.1 us: fewer are not worth a thread
   const auto cost = [&](double tuning, double damping) {
     base::for_ranges(
-        context, cases.size(), 128,
+        context, cases.size(), grain,
         [&](std::size_t begin, std::size_t end) {
           for (std::size_t i = begin; i < end; ++i) heights[i] = height(i, tuning, damping);
           return true;
@@ -76,6 +77,8 @@ Tuned robust(std::span<const MachineCase> cases, Forcing forcing, Objective obje
     middle.machine_damping += machine.machine_damping / static_cast<double>(cases.size());
   }
   const Sizing start = minimax(middle);
+  const Coupled at_start(middle.mass_ratio, middle.machine_damping, start.tuning, start.damping_ratio);
+  hints.assign(cases.size(), two_peaks(Response(at_start, forcing, objective), {}));
   return least_cost(cost, {start.tuning, start.damping_ratio, 0.0}, 0.02, 0.2, 5e-4, middle.least_damping);
 }
 

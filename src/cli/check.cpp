@@ -20,6 +20,10 @@ int run_check(Session& session) {
       const auto reader = session.open(file);
       step::CheckRequest request;
       request.part = session.part(file);
+      if (const survey::SurveyRecording* entry = session.entry(file)) {
+        request.pulses_per_turn = entry->pulses_per_turn;
+        request.falling_edge = entry->falling_edge;
+      }
       if (session.survey()) request.line_frequency_hz = session.survey()->machine.line_frequency_hz;
       results.push_back(step::check(*reader, request, session.context()));
       session.print((results.size() > 1 ? "\n" : "") + report::text(results.back()));

@@ -8,6 +8,10 @@
 #include <string>
 #include <thread>
 
+#ifdef __GLIBC__
+#include <malloc.h>
+#endif
+
 #include "stillmass/base/version.hpp"
 
 #include "cli/commands.hpp"
@@ -90,6 +94,19 @@ int guarded(std::span<const char* const> words) {
   }
 }
 
+// Passes over a recording take and give back the same large buffers, range after range: memory that went back to the
+// system each time would have to be cleared by it each time.
+void keep_freed_memory() {
+#ifdef __GLIBC__
+  constexpr int bytes = 64 * 1024 * 1024;
+  ::mallopt(M_MMAP_THRESHOLD, bytes / 2);
+  ::mallopt(M_TRIM_THRESHOLD, bytes);
+#endif
+}
+
 }  // namespace
 
-int main(int argc, char** argv) { return guarded({argv, static_cast<std::size_t>(argc)}); }
+int main(int argc, char** argv) {
+  keep_freed_memory();
+  return guarded({argv, static_cast<std::size_t>(argc)});
+}

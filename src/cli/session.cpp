@@ -119,7 +119,16 @@ const survey::SurveyRecording* Session::entry(const std::string& file) const {
                           "add it there, or name its channels with --channel");
 }
 
+void Session::calibrate() {
+  if (!survey_ || is_calibrated_) return;
+  is_calibrated_ = true;
+  const survey::Calibrations calibrations = survey::apply_calibrations(*survey_, context());
+  for (const base::Finding& finding : calibrations.findings) warn(finding.text);
+  for (const base::Refusal& refusal : calibrations.refusals) warn(refusal.seen);
+}
+
 std::unique_ptr<recording::Reader> Session::open(const std::string& file) {
+  calibrate();
   recording::OpenOptions options;
   if (const survey::SurveyRecording* known = entry(file)) options = known->open;
   if (const auto rate = arguments_.number("--rate")) options.rate_hz = rate;

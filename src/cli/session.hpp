@@ -13,6 +13,7 @@
 #include "stillmass/report/page.hpp"
 #include "stillmass/report/result_csv.hpp"
 #include "stillmass/step/part.hpp"
+#include "stillmass/survey/calibrations.hpp"
 #include "stillmass/survey/survey_file.hpp"
 
 #include "cli/arguments.hpp"
@@ -42,11 +43,13 @@ class Session {
   /// What the survey file says of that recording; null where there is none. Throws `Error` (usage) where the survey
   /// file does not list it.
   const survey::SurveyRecording* entry(const std::string& file) const;
-  /// Opens a recording with what the survey file and the options say of it.
+  /// Opens a recording with what the survey file (its calibrations too) and the options say of it.
   std::unique_ptr<recording::Reader> open(const std::string& file);
   step::Part part(const std::string& file) const;
 
  private:
+  void calibrate();
+
   Arguments arguments_;
   std::stop_token stop_;
   ProgressBar bar_;
@@ -54,6 +57,7 @@ class Session {
   std::unique_ptr<base::OutputFolder> csv_folder_;
   std::vector<recording::Recording> inputs_;
   bool json_to_output_ = false;
+  bool is_calibrated_ = false;
 };
 
 }  // namespace stillmass::cli

@@ -16,8 +16,11 @@ std::int64_t flat_run_of(double rate_hz) {
 
 }  // namespace
 
-ChannelSamples::ChannelSamples(const Channel& channel, double rate_hz)
+ChannelSamples::ChannelSamples(const Channel& channel, double rate_hz, FrameRange range)
     : runs(channel.offset, flat_run_of(rate_hz)),
+      levels(channel.offset),
+      windows(rate_hz),
+      slow_mean(range, rate_hz),
       offset_(channel.offset),
       limit_(channel.full_scale && channel.stored_step ? *channel.full_scale - limit_steps * *channel.stored_step
                                                        : std::numeric_limits<double>::infinity()) {}
@@ -30,6 +33,9 @@ void ChannelSamples::take(std::span<const double> samples, std::int64_t first_fr
     moments.add(mine);
     runs.take(mine, first_frame, segment_place);
     count_at_limit(mine, first_frame);
+    levels.take(mine, std::max(std::abs(moments.least - offset_), std::abs(moments.largest - offset_)));
+    windows.take(mine, first_frame);
+    slow_mean.take(mine, first_frame);
   }
 
   // Neighbours across the border of two pieces: the last samples before stay in front of the new ones.
@@ -40,11 +46,17 @@ void ChannelSamples::take(std::span<const double> samples, std::int64_t first_fr
   line_end_ = first_frame + std::ssize(samples);
   line_segment_ = segment_place;
   const std::int64_t line_begin = line_end_ - std::ssize(line_);
-  const std::int64_t windows = std::clamp<std::int64_t>(owned_end - line_begin, 0, std::ssize(line_));
-  find_spikes(line_, static_cast<std::size_t>(windows), line_begin, line_begin == segment.first_frame,
+  const std::int64_t starts = std::clamp<std::int64_t>(owned_end - line_begin, 0, std::ssize(line_));
+  find_spikes(line_, static_cast<std::size_t>(starts), line_begin, line_begin == segment.first_frame,
               line_end_ == segment.first_frame + segment.frames, spikes);
-  const auto pairs = static_cast<std::size_t>(std::min(windows + 1, std::ssize(line_)));
+  const auto pairs = static_cast<std::size_t>(std::min(starts + 1, std::ssize(line_)));
   smallest_change_seen = std::min(smallest_change_seen, smallest_change(std::span(line_).first(pairs)));
+  // As many as there are windows of a spike, so that none is counted again with the next piece.
+  const std::int64_t last_start = std::min(starts, std::ssize(line_) - static_cast<std::int64_t>(spike_window) + 1);
+  for (std::int64_t i = 0; i < last_start; ++i) {
+    const double* const x = line_.data() + i;
+    if (stands_still(x[0], x[1], offset_)) levels.take_still(x[1], line_begin + i + 1);
+  }
 }
 
 void ChannelSamples::count_at_limit(std::span<const double> samples, std::int64_t first_frame) {
@@ -77,6 +89,9 @@ void ChannelSamples::merge(const ChannelSamples& later) {
   smallest_change_seen = std::min(smallest_change_seen, later.smallest_change_seen);
   runs.append(later.runs);
   spikes.append(later.spikes);
+  levels.merge(later.levels);
+  windows.merge(later.windows);
+  slow_mean.merge(later.slow_mean);
 }
 
 }  // namespace stillmass::recording

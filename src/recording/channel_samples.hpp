@@ -8,8 +8,11 @@
 
 #include "stillmass/recording/recording.hpp"
 
+#include "recording/level_counts.hpp"
 #include "recording/moments.hpp"
+#include "recording/quiet_windows.hpp"
 #include "recording/runs.hpp"
+#include "recording/slow_mean.hpp"
 #include "recording/spikes.hpp"
 
 namespace stillmass::recording {
@@ -17,7 +20,8 @@ namespace stillmass::recording {
 /// What is gathered of the samples of one channel over a range of frames; ranges that follow each other can be merged.
 class ChannelSamples {
  public:
-  ChannelSamples(const Channel& channel, double rate_hz);
+  /// range: the frames of the whole pass.
+  ChannelSamples(const Channel& channel, double rate_hz, FrameRange range);
 
   /// Valid samples, consecutive, of one segment; those from `owned_end` on are only looked at as neighbours.
   void take(std::span<const double> samples, std::int64_t first_frame, std::size_t segment_place,
@@ -35,6 +39,9 @@ class ChannelSamples {
   double smallest_change_seen = std::numeric_limits<double>::infinity();
   RunChain runs;
   SpikeList spikes;
+  LevelCounts levels;
+  QuietWindows windows;
+  SlowMean slow_mean;
 
  private:
   void count_at_limit(std::span<const double> samples, std::int64_t first_frame);

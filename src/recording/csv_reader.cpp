@@ -141,6 +141,16 @@ void set_restarts(const CsvScan& scan, Recording& recording) {
   end_at(scan.rows);
 }
 
+// Beyond these no recorder samples, and numbers of frames computed from the rate would leave their range.
+void check_plausible(const Recording& recording, bool has_time, const std::string& where) {
+  constexpr double slowest_hz = 1e-6;
+  constexpr double fastest_hz = 1e9;
+  if (recording.rate_hz >= slowest_hz && recording.rate_hz <= fastest_hz) return;
+  const std::string rate = base::rounded(recording.rate_hz, 3) + " Hz";
+  if (!has_time) throw base::usage_error(where, "no recorder samples at " + rate, "check --rate");
+  throw base::file_error(where, "its times say " + rate, "check the column of times and its unit");
+}
+
 // The user's rate beside a column of times: they must agree.
 void check_rate(const OpenOptions& options, const Recording& recording, const std::string& where) {
   constexpr double agreement = 0.05;
@@ -166,10 +176,12 @@ std::unique_ptr<Reader> open_csv(std::shared_ptr<const InputFile> file, const st
   if (table.has_time) {
     recording->rate_hz = scan.grid.rate_hz;
     if (table.time_is_count) recording->rate_hz = *options.rate_hz;
+    check_plausible(*recording, true, where);
     check_rate(options, *recording, where);
     set_segments(scan, *recording);
   } else {
     recording->rate_hz = *options.rate_hz;
+    check_plausible(*recording, false, where);
     recording->frames = scan.rows;
     set_restarts(scan, *recording);
   }

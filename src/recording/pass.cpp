@@ -34,6 +34,14 @@ void feed(Reader& reader, FrameRange owned, std::int64_t pass_end, Partials& par
   }
 }
 
+// What a range looks at past its end is read again by the next one: far looks ask for longer ranges.
+std::int64_t range_frames(std::span<Consumer* const> consumers) {
+  std::int64_t lookahead = 0;
+  for (const Consumer* consumer : consumers) lookahead = std::max(lookahead, consumer->lookahead());
+  const std::int64_t wanted = 2 * lookahead;
+  return std::max<std::int64_t>(1, (wanted + pass_range_frames - 1) / pass_range_frames) * pass_range_frames;
+}
+
 }  // namespace
 
 void run_pass(const Reader& reader, FrameRange range, std::span<Consumer* const> consumers,
@@ -41,9 +49,10 @@ void run_pass(const Reader& reader, FrameRange range, std::span<Consumer* const>
   const FrameRange pass{std::max<std::int64_t>(range.begin, 0), std::min(range.end, reader.recording().frames)};
   if (consumers.empty() || pass.size() == 0) return;
 
+  const std::int64_t frames = range_frames(consumers);
   std::int64_t done = 0;
   base::for_ranges(
-      context, static_cast<std::size_t>(pass.size()), static_cast<std::size_t>(pass_range_frames),
+      context, static_cast<std::size_t>(pass.size()), static_cast<std::size_t>(frames),
       [&](std::size_t begin, std::size_t end) {
         const FrameRange owned{pass.begin + static_cast<std::int64_t>(begin),
                                pass.begin + static_cast<std::int64_t>(end)};
@@ -54,7 +63,7 @@ void run_pass(const Reader& reader, FrameRange range, std::span<Consumer* const>
       },
       [&](Partials partials) {
         for (std::size_t i = 0; i < consumers.size(); ++i) consumers[i]->merge(*partials[i]);
-        done = std::min(done + pass_range_frames, pass.size());
+        done = std::min(done + frames, pass.size());
         context.report(what, static_cast<double>(done) / static_cast<double>(pass.size()));
       });
 }

@@ -1,12 +1,9 @@
 #include "recording/row_parser.hpp"
 
 #include <algorithm>
-#include <charconv>
-#include <cmath>
 #include <cstring>
-#include <limits>
-#include <system_error>
 
+#include "recording/decimal.hpp"
 #include "recording/timestamp.hpp"
 
 namespace stillmass::recording {
@@ -52,8 +49,8 @@ inline bool RowParser::to_next_cell(const char*& at) const {
 
 inline bool RowParser::number(const char*& at, const char* end, double& value) const {
   if (*at == '+') ++at;
-  const auto [stop, fault] = std::from_chars(at, end, value);
-  if (fault != std::errc{} || !(std::abs(value) <= std::numeric_limits<double>::max())) return false;
+  const char* const stop = read_decimal(at, end, value);
+  if (stop == nullptr) return false;
   at = stop;
   return true;
 }

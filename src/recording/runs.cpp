@@ -4,6 +4,8 @@
 
 #include "stillmass/recording/sample_quality.hpp"
 
+#include "recording/strip.hpp"
+
 namespace stillmass::recording {
 
 void RunList::add(const Run& run) {
@@ -49,7 +51,18 @@ void RunChain::take(std::span<const double> samples, std::int64_t first_frame, s
     if (end < count) run.after = x[end];
     push(run);
   };
+  std::int64_t looked_at = 0;  // up to there the strips hold equal neighbours
   for (std::int64_t i = 1; i < count; ++i) {
+    // Within a strip of changing samples, behind a change, no run is longer than one.
+    if (begin == i - 1 && begin > 0 && i >= looked_at && i + std::int64_t{strip} <= count) {
+      if (any_in_strip(x + i, [](const double* at) { return at[0] == at[-1]; })) {
+        looked_at = i + std::int64_t{strip};
+      } else {
+        i += std::int64_t{strip} - 1;
+        begin = i;
+        continue;
+      }
+    }
     if (x[i] == x[i - 1]) continue;
     // The first run of the piece may go on from the piece before; others matter only if they are long.
     if (begin == 0 || i - begin >= quality_limit::clipped_run) found(i);

@@ -10,14 +10,19 @@ namespace stillmass::recording {
 
 struct SampleQuality::State {
   const Recording* recording = nullptr;
+  FrameRange range;  // of the whole pass
   FrameRange owned;
   std::vector<ChannelSamples> channels;
 };
 
-SampleQuality::SampleQuality(const Recording& recording) : state_(std::make_unique<State>()) {
+SampleQuality::SampleQuality(const Recording& recording, std::optional<FrameRange> range)
+    : state_(std::make_unique<State>()) {
   state_->recording = &recording;
-  state_->owned = {0, recording.frames};
-  for (const Channel& channel : recording.channels) state_->channels.emplace_back(channel, recording.rate_hz);
+  state_->range = range.value_or(FrameRange{0, recording.frames});
+  state_->owned = state_->range;
+  for (const Channel& channel : recording.channels) {
+    state_->channels.emplace_back(channel, recording.rate_hz, state_->range);
+  }
 }
 
 SampleQuality::~SampleQuality() = default;
@@ -25,7 +30,7 @@ SampleQuality::~SampleQuality() = default;
 std::int64_t SampleQuality::lookahead() const { return static_cast<std::int64_t>(spike_window) - 1; }
 
 std::unique_ptr<Consumer> SampleQuality::fresh(FrameRange owned) const {
-  auto partial = std::make_unique<SampleQuality>(*state_->recording);
+  auto partial = std::make_unique<SampleQuality>(*state_->recording, state_->range);
   partial->state_->owned = owned;
   return partial;
 }
@@ -62,7 +67,7 @@ std::vector<ChannelQuality> SampleQuality::result() const {
 }
 
 std::vector<ChannelQuality> sample_quality(const Reader& reader, FrameRange range, const base::Context& context) {
-  SampleQuality quality(reader.recording());
+  SampleQuality quality(reader.recording(), range);
   const std::array<Consumer*, 1> consumers{&quality};
   run_pass(reader, range, consumers, context, "looking at the samples");
   return quality.result();

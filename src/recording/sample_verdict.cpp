@@ -32,6 +32,7 @@ class Judge {
     }
     take_numbers();
     if (is_dead()) return quality_;
+    quality_.looks_like_pulses = samples_.levels.has_two_levels();
     if (channel_.role == Role::tacho) return quality_;
     look_for_clipping();
     look_for_few_bits();
@@ -39,6 +40,7 @@ class Judge {
     look_for_dropouts();
     look_for_flat_lines();
     look_for_spikes();
+    look_for_shift();
     return quality_;
   }
 
@@ -113,22 +115,35 @@ class Judge {
       return;
     }
     if (few_steps()) return;
-    look_for_flat_tops(samples_.runs.tops(), samples_.moments.largest);
-    look_for_flat_tops(samples_.runs.bottoms(), samples_.moments.least);
+    if (!look_for_flat_tops(samples_.runs.tops(), samples_.moments.largest)) look_for_noisy_top(+1);
+    if (!look_for_flat_tops(samples_.runs.bottoms(), samples_.moments.least)) look_for_noisy_top(-1);
   }
 
-  void look_for_flat_tops(const FlatTops& tops, double extreme) {
+  // A flat top with the recorder's noise on it, so that its samples are not quite equal.
+  void look_for_noisy_top(int sign) {
+    if (quality_.looks_like_pulses) return;
+    const auto top = samples_.levels.flat_top(sign, step_);
+    if (!top) return;
+    report(Code::overload,
+           fmt::format("the signal stands still near {}, its {} value: {} crowd there and hardly any just {}",
+                       with_unit(top->level), sign > 0 ? "largest" : "least", counted(top->samples, "sample"),
+                       sign > 0 ? "below" : "above"),
+           top->frames.begin, top->frames.end);
+  }
+
+  bool look_for_flat_tops(const FlatTops& tops, double extreme) {
     constexpr std::int64_t enough_tops = 2;
     constexpr std::int64_t enough_samples = 8;  // in a single flat top
-    if (tops.list.runs == 0 || tops.sign * tops.value != extreme) return;
-    if (tops.list.runs < enough_tops && tops.list.longest < enough_samples) return;
+    if (tops.list.runs == 0 || tops.sign * tops.value != extreme) return false;
+    if (tops.list.runs < enough_tops && tops.list.longest < enough_samples) return false;
     const auto& runs = tops.list.first;
     const auto cut = std::count_if(runs.begin(), runs.end(), [&](const Run& run) { return cut_off(run); });
-    if (2 * cut <= std::ssize(runs)) return;
+    if (2 * cut <= std::ssize(runs)) return false;
     report(Code::overload,
            fmt::format("{} at {}, {} in all", counted(tops.list.runs, "flat top"), with_unit(extreme),
                        counted(tops.list.samples, "sample")),
            runs.front().begin, runs.back().end);
+    return true;
   }
 
   // Zeros that the signal jumps into, and out of again unless they last to the end.
@@ -146,13 +161,36 @@ class Judge {
     for (const Run& run : samples_.runs.zeros().first) {
       if (dropped(run)) found.push_back(run);
     }
-    if (found.empty()) return;
+    if (found.empty()) {
+      look_for_quiet_gaps();
+      return;
+    }
     std::int64_t samples = 0;
     for (const Run& run : found) samples += run.length();
     auto& finding = report(Code::dropout,
                            fmt::format("the signal is exactly zero in {}, {} in all",
                                        counted(std::ssize(found), "place"), counted(samples, "sample")),
                            found.front().begin, found.back().end);
+    list_places(found, finding);
+  }
+
+  // A loose contact before an amplifier leaves its noise, not zeros.
+  void look_for_quiet_gaps() {
+    if (few_steps()) return;
+    std::vector<Run> found;
+    for (const FrameRange& gap : samples_.windows.gaps()) {
+      const auto& flats = samples_.runs.flats().first;
+      const bool is_flat = std::any_of(flats.begin(), flats.end(), [&](const Run& run) {
+        return run.begin < gap.end && gap.begin < run.end;  // told as a flat line
+      });
+      if (!is_flat) found.push_back({gap.begin, gap.end, 0, 0.0});
+    }
+    if (found.empty()) return;
+    auto& finding = report(Code::dropout,
+                           fmt::format("a steady signal falls to less than {:.0f} % of its usual swing in {}",
+                                       100.0 * quality_limit::quiet_share, counted(std::ssize(found), "place")),
+                           found.front().begin, found.back().end);
+    finding.strength = base::Strength::fair;
     list_places(found, finding);
   }
 
@@ -193,6 +231,17 @@ class Judge {
         fmt::format("{}{} far off their neighbours, by {} at most", found.size() == SpikeList::kept ? "at least " : "",
                     counted(std::ssize(found), "single sample"), with_unit(largest)),
         found.front().frame, found.back().frame + 1);
+  }
+
+  void look_for_shift() {
+    const auto shift = samples_.slow_mean.shift();
+    if (!shift || few_steps()) return;
+    const char* const what = shift->kind == SlowMean::Shift::Kind::settles  ? "settles"
+                             : shift->kind == SlowMean::Shift::Kind::drifts ? "drifts"
+                                                                            : "jumps";
+    report(Code::drift, fmt::format("the mean {} by {}", what, with_unit(shift->amount)), shift->frames.begin,
+           shift->frames.end)
+        .strength = base::Strength::fair;
   }
 
   const Recording& recording_;

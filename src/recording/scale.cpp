@@ -70,6 +70,14 @@ void apply(Channel& channel, const ChannelSetting& setting, const std::string& w
   }
   if (!channel.unit_known) channel.unit = assumed_unit(channel.role);
   channel.factor = si_factor(setting, channel.unit, fmt::format("{}: channel {}", where, channel.index));
+  if (!setting.correction) return;
+  channel.factor *= setting.correction->factor;
+  channel.factor_u = setting.correction->relative_u;
+  if (setting.correction->unit) {
+    channel.unit = *setting.correction->unit;
+    channel.unit_known = true;
+    channel.role = setting.role.value_or(role_of(channel.unit));
+  }
 }
 
 }  // namespace

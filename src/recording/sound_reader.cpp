@@ -209,6 +209,16 @@ bool SoundReader::decode_up_to(std::int64_t frame) {
   return true;
 }
 
+SoundReader::Stored SoundReader::stored() const {
+  if (integer_bits() > 0) return Stored::integer;
+  const bool is_double = (handle_->info.format & SF_FORMAT_SUBMASK) == SF_FORMAT_DOUBLE;
+  return is_double ? Stored::double_precision : Stored::single_precision;
+}
+
 std::int64_t SoundReader::read(double* to, std::int64_t frames) { return sf_readf_double(handle_->sound, to, frames); }
+std::int64_t SoundReader::read(float* to, std::int64_t frames) { return sf_readf_float(handle_->sound, to, frames); }
+std::int64_t SoundReader::read(std::int32_t* to, std::int64_t frames) {
+  return sf_readf_int(handle_->sound, to, frames);
+}
 
 }  // namespace stillmass::recording

@@ -25,11 +25,16 @@ class SoundReader {
   bool is_compressed() const;
   std::string format() const;  ///< "WAV, 24-bit"
   int integer_bits() const;    ///< 0: floating point
+  /// The type of samples that are read without rounding.
+  enum class Stored { integer, single_precision, double_precision };
+  Stored stored() const;
   /// False where the file cannot be read there. In a compressed file whose end is lost, it decodes all that stands
   /// before.
   bool seek(std::int64_t frame);
   /// Frames read; fewer than asked for at the end.
   std::int64_t read(double* to, std::int64_t frames);
+  std::int64_t read(float* to, std::int64_t frames);         ///< the same of a file of that type
+  std::int64_t read(std::int32_t* to, std::int64_t frames);  ///< full scale 2^31
 
  private:
   void open();

@@ -13,14 +13,13 @@
 #include "stillmass/recording/scale.hpp"
 
 #include "recording/form_header.hpp"
+#include "recording/interleaved.hpp"
 #include "recording/riff_header.hpp"
 #include "recording/sound_reader.hpp"
 #include "recording/validity.hpp"
 
 namespace stillmass::recording {
 namespace {
-
-constexpr std::size_t frames_at_once = 512;  // interleaved samples that stay in the processor's nearest cache
 
 // What all handles of one recording share.
 struct Source {
@@ -33,7 +32,7 @@ struct Source {
 class SoundRecording : public Reader {
  public:
   SoundRecording(std::shared_ptr<const Source> source, std::shared_ptr<const Recording> recording)
-      : source_(std::move(source)), sound_(source_->open()), validity_(recording->channels.size()) {
+      : source_(std::move(source)), sound_(source_->open()), frames_(sound_), validity_(recording->channels.size()) {
     recording_ = std::move(recording);
   }
 
@@ -50,10 +49,9 @@ class SoundRecording : public Reader {
     chunk.segment = 0;
     chunk.first_frame = at_;
     chunk.resize(channels, static_cast<std::size_t>(wanted));
-    interleaved_.resize(frames_at_once * channels);
     for (std::size_t done = 0; done < chunk.frames;) {
-      const std::size_t count = std::min(frames_at_once, chunk.frames - done);
-      const auto read = sound_.read(interleaved_.data(), static_cast<std::int64_t>(count));
+      const std::size_t count = std::min(Interleaved::most_frames, chunk.frames - done);
+      const std::int64_t read = frames_.read(sound_, static_cast<std::int64_t>(count));
       if (read != static_cast<std::int64_t>(count)) {
         broken_at(at_ + static_cast<std::int64_t>(done) + std::max<std::int64_t>(0, read));
       }
@@ -71,18 +69,19 @@ class SoundRecording : public Reader {
   // Channel c of the frames just read, to the chunk's frames from `first` on.
   void spread(Chunk& chunk, std::size_t c, std::size_t first, std::size_t count) {
     const Channel& channel = recording_->channels[c];
-    const std::size_t channels = recording_->channels.size();
     const auto out = chunk.channel(c).subspan(first, count);
-    const double* in = interleaved_.data() + c;
-    unsigned bad = 0;
-    for (std::size_t i = 0; i < count; ++i) {
-      out[i] = in[i * channels] * channel.factor + channel.offset;
-      bad |= std::isfinite(out[i]) ? 0U : 1U;
-    }
-    if (bad == 0) return;
+    frames_.channel(c, channel.factor, channel.offset, out);
+    if (frames_.all_finite() && stays_finite(channel)) return;
     for (std::size_t i = 0; i < count; ++i) {
       if (!std::isfinite(out[i])) validity_.mark_bad(c, chunk.first_frame + static_cast<std::int64_t>(first + i));
     }
+  }
+
+  // No finite sample leaves the range of numbers by the channel's scale; a double may.
+  bool stays_finite(const Channel& channel) const {
+    constexpr double largest = std::numeric_limits<float>::max();
+    return sound_.stored() != SoundReader::Stored::double_precision &&
+           std::isfinite(largest * std::abs(channel.factor) + std::abs(channel.offset));
   }
 
   [[noreturn]] void broken_at(std::int64_t frame) const {
@@ -94,7 +93,7 @@ class SoundRecording : public Reader {
   std::shared_ptr<const Source> source_;
   SoundReader sound_;
   std::int64_t at_ = 0;
-  std::vector<double> interleaved_;
+  Interleaved frames_;
   Validity validity_;
 };
 

@@ -6,11 +6,12 @@
 
 #include "stillmass/recording/sample_quality.hpp"
 
+#include "recording/strip.hpp"
+
 namespace stillmass::recording {
 namespace {
 
 constexpr std::size_t middle = spike_window / 2;
-constexpr std::size_t strip = 64;
 
 bool larger(const Spike& a, const Spike& b) {
   return a.distance != b.distance ? a.distance > b.distance : a.frame < b.frame;
@@ -35,8 +36,10 @@ void judge(std::span<const double> window, std::size_t place, std::int64_t first
 bool may_be_spike(const double* x) {
   const double rise = std::abs(x[0] - 0.5 * (x[-1] + x[1]));
   const double across = std::abs(x[1] - x[-1]);
-  const double beside = std::max(std::abs(x[-1] - x[-2]), std::abs(x[2] - x[1]));
-  return rise > (quality_limit::spike_range - 1.0) * std::max(across, beside);
+  const double before = std::abs(x[-1] - x[-2]);
+  const double behind = std::abs(x[2] - x[1]);
+  const double beside = before > behind ? before : behind;
+  return rise > (quality_limit::spike_range - 1.0) * (across > beside ? across : beside);
 }
 
 }  // namespace
@@ -61,9 +64,8 @@ void find_spikes(std::span<const double> samples, std::size_t windows, std::int6
   if (at_begin && count > 0) judge(window(0), 0, frame(0), spikes);
   for (std::size_t begin = 0; begin < count; begin += strip) {
     const std::size_t end = std::min(count, begin + strip);
-    unsigned any = 0;
-    for (std::size_t i = begin; i < end; ++i) any |= may_be_spike(samples.data() + i + middle) ? 1U : 0U;
-    if (any == 0) continue;
+    const double* const first = samples.data() + begin + middle;
+    if (end == begin + strip && !any_in_strip(first, [](const double* at) { return may_be_spike(at); })) continue;
     for (std::size_t i = begin; i < end; ++i) {
       if (may_be_spike(samples.data() + i + middle)) judge(window(i), middle, frame(i), spikes);
     }

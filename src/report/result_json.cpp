@@ -421,6 +421,17 @@ std::string json(const Envelope& envelope, const survey::SurveyResult& result) {
   out["machine"] = result.survey.machine.name;
   out["target_mm_s"] = number(result.target_m_s, to_mm_s);
   out["summary"] = summary(result);
+  out["calibrations"] = Json::array();
+  for (const survey::ChannelCalibration& each : result.calibrations.channels) {
+    out["calibrations"].push_back({{"file", file(each.recording)},
+                                   {"channel", each.channel},
+                                   {"sensor", each.sensor.empty() ? Json(nullptr) : Json(each.sensor)},
+                                   {"measured", estimate(each.result.measured)},
+                                   {"frequency_hz", number(each.result.frequency_hz)},
+                                   {"correction", estimate(each.result.correction)},
+                                   {"applied", each.applied},
+                                   {"text", each.text}});
+  }
   out["quality"] = Json::array();
   for (const auto& [index, each] : result.quality) {
     out["quality"].push_back({{"file", file(index)}, {"verdict", name(each.verdict)}, {"channels", check(each)}});

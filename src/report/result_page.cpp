@@ -186,6 +186,20 @@ Page page(const Envelope& envelope, const survey::SurveyResult& result) {
   for (const auto& [index, runup] : result.runups) {
     add(out, fmt::format("Run-up: {}", result.survey.recordings[index].written), runup_blocks(runup));
   }
+  std::vector<Block> calibrated;
+  if (!result.calibrations.channels.empty()) {
+    Table table;
+    table.header = {"recording", "channel", "measured", "factor times", "applied"};
+    for (const survey::ChannelCalibration& each : result.calibrations.channels) {
+      const base::Unit unit = base::si_unit(each.result.measured.quantity);
+      table.rows.push_back({result.survey.recordings[each.recording].written, each.channel,
+                            with_u(each.result.measured, 1.0, unit.name), with_u(each.result.correction, 1.0, ""),
+                            each.applied ? "yes" : "no: " + each.result.suspicion});
+      if (!each.applied) calibrated.emplace_back(Caution{Tone::caution, "", each.text + "."});
+    }
+    calibrated.insert(calibrated.begin(), std::move(table));
+  }
+  add(out, "Calibration", std::move(calibrated));
   for (const auto& [index, check] : result.quality) {
     add(out, fmt::format("Recording: {} ({})", result.survey.recordings[index].written, step::name(check.verdict)),
         check_blocks(check));

@@ -234,8 +234,7 @@ std::vector<Block> spectrum_blocks(const step::SpectrumResult& result, bool dens
       table.rows.push_back(
           {with_u(peak.tone.frequency), with_u(peak.tone.amplitude_rms, factor, unit.name), peak.cause.text});
     }
-    table.notes.emplace_back(
-        "Uncertainties are those of this recording; the calibration of the sensor comes on top (usually 2 to 5 %).");
+    table.notes.push_back(uncertainty_note(result));
     if (each.severity) {
       table.notes.push_back(fmt::format("Zone {} of {}, {} (source of the limits: {}).",
                                         machine::name(each.severity->zone), each.severity->limits.standard,

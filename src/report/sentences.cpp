@@ -314,6 +314,15 @@ std::string when(const base::Finding& finding) {
   return fmt::format(" from {:.2f} to {:.2f} s", *finding.from_s, *finding.to_s);
 }
 
+std::string uncertainty_note(const step::SpectrumResult& result) {
+  const bool is_calibrated =
+      std::all_of(result.channels.begin(), result.channels.end(),
+                  [](const step::ChannelSpectrum& each) { return each.channel.factor_u.has_value(); });
+  return is_calibrated ? "+- is the standard uncertainty, that of the sensor's calibration included."
+                       : "+- is the standard uncertainty from this recording; the sensor's calibration comes on top "
+                         "(usually 2 to 5 %).";
+}
+
 std::string sentence(const base::Refusal& refusal) {
   return refusal.measure.empty() ? refusal.seen : refusal.seen + "; " + refusal.measure;
 }
@@ -425,6 +434,10 @@ std::vector<std::string> cautions(const survey::SurveyResult& result) {
         "Strike only a stopped machine, isolated and locked out; a pump or fan can turn by itself (windmilling). In "
         "explosive "
         "atmospheres no hammer and no battery instrument without a permit.");
+  }
+  const auto& recordings = result.survey.recordings;
+  if (std::any_of(recordings.begin(), recordings.end(), [](const auto& each) { return each.hung_mass.has_value(); })) {
+    out.push_back("Hang a test mass low, on rated gear with a second sling, and let nobody stand under it.");
   }
   if (!result.runups.empty()) out.push_back("Keep to the motor's starts per hour; do not dwell on a resonance.");
   if (!result.absorbers.empty()) {

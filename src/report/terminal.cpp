@@ -119,9 +119,7 @@ std::string text(const step::SpectrumResult& result, bool density) {
     }
     all.insert(all.end(), each.findings.begin(), each.findings.end());
   }
-  out +=
-      "\n+- is the standard uncertainty from this recording; the sensor's calibration comes on top (usually 2 to 5 "
-      "%).\n";
+  out += "\n" + wrapped(uncertainty_note(result), screen, 0) + "\n";
   return out + (all.empty() ? "" : "\n" + finding_lines(all));
 }
 
@@ -244,11 +242,16 @@ std::string text(const survey::SurveyResult& result) {
     out += "\nNot answered:\n";
     for (const base::Refusal& each : result.refusals) out += bullet(sentence(each));
   }
+  if (!result.calibrations.channels.empty()) {
+    out += "\nCalibrated:\n";
+    for (const survey::ChannelCalibration& each : result.calibrations.channels) out += bullet(each.text);
+  }
   std::vector<base::Finding> assumed;
   const auto pick = [&](const std::vector<base::Finding>& findings) {
     for (const base::Finding& each : findings) {
       if (each.code == base::Code::stopped_shift_assumed || each.code == base::Code::calibration_assumed ||
-          each.code == base::Code::methods_disagree || each.code == base::Code::outside_model) {
+          each.code == base::Code::methods_disagree || each.code == base::Code::outside_model ||
+          each.code == base::Code::calibration_off) {
         assumed.push_back(each);
       }
     }

@@ -94,6 +94,18 @@ std::optional<Next> next_pulse(const std::vector<double>& times, std::size_t las
   return {};
 }
 
+// The last turns of a shaft that comes to rest: few pulses are left, and each comes later than the one before.
+bool comes_to_rest(const std::vector<double>& times, std::size_t last, double interval) {
+  constexpr std::size_t few = 8;
+  if (times.size() - last > few) return false;
+  for (std::size_t i = last; i + 1 < times.size(); ++i) {
+    const double next = times[i + 1] - times[i];
+    if (next < interval) return false;
+    interval = next;
+  }
+  return true;
+}
+
 // Scatter of a pulse's time about a smooth motion. The third difference over whole turns sees neither uneven marks nor
 // a steady sweep; its variance is 20 times that of one time.
 std::optional<double> time_scatter(const Pulses& pulses) {
@@ -131,6 +143,7 @@ base::Answer<Pulses> repaired_pulses(const std::vector<double>& crossings_s, int
   pulses.time_s.push_back(times[last]);
   pulses.turns.push_back(0.0);
   while (const auto next = next_pulse(times, last, interval)) {
+    if ((next->steps > 1 || next->index > last + 1) && comes_to_rest(times, last, interval)) break;
     const double elapsed = times[next->index] - times[last];
     if (next->index > last + 1) extra.add(next->index - last - 1, times[last + 1], times[next->index - 1]);
     missing.add(next->steps - 1, times[last], times[next->index]);

@@ -23,11 +23,21 @@ namespace {
 constexpr std::size_t block = 4096;             // fine samples between two looks at the stop request
 constexpr double run_in_time_constants = 12.0;  // e^-12 of the start is left at the first recorded sample
 
+bool stands_still(RecordingKind kind) { return kind != RecordingKind::steady && kind != RecordingKind::coastdown; }
+
+// The sensors are not on the skid.
+bool is_calibration(RecordingKind kind) {
+  return kind == RecordingKind::calibrator || kind == RecordingKind::hung_mass;
+}
+
+// A handheld exciter: 10 m/s2 r.m.s. at 1000 rad/s (common practice).
+double exciter(double time_s) { return 10.0 * std::numbers::sqrt2 * std::sin(1000.0 * time_s); }
+
 ShaftMotion shaft_of(const SkidFile& file, std::size_t number) {
   const PlannedRecording& plan = file.recordings[number];
   const numeric::Random random(file.seed);
   const auto draws = stream(number, Draws::speed);
-  if (plan.kind == RecordingKind::bump) return ShaftMotion::standstill();
+  if (stands_still(plan.kind)) return ShaftMotion::standstill();
   if (plan.kind == RecordingKind::steady) return ShaftMotion::steady(file.drive, random, draws);
   return ShaftMotion::coastdown(file.drive, plan.switch_off_s, random, draws);
 }
@@ -55,12 +65,12 @@ class Session {
         plan_(file.recordings[number]),
         factor_(oversampling(plan_.rate_hz)),
         step_s_(1.0 / (plan_.rate_hz * static_cast<double>(factor_))),
-        skid_(file, plan_.kind == RecordingKind::bump ? Condition::stopped : Condition::running, plan_.fitted),
+        skid_(file, stands_still(plan_.kind) ? Condition::stopped : Condition::running, plan_.fitted),
         shaft_(shaft_of(file, number)),
         forces_(file, skid_, number, step_s_),
         propagator_(skid_.mass(), skid_.damping(), skid_.stiffness(), step_s_),
         state_(2 * skid_.dofs(), 0.0) {
-    if (plan_.kind == RecordingKind::bump) {
+    if (plan_.kind == RecordingKind::bump || plan_.kind == RecordingKind::hung_mass) {
       pulses_ = blows_of(*file.hammer, numeric::Random(file.seed), stream(number, Draws::hammer));
       hammer_pattern_ = skid_.pattern(file.points[file.hammer->point]);
     }
@@ -85,9 +95,11 @@ class Session {
     std::vector<double> force = force_at_sample(0);
     for (std::size_t n = 0; n < fine_samples; ++n) {
       listen(n, force, signals);
-      auto next = force_at_sample(n + 1);
-      propagator_.step(state_, force, next);
-      std::swap(force, next);
+      if (!is_calibration(plan_.kind)) {
+        auto next = force_at_sample(n + 1);
+        propagator_.step(state_, force, next);
+        std::swap(force, next);
+      }
       if (signals.front().size() == block || n + 1 == fine_samples) {
         context.check_stop();
         for (std::size_t c = 0; c < chains_.size(); ++c) {
@@ -126,7 +138,7 @@ class Session {
     for (std::size_t c = 0; c < chains_.size(); ++c) {
       const recording::Role role = plan_.channels[c].role;
       if (role == recording::Role::vibration) {
-        signals[c].push_back(dot(rows_[c], state_, force));
+        signals[c].push_back(acceleration(c, n, force));
       } else if (role == recording::Role::force) {
         signals[c].push_back(force_at(pulses_, time_of(n)));
       } else {
@@ -134,6 +146,12 @@ class Session {
         signals[c].push_back(pulse_share(shaft.angle, shaft.speed, step_s_, file_.tacho_angle_rad, file_.tacho_width));
       }
     }
+  }
+
+  double acceleration(std::size_t c, std::size_t n, const std::vector<double>& force) const {
+    if (plan_.kind == RecordingKind::calibrator) return exciter(time_of(n));
+    if (plan_.kind == RecordingKind::hung_mass) return force_at(pulses_, time_of(n)) / plan_.hung_mass_kg;
+    return dot(rows_[c], state_, force);
   }
 
   const SkidFile& file_;

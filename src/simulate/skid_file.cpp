@@ -159,9 +159,15 @@ PlannedRecording read_recording(const Table& table, const SkidFile& skid) {
   }
   if (name.extension() == ".csv") plan.csv = read_csv_style(table);
   const std::string kind = *table.text("kind");
-  plan.kind = kind == "steady"      ? RecordingKind::steady
-              : kind == "coastdown" ? RecordingKind::coastdown
-                                    : RecordingKind::bump;
+  plan.kind = kind == "steady"       ? RecordingKind::steady
+              : kind == "coastdown"  ? RecordingKind::coastdown
+              : kind == "calibrator" ? RecordingKind::calibrator
+              : kind == "hung-mass"  ? RecordingKind::hung_mass
+                                     : RecordingKind::bump;
+  plan.hung_mass_kg = table.number("hung_mass_kg").value_or(0.0);
+  if ((plan.kind == RecordingKind::hung_mass) != (plan.hung_mass_kg > 0.0)) {
+    table.refuse("kind", "a recording of kind \"hung-mass\" and 'hung_mass_kg' go together");
+  }
   plan.rate_hz = *table.number("rate_hz");
   plan.duration_s = *table.number("duration_s");
   plan.switch_off_s = table.number("switch_off_s").value_or(0.0);
@@ -171,7 +177,8 @@ PlannedRecording read_recording(const Table& table, const SkidFile& skid) {
     table.refuse("rate_hz", "a WAV file holds whole rates only");
   plan.fitted = table.flag("fitted").value_or(false);
   if (plan.fitted && !skid.absorber) table.refuse("fitted", "there is no [absorber] to be fitted");
-  if (plan.kind == RecordingKind::bump && !skid.hammer) table.refuse("kind", "there is no [hammer]");
+  const bool is_struck = plan.kind == RecordingKind::bump || plan.kind == RecordingKind::hung_mass;
+  if (is_struck && !skid.hammer) table.refuse("kind", "there is no [hammer]");
   for (const Table& channel : table.tables("channel")) plan.channels.push_back(read_channel(channel, skid));
   if (plan.channels.empty()) table.refuse("channel", "a recording has at least one channel");
   return plan;

@@ -115,9 +115,11 @@ constexpr auto keys = std::to_array<Key>({
 
     {"recording", KeyType::tables, "", true, "", "a recording to be made", "", {}},
     {"recording.file", KeyType::text, "", true, "", "NAME.wav or NAME.csv", "", {}},
-    {"recording.kind", KeyType::text, "", true, "", "", "steady|coastdown|bump", {}},
+    {"recording.kind", KeyType::text, "", true, "", "", "steady|coastdown|bump|calibrator|hung-mass", {}},
     {"recording.rate_hz", KeyType::number, "Hz", true, "", "", "", {1.0, 1e6}},
     {"recording.duration_s", KeyType::number, "s", true, "", "", "", {1e-3, 1e5}},
+    {"recording.hung_mass_kg", KeyType::number, "kg", false, "", "of kind hung-mass, with the sensor on it", "",
+     positive},
     {"recording.switch_off_s", KeyType::number, "s", false, "0", "of kind coastdown", "", not_negative},
     {"recording.bits", KeyType::integer, "", false, "16", "of the recorder", "", {2.0, 24.0}},
     {"recording.fitted", KeyType::flag, "", false, "false", "with the absorber", "", {}},

@@ -26,6 +26,7 @@ void BlockConsumer::advance() {
 }
 
 void BlockConsumer::take(const Chunk& chunk) {
+  if (run_ == plan_->runs().size()) return;
   const auto n = static_cast<std::int64_t>(plan_->length());
   if (carry_.empty()) {
     carry_.resize(chunk.channels());
@@ -39,6 +40,7 @@ void BlockConsumer::take(const Chunk& chunk) {
   if (next_start() < chunk.range().begin) return;
   while (next_start() + n <= chunk.range().end) take_from(chunk);
   if (next_start() < chunk.range().end) carry_over(chunk);
+  if (run_ == plan_->runs().size()) carry_ = {};  // a partial may wait long for its merge
 }
 
 /// Blocks that start before the chunk: it supplies their ends.
@@ -47,6 +49,7 @@ void BlockConsumer::take_from_carry(const Chunk& chunk) {
   const auto ends = static_cast<std::ptrdiff_t>(std::min(chunk.frames, plan_->length() - 1));
   for (std::size_t c = 0; c < carry_.size(); ++c) {
     const auto samples = chunk.channel(c);
+    carry_[c].reserve(plan_->length() + static_cast<std::size_t>(ends));  // less than a block is held
     carry_[c].insert(carry_[c].end(), samples.begin(), samples.begin() + ends);
   }
   const std::int64_t carry_end = carry_first_ + static_cast<std::int64_t>(carry_.front().size());

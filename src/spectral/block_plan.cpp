@@ -157,8 +157,14 @@ std::size_t block_length(const Recording& recording, FrameRange range, double re
     return length;
   }
 
-  const std::size_t shortest = fast_length_at_least(static_cast<std::size_t>(std::ceil(rate / coarsest_hz)));
-  std::size_t length = fast_length_at_most(static_cast<std::size_t>(rate / finest_hz));
+  // No block is longer than the longest part, whatever rate a header states: the search begins there.
+  std::int64_t longest = static_cast<std::int64_t>(least_frames);
+  for (const Segment& segment : recording.segments) longest = std::max(longest, part_of(segment, range).size());
+  const auto at_most_longest = [&](double frames) {
+    return static_cast<std::size_t>(std::min(frames, static_cast<double>(longest)));
+  };
+  const std::size_t shortest = fast_length_at_least(at_most_longest(std::ceil(rate / coarsest_hz)));
+  std::size_t length = fast_length_at_most(at_most_longest(rate / finest_hz));
   while (length > shortest && count(length) < blocks_to_refine) length = fast_length_at_most(length - 1);
   while (length > least_frames && count(length) < least_blocks) length = fast_length_at_most(length - 1);
   if (count(length) < 1) throw no_block(recording, range, static_cast<double>(length) / rate);

@@ -6,6 +6,7 @@
 
 #include <fmt/format.h>
 
+#include "stillmass/numeric/statistics.hpp"
 #include "stillmass/spectral/level.hpp"
 #include "stillmass/spectral/quantity.hpp"
 #include "stillmass/spectral/tone.hpp"
@@ -18,15 +19,25 @@ using base::Code;
 using base::Finding;
 
 // All thresholds here: common practice.
-constexpr double hum_share = 0.1;          // of the mean square, at supply frequency and its odd harmonics
-constexpr int hum_harmonics = 9;           // looked at up to this one
-constexpr double hum_tolerance = 0.004;    // relative; a supply stays within 0.2 Hz of 50 Hz
-constexpr double slope_fall = 4.0;         // density over an octave: steeper than 6 dB
-constexpr double slope_share = 0.5;        // of the integrated mean square that lies on the slope
-constexpr double top_band = 0.1;           // of the range below rate/2, seen for roll-off
-constexpr double no_roll_off = 0.5;        // density of the top over that of the range below it
-constexpr double top_share = 0.01;         // of the mean square, so that silence at the top is no suspicion
-constexpr double steps_above_noise = 2.0;  // density over that of the stored steps
+constexpr double hum_share = 0.1;        // of the mean square, at supply frequency and its odd harmonics
+constexpr double hum_comb_share = 0.01;  // the same where at least three of them stand out
+constexpr int hum_comb = 3;
+constexpr int hum_harmonics = 9;             // looked at up to this one
+constexpr double hum_tolerance = 0.004;      // relative; a supply stays within 0.2 Hz of 50 Hz
+constexpr double slope_fall = 4.0;           // density over an octave: steeper than 6 dB
+constexpr double slope_share = 0.5;          // of the integrated mean square that lies on the slope
+constexpr double top_band = 0.1;             // of the range below rate/2, seen for roll-off
+constexpr double no_roll_off = 0.5;          // density of the top over that of the range below it
+constexpr double top_share = 0.002;          // of the mean square, so that silence at the top is no suspicion
+constexpr double steps_above_noise = 2.0;    // density over that of the stored steps
+constexpr double flat_range = 3.0;           // greatest over least density of octaves of mere noise: 5 dB
+constexpr double mounting_least_hz = 500.0;  // no sensor rings on its mounting below that
+constexpr double mounting_most_hz = 3000.0;  // above, a third of it clears the 1000 Hz of the severity standards
+constexpr double mounting_rise = 8.0;        // density of the hump over that two octaves below: 9 dB
+constexpr double mounting_fall = 30.0;       // and over that an octave above: 15 dB, a sensor falls 40 dB a decade
+constexpr double mounting_lost = 0.5;        // density an octave above over that two octaves below
+constexpr double stationary_spread = 2.0;    // of the blocks' densities; 1 for Gaussian noise
+constexpr double anti_alias = 0.78;          // of rate/2: filters begin there
 
 Finding finding(Code code, const Spectrum& s, base::Strength strength, std::string text) {
   return {.code = code,
@@ -58,21 +69,27 @@ double mean_square_above_zero(const Spectrum& s) {
   return rms * rms;
 }
 
-/// Mean square of the tones at odd multiples of the supply's frequency, if that frequency itself is there. Even
-/// multiples are left out: twice the supply's frequency is a force that motors really have.
-double hum(std::span<const Tone> tones, const Spectrum& s, double supply_hz) {
-  double sum = 0.0;
+struct Hum {
+  double mean_square = 0.0;
+  int harmonics = 0;  // odd ones that stand out, the first counted
+};
+
+/// The tones at odd multiples of the supply's frequency, if that frequency itself is there. Even multiples are left
+/// out: twice the supply's frequency is a force that motors really have.
+Hum hum(std::span<const Tone> tones, double supply_hz) {
+  Hum sum;
   bool has_fundamental = false;
   for (const Tone& tone : tones) {
     for (int k = 1; k <= hum_harmonics; k += 2) {
-      const double tolerance = std::max(hum_tolerance * k * supply_hz, 0.5 * s.line_hz);
+      const double tolerance = hum_tolerance * k * supply_hz + 2.0 * tone.frequency.u.value_or(0.0);
       if (std::abs(tone.frequency.value - k * supply_hz) > tolerance) continue;
-      sum += tone.amplitude_rms.value * tone.amplitude_rms.value;
+      sum.mean_square += tone.amplitude_rms.value * tone.amplitude_rms.value;
+      ++sum.harmonics;
       has_fundamental = has_fundamental || k == 1;
       break;
     }
   }
-  return has_fundamental ? sum : 0.0;
+  return has_fundamental ? sum : Hum{};
 }
 
 std::optional<Finding> mains_hum(const Spectrum& s, std::optional<double> line_frequency_hz) {
@@ -81,11 +98,12 @@ std::optional<Finding> mains_hum(const Spectrum& s, std::optional<double> line_f
   std::vector<double> supplies{50.0, 60.0};
   if (line_frequency_hz) supplies = {*line_frequency_hz};
   for (const double supply : supplies) {
-    const double share = hum(peaks, s, supply) / all;
-    if (share < hum_share) continue;
+    const Hum found = hum(peaks, supply);
+    const double share = found.mean_square / all;
+    if (share < (found.harmonics >= hum_comb ? hum_comb_share : hum_share)) continue;
     return finding(Code::mains_hum, s, share > 0.5 ? base::Strength::strong : base::Strength::fair,
-                   fmt::format("{:.0f} % of the signal's power stands at {:.4g} Hz and its odd harmonics, where the "
-                               "electric supply is",
+                   fmt::format("{:.2g} % of the signal's power stands at {:.4g} Hz and its odd harmonics, where the "
+                               "electric supply is (or a shaft that turns exactly with it)",
                                100.0 * share, supply));
   }
   return std::nullopt;
@@ -112,6 +130,66 @@ std::optional<Finding> aliasing(const Spectrum& s) {
       fmt::format("the spectrum does not fall off towards half the sampling rate ({:.4g} Hz), where {:.0f} % "
                   "of the power still stands",
                   top, 100.0 * share));
+}
+
+/// Nothing but noise: no tone stands out, and the octaves are equally dense.
+std::optional<Finding> mere_noise(const Spectrum& s) {
+  const double top = anti_alias * 0.5 * s.rate_hz;
+  std::vector<double> octaves;
+  for (double hi = top; 0.5 * hi > std::max(10.0, 8.0 * s.line_hz); hi *= 0.5) {
+    octaves.push_back(mean_density(s, 0.5 * hi, hi));
+  }
+  constexpr std::size_t enough = 4;
+  if (octaves.size() < enough) return std::nullopt;
+  const auto [least, most] = std::minmax_element(octaves.begin(), octaves.end());
+  if (*most > flat_range * *least || !tones(s, {.strongest = 1, .prominence = 10.0, .band_hz = {}}).empty()) {
+    return std::nullopt;
+  }
+  return finding(Code::near_noise_floor, s, base::Strength::weak,
+                 fmt::format("the spectrum is flat within {:.1f} dB and no line stands out of it: the noise of sensor "
+                             "or recorder looks like that, a machine does not",
+                             10.0 * std::log10(*most / *least)));
+}
+
+bool is_stationary(const Spectrum& s) {
+  if (s.spread.size() < 2) return false;
+  std::vector<double> spread(s.spread.begin() + 1, s.spread.end());
+  return numeric::median(std::move(spread)) < stationary_spread;
+}
+
+/// A single hump with little above: a sensor on a soft mounting follows up to its resonance and not beyond it. A
+/// resonance of the structure leaves what is above it as high as what is below.
+std::optional<Finding> mounting_resonance(const Spectrum& s) {
+  if (!is_stationary(s)) return std::nullopt;  // blows have a hump and a fall of their own
+  const double top = anti_alias * 0.5 * s.rate_hz;
+  const double ratio = std::exp2(1.0 / 6.0);
+  const auto density = [&](double centre) {
+    return mean_density(s, centre / std::sqrt(ratio), centre * std::sqrt(ratio));
+  };
+  double hump_hz = 0.0;
+  double hump = 0.0;
+  for (double f = mounting_least_hz; f <= mounting_most_hz && 2.0 * f <= top; f *= std::sqrt(ratio)) {
+    if (f * (ratio - 1.0) < 2.0 * s.line_hz) continue;
+    const double here = median_density(s, f / std::sqrt(ratio), f * std::sqrt(ratio));
+    if (here > hump) {
+      hump = here;
+      hump_hz = f;
+    }
+  }
+  if (hump_hz == 0.0 || hump_hz <= mounting_least_hz) return std::nullopt;
+  const double below = median_density(s, hump_hz / 5.0, hump_hz / 2.5);
+  const double above = density(2.0 * hump_hz);
+  if (hump < mounting_rise * below || hump < mounting_fall * above || above > mounting_lost * below)
+    return std::nullopt;
+  // Nothing above may come near it again: then it is one resonance among others.
+  for (double f = 2.0 * hump_hz; f <= top; f *= ratio) {
+    if (density(f) > mounting_lost * below) return std::nullopt;
+  }
+  return finding(
+      Code::mounting_resonance, s, base::Strength::weak,
+      fmt::format("the spectrum has a hump of {:.0f} dB near {:.0f} Hz and falls {:.0f} dB in the octave above "
+                  "it; amplitudes are true to about 10 % below {:.0f} Hz only",
+                  10.0 * std::log10(hump / below), hump_hz, 10.0 * std::log10(hump / above), hump_hz / 3.0));
 }
 
 std::optional<Finding> noise_of_steps(const Spectrum& s, const recording::Channel& channel) {
@@ -159,8 +237,13 @@ std::vector<Finding> spectral_findings(const Spectrum& spectrum, const recording
     add(low_frequency_slope(spectrum));
     add(mains_hum(spectrum, line_frequency_hz));
     add(aliasing(spectrum));
+    if (spectrum.quantity == base::Quantity::acceleration) add(mounting_resonance(spectrum));
   }
   add(noise_of_steps(spectrum, channel));
+  const bool is_told = std::any_of(findings.begin(), findings.end(), [](const Finding& each) {
+    return each.code == Code::near_noise_floor || each.code == Code::aliasing_suspected;
+  });
+  if (channel.role == recording::Role::vibration && !is_told) add(mere_noise(spectrum));
   return findings;
 }
 

@@ -69,6 +69,15 @@ bool is_leakage(const Spectrum& s, const std::vector<Tone>& stronger, std::size_
   return s.density[k] * s.noise_bandwidth_hz < margin * leaked;
 }
 
+/// One value leaves a sorted list, another one comes in: what lies between their places moves up or down by one.
+void replace_in_sorted(std::vector<double>& sorted, double leaving, double coming) {
+  auto at = std::lower_bound(sorted.begin(), sorted.end(), leaving);
+  if (at == sorted.end()) --at;  // of densities that overflowed
+  for (; at + 1 != sorted.end() && at[1] < coming; ++at) at[0] = at[1];
+  for (; at != sorted.begin() && at[-1] > coming; --at) at[0] = at[-1];
+  *at = coming;
+}
+
 /// Of the measured signal to the spectrum's own quantity.
 Tone converted(Tone tone, const Spectrum& spectrum) {
   const double factor = std::abs(integration_factor(spectrum.integrations, tone.frequency.value));
@@ -107,13 +116,14 @@ std::vector<double> noise_floor(const Spectrum& spectrum) {
   // The median of a density averaged K times over its mean: Wilson & Hilferty 1931.
   const double skew = std::pow(1.0 - 1.0 / (9.0 * std::max(measured.effective_averages, 1.0)), 3);
   const std::size_t width = std::min(2 * floor_lines(measured.window) + 1, lines - from);
-  std::vector<double> around(width);
-  for (std::size_t k = from; k < lines; ++k) {
-    const std::size_t first = std::clamp(k < width / 2 ? 0 : k - width / 2, from, lines - width);
-    std::copy_n(measured.density.begin() + static_cast<std::ptrdiff_t>(first), width, around.begin());
-    const auto middle = around.begin() + static_cast<std::ptrdiff_t>(width / 2);
-    std::nth_element(around.begin(), middle, around.end());
-    floor[k] = *middle / skew * std::norm(integration_factor(spectrum.integrations, spectrum.frequency(k)));
+  const std::span<const double> density(measured.density);
+  std::vector<double> around(density.begin() + static_cast<std::ptrdiff_t>(from),
+                             density.begin() + static_cast<std::ptrdiff_t>(from + width));
+  std::sort(around.begin(), around.end());
+  for (std::size_t k = from, first = from; k < lines; ++k) {
+    const std::size_t wanted = std::clamp(k < width / 2 ? 0 : k - width / 2, from, lines - width);
+    for (; first < wanted; ++first) replace_in_sorted(around, density[first], density[first + width]);
+    floor[k] = around[width / 2] / skew * std::norm(integration_factor(spectrum.integrations, spectrum.frequency(k)));
   }
   return floor;
 }

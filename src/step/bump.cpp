@@ -71,16 +71,16 @@ std::string strongest_response(const Found& found, const std::string& wanted) {
 
 // Where nobody stated a calibration, the common one stands in, and that is said.
 void assume_calibration(modal::ImpactTestOptions& options, std::vector<base::Finding>& findings) {
-  bool assumed = !options.force_factor_u;
+  std::string whose = options.force_factor_u ? "" : "the hammer";
   options.force_factor_u = options.force_factor_u.value_or(assumed_calibration_u);
   for (modal::ResponseName& response : options.responses) {
-    assumed = assumed || !response.factor_u;
+    if (!response.factor_u) whose += (whose.empty() ? "" : ", ") + response.channel;
     response.factor_u = response.factor_u.value_or(assumed_calibration_u);
   }
-  if (!assumed) return;
+  if (whose.empty()) return;
   findings.push_back({base::Code::calibration_assumed,
-                      "no calibration is stated for hammer and sensors: " + base::plain(100 * assumed_calibration_u) +
-                          " % is taken for each; the modal mass carries it",
+                      "no calibration is stated for " + whose + ": " + base::plain(100 * assumed_calibration_u) +
+                          " % is taken for each; a modal mass carries it",
                       "",
                       {},
                       {},

@@ -8,20 +8,13 @@
 #include "stillmass/recording/pass.hpp"
 #include "stillmass/spectral/spectral_quality.hpp"
 
+#include "step/channel_checks.hpp"
+
 namespace stillmass::step {
 namespace {
 
 using base::Code;
 using base::Finding;
-
-bool identical(const recording::ChannelQuality& a, const recording::ChannelQuality& b, const spectral::Spectrum& sa,
-               const spectral::Spectrum& sb) {
-  return a.rms && b.rms && *a.rms > 0.0 && a.rms == b.rms && a.peak == b.peak && sa.density == sb.density;
-}
-
-Finding identical_channels(const std::string& a, const std::string& b) {
-  return {Code::identical_channels, "channels '" + a + "' and '" + b + "' carry the same samples", b};
-}
 
 Verdict worst(const std::vector<Finding>& findings, recording::Role role) {
   Verdict verdict = Verdict::good;
@@ -47,8 +40,11 @@ Verdict weight(const Finding& finding, recording::Role role) {
   switch (finding.code) {
     case Code::no_signal:
     case Code::flat_line:
-    case Code::identical_channels:
+    case Code::no_pulses:
       return Verdict::unusable;
+    case Code::identical_channels:
+    case Code::channels_swapped:
+      return finding.strength == base::Strength::strong ? Verdict::unusable : Verdict::doubtful;
     case Code::clipped:
     case Code::overload:
     case Code::dropout:
@@ -64,7 +60,7 @@ CheckResult check(const recording::Reader& reader, const CheckRequest& request, 
   result.recording = reader.recording();
   result.range = frames_of(result.recording, request.part);
 
-  recording::SampleQuality samples(reader.recording());
+  recording::SampleQuality samples(reader.recording(), result.range);
   recording::Overview overview(reader.recording(), result.range, request.overview_columns);
   std::optional<spectral::SpectrumConsumer> spectra;
   try {
@@ -87,14 +83,12 @@ CheckResult check(const recording::Reader& reader, const CheckRequest& request, 
         each.findings.push_back(std::move(finding));
       }
     }
-    for (std::size_t other = 0; other < c && !result.spectra.empty(); ++other) {
-      if (identical(qualities[other], qualities[c], result.spectra[other], result.spectra[c])) {
-        each.findings.push_back(identical_channels(qualities[other].channel, qualities[c].channel));
-      }
-    }
-    each.verdict = worst(each.findings, each.channel.role);
     result.channels.push_back(std::move(each));
   }
+  judge_tachos(result.channels, reader, result.range, request, context);
+  judge_likeness(result.channels, result.spectra);
+  judge_units(result.channels, result.spectra);
+  for (ChannelCheck& each : result.channels) each.verdict = worst(each.findings, each.channel.role);
   for (const Finding& finding : result.recording.findings) {
     const auto owner = std::find_if(result.channels.begin(), result.channels.end(), [&](const ChannelCheck& each) {
       return !finding.channel.empty() && each.channel.name == finding.channel;

@@ -1,6 +1,7 @@
 #include "stillmass/step/spectrum.hpp"
 
 #include <algorithm>
+#include <cmath>
 #include <utility>
 
 #include "stillmass/base/number.hpp"
@@ -30,6 +31,12 @@ spectral::Spectrum in_quantity(const spectral::Spectrum& measured, Quantity want
   if (!is_motion(measured.quantity) || measured.quantity == wanted) return measured;
   const double low = spectral::slope_end_hz(measured).value_or(0.0);
   return spectral::as_quantity(measured, wanted, low);
+}
+
+// A level with the uncertainty of the sensor's calibration in its own, where one was made.
+std::optional<base::Estimate> with_calibration(std::optional<base::Estimate> level, const recording::Channel& channel) {
+  if (level && level->u && channel.factor_u) level->u = std::hypot(*level->u, *channel.factor_u * level->value);
+  return level;
 }
 
 // The level in a band cut to what the spectrum holds; nothing where they do not meet.
@@ -126,7 +133,7 @@ SpectrumResult spectrum(const recording::Reader& reader, const SpectrumRequest& 
     each.measured = spectra[c];
     each.shown = in_quantity(spectra[c], request.quantity.value_or(Quantity::velocity));
     each.band_hz = request.band_hz.value_or(standard_band(request.site));
-    each.overall = level(each.shown, each.band_hz);
+    each.overall = with_calibration(level(each.shown, each.band_hz), channel);
     if (spectra[c].density.empty()) {
       each.findings.push_back({base::Code::missing_values, "no block of valid samples in the part used", channel.name});
     } else if (channel.role == recording::Role::vibration) {
@@ -146,7 +153,8 @@ SpectrumResult spectrum(const recording::Reader& reader, const SpectrumRequest& 
   }
   for (std::size_t i = 0; i < result.channels.size(); ++i) {
     ChannelSpectrum& each = result.channels[i];
-    for (const spectral::Tone& tone : tones[i]) {
+    for (spectral::Tone tone : tones[i]) {
+      tone.amplitude_rms = *with_calibration(tone.amplitude_rms, each.channel);
       machine::Cause cause = machine::cause_of_peak(tone.frequency, each.shown.line_hz, result.forcing, request.modes);
       each.peaks.push_back({tone, std::move(cause)});
     }
@@ -155,7 +163,7 @@ SpectrumResult spectrum(const recording::Reader& reader, const SpectrumRequest& 
       continue;
     }
     const spectral::Spectrum velocity = in_quantity(each.measured, Quantity::velocity);
-    each.severity_velocity = level(velocity, standard_band(request.site));
+    each.severity_velocity = with_calibration(level(velocity, standard_band(request.site)), each.channel);
     each.severity = severity_of(each, request, velocity);
   }
   return result;

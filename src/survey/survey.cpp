@@ -290,9 +290,12 @@ step::Site site_of(const Survey& survey) {
   return site;
 }
 
-SurveyResult run(const Survey& survey, const base::Context& context) {
+SurveyResult run(const Survey& stated, const base::Context& context) {
   SurveyResult result;
-  result.survey = survey;
+  result.survey = stated;
+  result.calibrations = apply_calibrations(result.survey, context);
+  result.refusals = result.calibrations.refusals;
+  const Survey& survey = result.survey;
   const std::size_t steps = 2 * survey.recordings.size() + 2;
   std::size_t step = 0;
 
@@ -304,6 +307,8 @@ SurveyResult run(const Survey& survey, const base::Context& context) {
     step::CheckRequest request;
     request.part = part_of(survey.recordings[i]);
     request.line_frequency_hz = survey.machine.line_frequency_hz;
+    request.pulses_per_turn = survey.recordings[i].pulses_per_turn;
+    request.falling_edge = survey.recordings[i].falling_edge;
     result.quality.push_back({i, step::check(*readers[i], request, part_of(context, step++, steps))});
   }
 
@@ -328,6 +333,8 @@ SurveyResult run(const Survey& survey, const base::Context& context) {
 
   const step::SpectrumResult* spectra = duty(result);
   if (spectra != nullptr) result.findings = diagnosis(survey, *spectra, result.modes);
+  result.findings.insert(result.findings.end(), result.calibrations.findings.begin(),
+                         result.calibrations.findings.end());
   set_target(result, spectra);
   for (const AbsorberSite& site : survey.absorbers) {
     if (survey.recordings.empty()) break;  // the measuring plan is the answer

@@ -109,6 +109,7 @@ recording::ChannelSetting read_channel(const Table& row, const Survey& survey, S
   channel.point = row.text("point").value_or("");
   channel.direction = row.text("direction").value_or("");
   channel.scale = row.number("scale");
+  channel.sensor = row.text("sensor").value_or("");
   channel.sensitivity_mv_per_unit = row.number("sensitivity_mv_per_unit");
   channel.full_scale_v = row.number("full_scale_v");
   if (const auto role = row.text("role")) {
@@ -152,6 +153,31 @@ recording::ChannelSetting read_channel(const Table& row, const Survey& survey, S
   return channel;
 }
 
+void read_calibration(const Table& row, SurveyRecording& out) {
+  if (const auto table = row.table("calibrator")) {
+    if (out.kind != Kind::calibration) row.refuse("calibrator", "only a recording of kind \"calibration\" has one");
+    const std::string name = table->text("unit").value_or("m/s2");
+    const auto unit = base::unit_named(name);
+    const bool is_motion =
+        unit && (unit->quantity == base::Quantity::acceleration || unit->quantity == base::Quantity::velocity ||
+                 unit->quantity == base::Quantity::displacement);
+    if (!is_motion) table->refuse("unit", "'" + name + "' is not a unit of vibration", "one of m/s2, g, mm/s, um");
+    out.calibrator.quantity = unit->quantity;
+    out.calibrator.frequency_hz = table->number("frequency_hz").value_or(out.calibrator.frequency_hz);
+    out.calibrator.rms = table->number("level").value_or(10.0) * unit->to_si;
+    out.calibrator.relative_u = table->number("u_percent").value_or(1.5) * 1e-2;
+  }
+  if (const auto table = row.table("known_mass")) {
+    out.hung_mass = spectral::HungMass{*table->number("kg"), table->number("u_percent").value_or(0.1) * 1e-2,
+                                       table->number("least_hz").value_or(10.0)};
+  }
+  if ((out.kind == Kind::ratio_calibration) != out.hung_mass.has_value()) {
+    row.refuse(out.hung_mass ? "known_mass" : "kind",
+               "a recording of kind \"ratio-calibration\" and 'known_mass' go together",
+               "weigh the hung mass and write known_mass = { kg = 10.0 }");
+  }
+}
+
 recording::TextOptions read_text_options(const Table& row) {
   recording::TextOptions text;
   if (const auto word = row.text("separator")) text.separator = recording::separator_named(*word);
@@ -169,7 +195,8 @@ SurveyRecording read_recording(const Table& row, const Survey& survey) {
   out.line = row.line("file");
   out.kind = named(kinds, *row.text("kind"));
   out.stage = named(stages, row.text("stage").value_or("before"));
-  const bool hammered = out.kind == Kind::bump || out.kind == Kind::ringdown || out.kind == Kind::background;
+  const bool hammered = out.kind == Kind::bump || out.kind == Kind::ringdown || out.kind == Kind::background ||
+                        out.kind == Kind::calibration || out.kind == Kind::ratio_calibration;
   out.running = row.text("state").value_or(hammered ? "stopped" : "running") == "running";
   out.speed_hz = scaled(row.number("speed_rpm"), 1.0 / 60.0);
   out.part_s = row.interval("part_s");
@@ -181,6 +208,7 @@ SurveyRecording read_recording(const Table& row, const Survey& survey) {
     out.open.channels.push_back(read_channel(channel, survey, out));
     if (!seen.insert(out.open.channels.back().index).second) channel.refuse("index", "the channel index stands twice");
   }
+  read_calibration(row, out);
   std::error_code ignored;
   if (!fs::is_regular_file(out.file, ignored)) {
     row.refuse("file", "the recording '" + out.written + "' is not there", "put it beside the survey file");

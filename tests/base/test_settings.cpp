@@ -71,6 +71,9 @@ TEST_CASE("bytes that would upset the parser are refused before it sees them") {
   CHECK(fault_of("[machine]\n\xC3\xA9 = 1\n").find("s.toml:2: a letter outside ASCII") == 0);
   CHECK(fault_of("[machine]\nname = '\xFF'\n").find("s.toml:2: text that is not UTF-8") == 0);
   CHECK(fault_of("\r[machine]").find("control character") != std::string::npos);
+  // Where toml++ 3.3 asserts, and where it takes letters outside ASCII for impossible.
+  CHECK(fault_of("\n[+machine]\n").find("s.toml:2: ") == 0);
+  CHECK(fault_of("[machine]\nname = 0\"\"\"\xC3\xA4\"\"\"\n").find("s.toml:2: ") == 0);
 }
 
 TEST_CASE("a settings file that is not there is an error of usage") {

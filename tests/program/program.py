@@ -233,6 +233,8 @@ def streams():
         with open(file, "wb") as out:
             out.write(header + b"data" + struct.pack("<I", size))
             out.truncate(44 + size)
+        # A sanitizer keeps records of its own beside each allocation.
+        limit = 90 if b"__asan_init" in pathlib.Path(PROGRAM).read_bytes() else 60
         for command in ("check", "spectrum"):
             code = ("import resource,subprocess,sys\n"
                     f"subprocess.run([{PROGRAM!r}, {command!r}, {str(file)!r}, '--quiet'], check=True)\n"
@@ -240,7 +242,7 @@ def streams():
             done = subprocess.run([sys.executable, "-c", code], capture_output=True, check=False, timeout=280)
             peak = int(done.stdout or b"0") / 1024
             print(f"{command}: {size / 2**20:.0f} MiB of samples, peak memory {peak:.0f} MiB")
-            claim(f"{command}: {peak:.0f} MiB for a long recording", done.returncode == 0 and 0 < peak < 60, done)
+            claim(f"{command}: {peak:.0f} MiB for a long recording", done.returncode == 0 and 0 < peak < limit, done)
 
 
 def demo():

@@ -60,6 +60,16 @@ TEST_CASE("pulses of a run-up are found between the samples, every turn once") {
   CHECK(*pulses->time_u < 0.1 / rate);
 }
 
+TEST_CASE("the last turns of a shaft that comes to rest are no missing pulses") {
+  // A speed that falls evenly to nothing: 10 Hz less 1 Hz in every second.
+  const auto reader = tacho(sampled(rate, 10.0, [&](double t) { return pulse(turns_at(10.0, -1.0, t)); }));
+  const auto pulses = pulses_of(reader);
+  REQUIRE(pulses);
+  CHECK(pulses->missing == 0);
+  CHECK(pulses->extra == 0);
+  CHECK(pulses->time_s.size() >= 44);  // of 50
+}
+
 TEST_CASE("the falling edge comes later by the width of the pulse") {
   const auto reader = tacho(sampled(rate, 2.0, [](double t) { return pulse(20.0 * t); }));
   rotation::TachoOptions falling;

@@ -115,6 +115,24 @@ amplitude_n = [0, 100, 0]
   CHECK(rms(centre_of(force + tests::recording("steady", 1000, 2))) < 1e-4 * seen);
 }
 
+TEST_CASE("on the calibrator a sensor feels 10 m/s2 r.m.s. at 1000 rad/s, on a hung mass force over mass") {
+  CHECK(rms(centre_of(tests::recording("calibrator", 2048, 6))) == Approx(10.0).epsilon(1e-3));
+  const auto text = tests::recording("hung-mass", 2048, 6, "hung_mass_kg = 12.5\n") +
+                    "[[recording.channel]]\nrole = \"force\"\nsensor = \"force\"\nfull_scale_v = 1\n" + R"(
+[hammer]
+point = "centre"
+peak_n = 500
+tip_ms = 9
+first_s = 1.0003
+interval_s = 10
+blows = 1
+)";
+  const auto samples = simulate::samples_of(tests::parsed(tests::one_body(text)), 0);
+  for (std::size_t i = 0; i < samples.channels[0].size(); ++i) {
+    CHECK(samples.channels[0][i] == Approx(samples.channels[1][i] / 12.5).margin(1e-3));
+  }
+}
+
 TEST_CASE("a blow's response is the closed form of the half-sine blow on one degree of freedom") {
   const auto text = tests::recording("bump", 2048, 6) +
                     "[[recording.channel]]\nrole = \"force\"\nsensor = \"force\"\nfull_scale_v = 1\n" + R"(

@@ -5,6 +5,7 @@
 #include <cstddef>
 #include <cstdint>
 #include <memory>
+#include <optional>
 #include <string>
 #include <utility>
 #include <vector>
@@ -19,6 +20,8 @@ struct MemoryChannel {
   std::vector<double> samples;
   base::Quantity quantity = base::Quantity::acceleration;
   recording::Role role = recording::Role::vibration;
+  std::optional<double> stored_step{};  ///< of a recorder of so many bits; SI
+  std::optional<double> full_scale{};
 };
 
 /// A recording in memory, served as a file would be: chunks never cross a segment, missing samples are held as 0 and
@@ -41,6 +44,8 @@ class MemoryReader final : public recording::Reader {
       c.role = channel.role;
       c.unit = base::si_unit(channel.quantity);
       c.unit_known = true;
+      c.stored_step = channel.stored_step;
+      c.full_scale = channel.full_scale;
       description->channels.push_back(std::move(c));
     }
     if (segments.empty()) segments.push_back({0, description->frames, 0.0});

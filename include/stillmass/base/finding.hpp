@@ -31,6 +31,9 @@ enum class Code {
   aliasing_suspected,
   identical_channels,
   unit_suspected,
+  channels_swapped,
+  mounting_resonance,
+  calibration_off,
   // of tests
   double_hit,
   weak_hit,
@@ -40,6 +43,7 @@ enum class Code {
   sweep_too_fast,
   missing_pulses,
   extra_pulses,
+  no_pulses,
   // of the chain from test to specification
   unit_assumed,
   calibration_assumed,

@@ -27,6 +27,13 @@ struct Channel {
   std::optional<double> full_scale;   ///< SI units at full scale of the stored sample (integer files)
 };
 
+/// What a calibration says of a channel: its factor is multiplied by it.
+struct Correction {
+  double factor = 1.0;
+  double relative_u = 0.0;         ///< standard uncertainty of the corrected factor
+  std::optional<base::Unit> unit;  ///< the unit from now on, where the channel's own was that of the recorder (V)
+};
+
 /// What a user says of a channel; whatever is absent is taken from the file.
 struct ChannelSetting {
   int index = 1;
@@ -38,6 +45,8 @@ struct ChannelSetting {
   std::optional<double> full_scale_v;
   std::string point;
   std::string direction;
+  std::string sensor;                    ///< which one: calibrations follow it; empty: whatever is on this input
+  std::optional<Correction> correction;  ///< from a calibration recording
 };
 
 }  // namespace stillmass::recording

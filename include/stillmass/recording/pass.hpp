@@ -24,7 +24,8 @@ class Consumer {
   virtual void merge(Consumer& next) = 0;
 };
 
-/// Frames of one range of a pass, fixed so that the cut never depends on the number of threads.
+/// Frames of one range of a pass, fixed so that the cut never depends on the number of threads; a multiple of it, at
+/// least twice the lookahead, where a consumer looks far ahead.
 inline constexpr std::int64_t pass_range_frames = std::int64_t{1} << 18;
 
 /// Runs all consumers over the frames of `range` in one pass, on context.threads threads, each with its own handle.

@@ -35,6 +35,8 @@ Shortened shortened(const std::vector<base::Finding>& findings);
 /// " at 3.20 s", " from 3.20 to 4.50 s"; empty where there is no time or the finding's text names it.
 std::string when(const base::Finding& finding);
 std::string sentence(const base::Refusal& refusal);
+/// What the uncertainties of the spectra hold.
+std::string uncertainty_note(const step::SpectrumResult& result);
 /// What an absorber's specification says, in one sentence.
 std::string sentence(const absorber::Specification& specification, const std::string& point);
 

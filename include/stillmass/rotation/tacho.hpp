@@ -49,7 +49,7 @@ base::Answer<Pulses> find_pulses(const recording::Reader& reader, recording::Fra
 
 /// The same from raw crossing times: tells true pulses from doubled and missing ones by the intervals around each
 /// (median of 5), and numbers the turns. Intervals may change by up to 30 % from pulse to pulse; the turns before that
-/// holds (a start from rest) are left out.
+/// holds (a start from rest), and those at the end after which it no longer does (coming to rest), are left out.
 base::Answer<Pulses> repaired_pulses(const std::vector<double>& crossings_s, int pulses_per_turn);
 
 }  // namespace stillmass::rotation

@@ -112,7 +112,13 @@ struct PlannedChannel {
   double full_scale_v = 1.0;
 };
 
-enum class RecordingKind { steady, coastdown, bump };
+enum class RecordingKind {
+  steady,
+  coastdown,
+  bump,
+  calibrator,  ///< the sensors on a handheld exciter: 10 m/s2 r.m.s. at 1000 rad/s
+  hung_mass,   ///< a free mass struck by the hammer: acceleration = force / mass
+};
 
 struct PlannedRecording {
   std::string file;
@@ -120,6 +126,7 @@ struct PlannedRecording {
   double rate_hz = 0.0;
   double duration_s = 0.0;
   double switch_off_s = 0.0;  ///< coast-down: when the motor is switched off
+  double hung_mass_kg = 0.0;  ///< of kind hung_mass
   int bits = 16;
   bool fitted = false;                     ///< with the absorber
   std::optional<recording::CsvStyle> csv;  ///< absent: WAV

@@ -22,6 +22,8 @@ std::string_view name(Verdict verdict);
 struct CheckRequest {
   Part part;
   std::optional<double> line_frequency_hz;  ///< of the supply; without it 50 and 60 Hz are tried for hum
+  int pulses_per_turn = 1;                  ///< of a tacho channel
+  bool falling_edge = false;                ///< its edge that counts
   std::size_t overview_columns = 1200;
 };
 
@@ -29,7 +31,7 @@ struct ChannelCheck {
   recording::Channel channel;
   Verdict verdict = Verdict::good;
   recording::ChannelQuality quality;
-  std::vector<base::Finding> findings;  ///< of samples and spectrum, worst first
+  std::vector<base::Finding> findings;  ///< worst first
 };
 
 struct CheckResult {

@@ -13,6 +13,7 @@
 #include "stillmass/step/check.hpp"
 #include "stillmass/step/runup.hpp"
 #include "stillmass/step/spectrum.hpp"
+#include "stillmass/survey/calibrations.hpp"
 #include "stillmass/survey/survey_file.hpp"
 
 namespace stillmass::survey {
@@ -48,7 +49,8 @@ struct AbsorberAim {
 
 /// Everything that one visit tells.
 struct SurveyResult {
-  Survey survey;
+  Survey survey;  ///< with the corrections of the calibrations in it
+  Calibrations calibrations;
   std::vector<Of<step::CheckResult>> quality;
   std::vector<Of<step::SpectrumResult>> spectra;  ///< steady recordings, in the order of the file
   std::vector<step::BumpResult> bumps;
@@ -62,9 +64,9 @@ struct SurveyResult {
   std::vector<AfterPoint> after;
 };
 
-/// The main job: every recording judged, then hammer tests, spectra, run-ups, diagnosis, absorber, and what the fitted
-/// absorber achieved. A question that the data cannot answer becomes a refusal and the rest goes on. Throws what the
-/// readers throw (a recording that cannot be read), `Stopped`, and `Error` (usage).
+/// The main job: calibrations applied, every recording judged, then hammer tests, spectra, run-ups, diagnosis,
+/// absorber, and what the fitted absorber achieved. A question that the data cannot answer becomes a refusal and the
+/// rest goes on. Throws what the readers throw (a recording that cannot be read), `Stopped`, and `Error` (usage).
 SurveyResult run(const Survey& survey, const base::Context& context);
 
 /// The site of the survey as the single commands need it.

@@ -12,6 +12,7 @@
 #include "stillmass/base/settings.hpp"
 #include "stillmass/machine/description.hpp"
 #include "stillmass/recording/reader.hpp"
+#include "stillmass/spectral/calibrator.hpp"
 
 namespace stillmass::survey {
 
@@ -37,9 +38,11 @@ struct SurveyRecording {
   Stage stage = Stage::before;
   bool running = true;
   std::optional<double> speed_hz;
-  std::optional<base::Interval> part_s;  ///< only this part of it
-  std::optional<double> added_mass_kg;   ///< a known mass was bolted on
-  recording::OpenOptions open;           ///< channels and rate
+  std::optional<base::Interval> part_s;         ///< only this part of it
+  std::optional<double> added_mass_kg;          ///< a known mass was bolted on
+  recording::OpenOptions open;                  ///< channels and rate
+  spectral::CalibratorTone calibrator;          ///< of a calibration
+  std::optional<spectral::HungMass> hung_mass;  ///< of a ratio calibration
   int pulses_per_turn = 1;
   bool falling_edge = false;
   int line = 1;  ///< in the survey file

@@ -1,0 +1,7 @@
+// Sound files: WAV and its kin, AIFF, FLAC, from seeds of that kind.
+#include "fuzz/entry.hpp"
+
+extern "C" int LLVMFuzzerTestOneInput(const std::uint8_t* data, std::size_t size) {
+  stillmass::tests::check_recording({data, size});
+  return 0;
+}

@@ -1,0 +1,7 @@
+// Text recordings: any dialect of CSV, from seeds of that kind.
+#include "fuzz/entry.hpp"
+
+extern "C" int LLVMFuzzerTestOneInput(const std::uint8_t* data, std::size_t size) {
+  stillmass::tests::check_recording({data, size});
+  return 0;
+}
