@@ -93,6 +93,12 @@ std::string cell_with_thousands(const CsvDialect& dialect) {
 
 }  // namespace
 
+bool has_typeset_minus(std::string_view cell, char decimal) {
+  constexpr std::string_view minus = "\xE2\x88\x92";
+  cell = bare(cell);
+  return cell.starts_with(minus) && read_cell(cell.substr(minus.size()), decimal).kind == CellKind::number;
+}
+
 bool is_grouped_number(std::string_view cell) {
   cell = without_sign(bare(cell));
   for (const std::string_view signs : {".,", ",.", "'.", "',"}) {
@@ -114,8 +120,8 @@ bool is_grouped_number(std::string_view cell) {
 
 namespace {
 
-// "10:15:00,250,1.5": clock times without a fraction and, behind the comma, digits of equal number in every row, three or
-// six: a column, or the fraction?
+// "10:15:00,250,1.5": clock times without a fraction and, behind the comma, digits of equal number in every row, three
+// or six: a column, or the fraction?
 bool fraction_split_off(const CsvDialect& dialect) {
   if (dialect.separator != ',' || dialect.quoted) return false;
   std::vector<std::string_view> cells;
@@ -143,23 +149,33 @@ void refuse_ambiguity(const CsvDialect& dialect, const TextOptions& options, con
                     base::printable(base::trimmed(dialect.rows.front()).substr(0, 40))),
         "say which with --separator comma or --decimal comma, or export it with semicolons between columns");
   }
+  bool typeset = false;
+  for_each_number(dialect, [&](std::string_view cell) {
+    typeset = has_typeset_minus(cell, dialect.decimal);
+    return !typeset;
+  });
+  if (typeset) {
+    throw base::file_error(where, "has minus signs of typesetting (U+2212) in its numbers",
+                           "replace them by hyphens, or export it as plain text");
+  }
   if (fraction_split_off(dialect)) {
     throw base::file_error(where, "the comma behind the clock times may be a decimal sign or stand between columns",
                            "export it with a point in the times, or with semicolons between columns");
   }
   const std::string grouped_number = cell_with_thousands(dialect);
   if (!grouped_number.empty()) {
-    throw base::file_error(where, fmt::format("has numbers with a sign between thousands, such as \"{}\"", grouped_number),
+    throw base::file_error(where,
+                           fmt::format("has numbers with a sign between thousands, such as \"{}\"", grouped_number),
                            "export it without such a sign");
   }
   if (!options.decimal && thousands_possible(dialect)) {
     const bool comma = dialect.decimal == ',';
-    throw base::file_error(where,
-                           fmt::format("a {} in the numbers may be a decimal sign or stand between thousands",
-                                       comma ? "comma" : "point"),
-                           fmt::format("if it is the decimal sign say --decimal {}; else export it without a sign "
-                                       "between thousands",
-                                       decimal_name(dialect.decimal)));
+    throw base::file_error(
+        where,
+        fmt::format("a {} in the numbers may be a decimal sign or stand between thousands", comma ? "comma" : "point"),
+        fmt::format("if it is the decimal sign say --decimal {}; else export it without a sign "
+                    "between thousands",
+                    decimal_name(dialect.decimal)));
   }
 }
 

@@ -15,7 +15,8 @@ enum class TextBetween {
   other_table,   ///< names of other columns
 };
 
-/// next_row: the row behind them; names of other columns are as many as its cells. Commas in the lines may have been turned to points (LineBlocks).
+/// next_row: the row behind them; names of other columns are as many as its cells. Commas in the lines may have been
+/// turned to points (LineBlocks).
 TextBetween kind_of(const std::vector<std::string>& lines, std::string_view next_row, const CsvTable& table);
 
 }  // namespace stillmass::recording

@@ -14,10 +14,11 @@ namespace {
 
 // Words that loggers and spreadsheets write in place of a number, in lower case.
 constexpr auto words_for_nothing = std::to_array<std::string_view>(
-    {"na",       "n/a",      "n.a.",     "#n/a",      "null",  "none",  "-",    "--",   "---",     "----",
-     "?",        "??",       "???",      "*",         "**",    "***",   "****", "*****", "err",    "error",
-     "ovl",      "ol",       "o.l.",     "ovr",       "ovld",  "over",  "under", "overload", "overflow", "underflow",
-     "overrange", "over range", "saturated", "clipped", "invalid", "missing", "lost", "bad", "fault", "no data"});
+    {"na",        "n/a",     "n.a.",    "#n/a",     "null",     "none",      "-",         "--",
+     "---",       "----",    "?",       "??",       "???",      "*",         "**",        "***",
+     "****",      "*****",   "err",     "error",    "ovl",      "ol",        "o.l.",      "ovr",
+     "ovld",      "over",    "under",   "overload", "overflow", "underflow", "overrange", "over range",
+     "saturated", "clipped", "invalid", "missing",  "lost",     "bad",       "fault",     "no data"});
 constexpr auto words_for_nan =
     std::to_array<std::string_view>({"nan", "+nan", "-nan", "inf", "+inf", "-inf", "infinity", "-infinity", "1.#inf",
                                      "-1.#inf", "-1.#ind", "1.#qnan", "#num!", "#div/0!", "#value!"});

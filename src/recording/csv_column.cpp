@@ -75,9 +75,7 @@ bool CsvColumn::grows() const {
   return forth && static_cast<double>(back) <= backward_share * static_cast<double>(all.size());
 }
 
-bool CsvColumn::runs_back() const {
-  return values.size() > 1 && values.back() < values.front() && median_step() < 0.0;
-}
+bool CsvColumn::runs_back() const { return values.size() > 1 && values.back() < values.front() && median_step() < 0.0; }
 
 bool CsvColumn::moves() const {
   return std::any_of(values.begin(), values.end(), [&](double value) { return value != values.front(); });
@@ -122,7 +120,8 @@ bool CsvColumn::counts() const {
 
 double CsvColumn::last_digit() const {
   int decimals = std::numeric_limits<int>::min();
-  for (const std::string& text : texts) decimals = std::max(decimals, stamps ? fraction_digits(text) : decimals_of(text));
+  for (const std::string& text : texts)
+    decimals = std::max(decimals, stamps ? fraction_digits(text) : decimals_of(text));
   return texts.empty() ? 0.0 : std::pow(10.0, -decimals);
 }
 

@@ -71,10 +71,10 @@ void settle_date_order(CsvDialect& dialect, const TextSource& text, const TextOp
       dialect.date_order = *known;
     } else if ((order_evidence(first) == OrderEvidence::either || order_evidence(last) == OrderEvidence::either) &&
                date_part(first) != date_part(last)) {
-      throw base::usage_error(text.file().name(),
-                              fmt::format("the dates from {} to {} may have the day or the month first",
-                                          date_part(first), date_part(last)),
-                              "say which with --dates day-first or --dates month-first");
+      throw base::usage_error(
+          text.file().name(),
+          fmt::format("the dates from {} to {} may have the day or the month first", date_part(first), date_part(last)),
+          "say which with --dates day-first or --dates month-first");
     }
     return;
   }

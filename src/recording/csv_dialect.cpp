@@ -40,8 +40,8 @@ std::string signature_of(std::string_view line, const Way& way, std::vector<std:
   std::string letters;
   for (const std::string_view cell : cells) {
     const CellKind kind = read_cell(cell, way.decimal).kind;
-    // A number with signs between thousands is one here, so that it is refused as such and not as text.
-    const bool text = kind == CellKind::text && !is_grouped_number(cell);
+    // Numbers that are refused for how they are written are numbers here, so that the refusal says so.
+    const bool text = kind == CellKind::text && !is_grouped_number(cell) && !has_typeset_minus(cell, way.decimal);
     letters.push_back(kind == CellKind::empty ? 'e' : (text ? 't' : 'n'));
   }
   letters.erase(letters.find_last_not_of('e') + 1);
@@ -64,8 +64,8 @@ Reading read_in(const std::vector<Line>& lines, const Way& way) {
   std::vector<std::string_view> cells;
   std::map<std::string, long> rows;
   for (const Line& line : lines) {
-    const bool comment = is_blank_or_comment(line.text) ||
-                         (way.separator != ';' && base::trimmed(line.text).starts_with(';'));
+    const bool comment =
+        is_blank_or_comment(line.text) || (way.separator != ';' && base::trimmed(line.text).starts_with(';'));
     reading.signatures.push_back(comment ? "" : signature_of(line.text, way, cells));
     ++rows[reading.signatures.back()];
   }
@@ -189,10 +189,10 @@ std::optional<CsvDialect> recognise(std::string_view probe, bool whole_text, con
   auto first = first_row(whole);
   if (!first) return {};
   while (const auto other = next_table(whole, *first)) {
-    const auto rows = static_cast<std::size_t>(
-        std::count_if(whole.signatures.begin() + static_cast<std::ptrdiff_t>(*first),
-                      whole.signatures.begin() + static_cast<std::ptrdiff_t>(*other),
-                      [&](const std::string& letters) { return fits(letters, whole.row); }));
+    const auto rows =
+        static_cast<std::size_t>(std::count_if(whole.signatures.begin() + static_cast<std::ptrdiff_t>(*first),
+                                               whole.signatures.begin() + static_cast<std::ptrdiff_t>(*other),
+                                               [&](const std::string& letters) { return fits(letters, whole.row); }));
     // A few rows of numbers above the table belong to its header; a table that follows the first one does not count.
     if (rows >= following_lines) return recognise(probe.substr(0, lines[*other].offset), true, options);
     first = other;

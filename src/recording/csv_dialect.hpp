@@ -16,7 +16,7 @@ namespace stillmass::recording {
 struct CsvDialect {
   char separator = ',';  ///< ' ' stands for runs of blanks and tabs
   char decimal = '.';
-  bool quoted = false;              ///< cells of the rows stand within quotes
+  bool quoted = false;  ///< cells of the rows stand within quotes
   DateOrder date_order = DateOrder::day_first;
   std::vector<bool> numeric;        ///< for each column: numbers (or times) stand in it
   std::vector<std::string> header;  ///< the lines above the first row

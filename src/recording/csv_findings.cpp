@@ -20,11 +20,11 @@ std::string counted(std::int64_t count, std::string_view one, std::string_view m
 void note_bad_cells(base::Code code, const char* what, const BadCells& cells, const std::string& channel,
                     Recording& recording) {
   if (cells.cells == 0) return;
-  base::Finding finding{code,
-                        fmt::format("{}: {}, in {}, {}line {}", what, cells.cells,
-                                    counted(cells.places, "place", "places"), cells.cells == 1 ? "" : "the first in ",
-                                    cells.first_line),
-                        channel};
+  base::Finding finding{
+      code,
+      fmt::format("{}: {}, in {}, {}line {}", what, cells.cells, counted(cells.places, "place", "places"),
+                  cells.cells == 1 ? "" : "the first in ", cells.first_line),
+      channel};
   finding.from_s = cells.first_s;
   finding.to_s = cells.last_s;
   for (const auto& place : cells.first_places_s) {
@@ -45,8 +45,9 @@ void note_lines(base::Code code, const OddLines& odd, std::string_view what, std
 }
 
 void note_other_table(const OddLines& other, Recording& recording) {
-  base::Finding finding{base::Code::odd_lines,
-                        fmt::format("a table of other columns follows and is left out, from line {} on", other.first_line)};
+  base::Finding finding{
+      base::Code::odd_lines,
+      fmt::format("a table of other columns follows and is left out, from line {} on", other.first_line)};
   finding.from_s = other.first_s;
   recording.findings.push_back(std::move(finding));
 }

@@ -13,14 +13,15 @@ namespace {
 
 // Times and counters as loggers name them in several languages, in lower case.
 constexpr auto time_names = std::to_array<std::string_view>(
-    {"t",          "x_value",      "x value",     "elapsed",   "elapsed time", "abs time", "absolute time",
-     "rel time",   "relative time", "date/time",  "datetime",  "date time",    "zeit",     "uhrzeit",
-     "messzeit",   "zeitstempel",  "zeitpunkt",   "temps",     "tiempo",       "tempo",    "tijd",
-     "tid",        "czas",         "aika",        "clock",     "epoch",        "ts", "timestamp", "unix",     "unixtime"});
+    {"t",        "x_value",       "x value",   "elapsed",  "elapsed time", "abs time", "absolute time",
+     "rel time", "relative time", "date/time", "datetime", "date time",    "zeit",     "uhrzeit",
+     "messzeit", "zeitstempel",   "zeitpunkt", "temps",    "tiempo",       "tempo",    "tijd",
+     "tid",      "czas",          "aika",      "clock",    "epoch",        "ts",       "timestamp",
+     "unix",     "unixtime"});
 constexpr auto counter_names = std::to_array<std::string_view>(
-    {"index", "idx", "sample",  "samples", "sample no", "sample no.", "sample number", "sample_number", "no",   "no.",
-     "nr",    "nr.", "#",       "n",       "row",       "count",      "counter",       "scan",          "record", "point",
-     "seq",   "id",  "messung", "lfd. nr.", "lfd.nr."});
+    {"index",  "idx",   "sample", "samples", "sample no", "sample no.", "sample number", "sample_number", "no",
+     "no.",    "nr",    "nr.",    "#",       "n",         "row",        "count",         "counter",       "scan",
+     "record", "point", "seq",    "id",      "messung",   "lfd. nr.",   "lfd.nr."});
 constexpr auto detector_words = std::to_array<std::string_view>(
     {"rms", "r.m.s.", "eff", "eff.", "peak", "pk", "0-pk", "0-p", "pp", "p-p", "pk-pk", "peak-peak", "peak-to-peak"});
 
@@ -36,21 +37,59 @@ constexpr base::Unit minute{"min", base::Quantity::time, 60.0};
 constexpr base::Unit hour{"h", base::Quantity::time, 3600.0};
 
 // Units of time beyond those that quantities of a machine have, and words that are name and unit at once.
-constexpr auto time_spellings = std::to_array<Spelling>(
-    {{"ns", nanosecond},          {"nsec", nanosecond},    {"nanoseconds", nanosecond}, {"us", microsecond},
-     {"usec", microsecond},       {"micros", microsecond}, {"microseconds", microsecond}, {"\xc2\xb5s", microsecond},
-     {"\xce\xbcs", microsecond},  {"ms", millisecond},     {"msec", millisecond},       {"msecs", millisecond},
-     {"millis", millisecond},     {"milliseconds", millisecond}, {"millisekunden", millisecond}, {"s", second},
-     {"sec", second},             {"secs", second},        {"sek", second},             {"second", second},
-     {"seconds", second},         {"sekunden", second},    {"min", minute},             {"mins", minute},
-     {"minute", minute},          {"minutes", minute},     {"minuten", minute},         {"h", hour},
-     {"hr", hour},                {"hrs", hour},           {"hour", hour},              {"hours", hour},
-     {"stunden", hour}});
+constexpr auto time_spellings = std::to_array<Spelling>({{"ns", nanosecond},
+                                                         {"nsec", nanosecond},
+                                                         {"nanoseconds", nanosecond},
+                                                         {"us", microsecond},
+                                                         {"usec", microsecond},
+                                                         {"micros", microsecond},
+                                                         {"microseconds", microsecond},
+                                                         {"\xc2\xb5s", microsecond},
+                                                         {"\xce\xbcs", microsecond},
+                                                         {"ms", millisecond},
+                                                         {"msec", millisecond},
+                                                         {"msecs", millisecond},
+                                                         {"millis", millisecond},
+                                                         {"milliseconds", millisecond},
+                                                         {"millisekunden", millisecond},
+                                                         {"s", second},
+                                                         {"sec", second},
+                                                         {"secs", second},
+                                                         {"sek", second},
+                                                         {"second", second},
+                                                         {"seconds", second},
+                                                         {"sekunden", second},
+                                                         {"min", minute},
+                                                         {"mins", minute},
+                                                         {"minute", minute},
+                                                         {"minutes", minute},
+                                                         {"minuten", minute},
+                                                         {"h", hour},
+                                                         {"hr", hour},
+                                                         {"hrs", hour},
+                                                         {"hour", hour},
+                                                         {"hours", hour},
+                                                         {"stunden", hour}});
 // Units behind an underline, where no brackets or powers can be written.
-constexpr auto plain_spellings = std::to_array<std::pair<std::string_view, std::string_view>>(
-    {{"m_s2", "m/s2"}, {"mps2", "m/s2"}, {"ms2", "m/s2"}, {"mm_s", "mm/s"}, {"mmps", "mm/s"}, {"mms", "mm/s"},
-     {"m_s", "m/s"}, {"mps", "m/s"}, {"in_s", "in/s"}, {"ips", "in/s"}, {"mg", "mg"}, {"um", "um"}, {"mm", "mm"},
-     {"mil", "mil"}, {"mils", "mil"}, {"mv", "mV"}, {"kn", "kN"}, {"lbf", "lbf"}, {"rpm", "rpm"}});
+constexpr auto plain_spellings = std::to_array<std::pair<std::string_view, std::string_view>>({{"m_s2", "m/s2"},
+                                                                                               {"mps2", "m/s2"},
+                                                                                               {"ms2", "m/s2"},
+                                                                                               {"mm_s", "mm/s"},
+                                                                                               {"mmps", "mm/s"},
+                                                                                               {"mms", "mm/s"},
+                                                                                               {"m_s", "m/s"},
+                                                                                               {"mps", "m/s"},
+                                                                                               {"in_s", "in/s"},
+                                                                                               {"ips", "in/s"},
+                                                                                               {"mg", "mg"},
+                                                                                               {"um", "um"},
+                                                                                               {"mm", "mm"},
+                                                                                               {"mil", "mil"},
+                                                                                               {"mils", "mil"},
+                                                                                               {"mv", "mV"},
+                                                                                               {"kn", "kN"},
+                                                                                               {"lbf", "lbf"},
+                                                                                               {"rpm", "rpm"}});
 
 template <std::size_t count>
 bool among(const std::string& word, const std::array<std::string_view, count>& words) {
@@ -86,7 +125,8 @@ struct UnitText {
 UnitText unit_text(std::string_view text) {
   text = base::trimmed(text);
   const auto closed_by = [&](char open, char close) { return text.front() == open && text.back() == close; };
-  while (text.size() >= 2 && (closed_by('[', ']') || closed_by('(', ')') || closed_by('{', '}') || closed_by('<', '>'))) {
+  while (text.size() >= 2 &&
+         (closed_by('[', ']') || closed_by('(', ')') || closed_by('{', '}') || closed_by('<', '>'))) {
     text = base::trimmed(text.substr(1, text.size() - 2));
   }
   UnitText out;
@@ -243,7 +283,8 @@ ColumnLabel read_label(std::string_view cell) {
   const bool time_unit = label.unit && label.unit->quantity == base::Quantity::time;
   const bool may_be_minimum = low.size() < 2 || low == "min" || low == "mins" || low == "hr";
   const auto named_by_unit = may_be_minimum || label.unit ? std::nullopt : time_unit_in(low);
-  const bool named = named_like_time(low) && (time_unit || !label.unit);
+  const bool spelt = low.find("time") != std::string::npos || low.find("zeit") != std::string::npos;
+  const bool named = time_unit ? named_like_time(low) || spelt : named_like_time(low) && !label.unit;
   label.is_time = named_by_unit || named || (low.empty() && time_unit);
   if (named_by_unit) label.unit = named_by_unit;
   label.is_counter = among(low, counter_names) && !label.unit;
@@ -251,11 +292,38 @@ ColumnLabel read_label(std::string_view cell) {
   return label;
 }
 
+namespace {
+
+// The lines of the header as UTF-8; a line end within quotes is a blank.
+std::vector<std::string> logical_lines(const CsvDialect& dialect, const TextSource& text) {
+  constexpr std::size_t most_joined = 8;  // beyond that it is a lone quote
+  std::vector<std::string> lines;
+  std::size_t joined = 0;
+  bool open = false;
+  for (const std::string& line : dialect.header) {
+    std::string read = text.utf8(line);
+    const bool odd_quotes = std::count(read.begin(), read.end(), '"') % 2 != 0;
+    if (open && joined < most_joined) {
+      lines.back() = std::string(base::trimmed(lines.back())) + " " + read;
+      ++joined;
+    } else {
+      lines.push_back(std::move(read));
+      open = false;
+      joined = 0;
+    }
+    open = open != odd_quotes;
+  }
+  return lines;
+}
+
+}  // namespace
+
 std::vector<ColumnLabel> read_header(const CsvDialect& dialect, const TextSource& text) {
   std::vector<std::string> names;
   std::vector<std::string> units;
-  for (auto line = dialect.header.rbegin(); line != dialect.header.rend(); ++line) {
-    const std::vector<std::string> cells = cells_of(text.utf8(*line), dialect);
+  const std::vector<std::string> lines = logical_lines(dialect, text);
+  for (auto line = lines.rbegin(); line != lines.rend(); ++line) {
+    const std::vector<std::string> cells = cells_of(*line, dialect);
     if (units.empty() && are_units(cells, dialect)) {
       units = cells;
     } else if (names.empty() && are_names(cells, dialect)) {

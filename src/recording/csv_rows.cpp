@@ -28,7 +28,7 @@ void CsvRows::seek(std::int64_t row) {
 }
 
 // Where rows lost their time, only a look at the time tells whether a line counts.
-bool CsvRows::counts_by_time() const { return source_->scan.without_time.lines > 0; }
+bool CsvRows::counts_by_time() const { return source_->scan.look_at_times; }
 
 void CsvRows::read_row(double* values, std::size_t stride, bool with_time) {
   while (true) {

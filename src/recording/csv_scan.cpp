@@ -131,12 +131,21 @@ class Scanner {
   }
 
   void note_no_row(std::string_view line) {
-    if (parser_.lost_time()) {
+    scan_.look_at_times = scan_.look_at_times || parser_.lost_time();
+    if (parser_.lost_time() && !has_text_for_time(line)) {
       count(scan_.without_time);
     } else if (!is_blank_or_comment(line) && !base::trimmed(line).starts_with(';')) {
       if (between_.empty()) between_line_ = line_;
       if (between_.size() < lines_between) between_.emplace_back(line);
     }
+  }
+
+  // "Serial,12": numbers, but a word where the time should stand.
+  bool has_text_for_time(std::string_view line) {
+    const auto time = std::find(table_.targets.begin(), table_.targets.end(), CsvTable::time);
+    const auto field = static_cast<std::size_t>(time - table_.targets.begin());
+    split_cells(line, table_.separator, cells_);
+    return field < cells_.size() && read_cell(cells_[field], '.').kind == CellKind::text;
   }
 
   // Lines of text that stood before this row: the header again, the header of another table (true: the rows end here),
@@ -195,6 +204,7 @@ class Scanner {
   double step_s_;
   std::int64_t rows_ = 0;
   std::int64_t line_;  // of the file, read last
+  std::vector<std::string_view> cells_;
   std::vector<std::string> between_;  // lines of text since the last row
   std::int64_t between_line_ = 0;
   CsvScan scan_;

@@ -42,17 +42,18 @@ struct OddLines {
 /// What the first pass over a text file finds: everything but the values.
 struct CsvScan {
   std::int64_t rows = 0;
-  std::vector<RowMark> marks;          ///< every 4096 rows, ascending, from row 0 on
-  std::vector<RowTime> mark_times;     ///< stamps of these rows and of the last one; empty without times
-  GridVerdict grid;                    ///< of a table with times
-  OddLines without_time;               ///< rows left out
-  OddLines texts;                      ///< no rows, no comments
-  OddLines headers;                    ///< the header again: the logger was restarted
-  OddLines too_long;                   ///< rows with more cells than columns
+  std::vector<RowMark> marks;           ///< every 4096 rows, ascending, from row 0 on
+  std::vector<RowTime> mark_times;      ///< stamps of these rows and of the last one; empty without times
+  GridVerdict grid;                     ///< of a table with times
+  OddLines without_time;                ///< rows left out
+  bool look_at_times = false;           ///< only the time tells whether a line is a row
+  OddLines texts;                       ///< no rows, no comments
+  OddLines headers;                     ///< the header again: the logger was restarted
+  OddLines too_long;                    ///< rows with more cells than columns
   std::optional<OddLines> other_table;  ///< the scan ends before it
-  std::vector<std::int64_t> restarts;  ///< without times: rows that follow a line of text
-  std::vector<BadCells> missing;       ///< per channel
-  std::vector<BadCells> not_a_number;  ///< per channel
+  std::vector<std::int64_t> restarts;   ///< without times: rows that follow a line of text
+  std::vector<BadCells> missing;        ///< per channel
+  std::vector<BadCells> not_a_number;   ///< per channel
 };
 
 inline constexpr std::int64_t rows_per_mark = 4096;

@@ -66,13 +66,14 @@ void place_columns(const CsvDialect& dialect, const std::vector<ColumnLabel>& la
   for (std::size_t c = 0; c < labels.size(); ++c) {
     int target = CsvTable::skip;
     const bool before = time && time->other_table && c < time->field;
-    const bool more_times = time && !before && c != time->field && labels[c].is_time && dialect.numeric[c] &&
-                            column_of(dialect, c).grows();
+    const bool more_times =
+        time && !before && c != time->field && labels[c].is_time && dialect.numeric[c] && column_of(dialect, c).grows();
     if (time && time->field == c) {
       target = CsvTable::time;
       if (time->other_table) left_out += fmt::format("; columns 1 to {} (another table) left out", c);
     } else if (more_times && c > time->field && !table.channels.empty()) {
-      left_out += fmt::format("; columns from {} on (a second table) left out, --time-column {} reads it", c + 1, c + 1);
+      left_out +=
+          fmt::format("; columns from {} on (a second table) left out, --time-column {} reads it", c + 1, c + 1);
       break;
     } else if (before) {
       target = CsvTable::skip;
@@ -113,8 +114,8 @@ std::size_t usual_cells(const CsvDialect& dialect) {
     return cells.size();
   };
   for (const std::string& row : dialect.rows) ++times[count(row)];
-  const auto most = std::max_element(times.begin(), times.end(),
-                                     [](const auto& a, const auto& b) { return a.second < b.second; });
+  const auto most =
+      std::max_element(times.begin(), times.end(), [](const auto& a, const auto& b) { return a.second < b.second; });
   std::size_t usual = most == times.end() ? 0 : most->first;
   for (const std::string& line : dialect.header) usual = std::max(usual, count(line));
   return std::max(usual, dialect.numeric.size());
@@ -132,9 +133,9 @@ CsvTable describe_table(const CsvDialect& dialect, const TextSource& text, const
   table.data_offset = dialect.data_offset;
   table.header = dialect.header;
   table.cells = usual_cells(dialect);
-  table.format = fmt::format("CSV: {}, decimal {}, {} header line{}", separator_name(dialect.separator),
-                             decimal_name(dialect.decimal), dialect.header.size(),
-                             dialect.header.size() == 1 ? "" : "s");
+  table.format =
+      fmt::format("CSV: {}, decimal {}, {} header line{}", separator_name(dialect.separator),
+                  decimal_name(dialect.decimal), dialect.header.size(), dialect.header.size() == 1 ? "" : "s");
 
   const std::optional<TimeColumn> time = find_time_column(dialect, labels, options, where);
   std::string left_out;

@@ -24,7 +24,7 @@ struct CsvTable {
   std::int64_t data_offset = 0;
   std::vector<int> targets;  ///< of each cell up to the last needed one: skip, time, or the channel's place
   bool has_time = false;
-  bool time_is_stamp = false;   ///< dates or times of day, not numbers
+  bool time_is_stamp = false;  ///< dates or times of day, not numbers
   bool time_is_count = false;  ///< row numbers, which with the rate tell lost rows
   StampReading stamps;
   double time_to_s = 1.0;

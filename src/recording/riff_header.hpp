@@ -13,8 +13,8 @@ struct RiffHeader {
   int format_tag = 0;       ///< 1 integer, 3 float; the one inside an extensible header
   int channels = 0;
   std::int64_t rate_hz = 0;
-  int bits = 0;         ///< of one sample
-  int frame_bytes = 0;  ///< where the header contradicts itself, as channels and bits have it
+  int bits = 0;                                ///< of one sample
+  int frame_bytes = 0;                         ///< where the header contradicts itself, as channels and bits have it
   std::int64_t data_offset = 0;                ///< in the file
   std::optional<std::int64_t> declared_bytes;  ///< nothing: the header was never completed (0 or all bits set)
   std::int64_t real_bytes = 0;                 ///< samples that are really there, whole frames

@@ -180,9 +180,9 @@ void note_missing_end(Recording& recording, std::int64_t promised) {
 void note_open_end(Recording& recording, const std::optional<RiffHeader>& riff) {
   if (!riff || riff->declared_bytes) return;
   const double end = recording.duration_s();
-  base::Finding finding{base::Code::truncated,
-                        fmt::format("the header was never completed; the file is read to its end at {} s",
-                                    base::plain(end))};
+  base::Finding finding{
+      base::Code::truncated,
+      fmt::format("the header was never completed; the file is read to its end at {} s", base::plain(end))};
   finding.from_s = end;
   finding.strength = base::Strength::weak;
   recording.findings.push_back(std::move(finding));

@@ -109,7 +109,9 @@ std::size_t TextSource::read_at(std::int64_t offset, char* to, std::size_t count
                          static_cast<unsigned>(static_cast<unsigned char>(wide[2 * i + 1 - low])) << 8;
       constexpr unsigned greek_mu = 0x3BC;
       constexpr unsigned micro = 0xB5;
-      to[i] = static_cast<char>(point == greek_mu ? micro : (point < 0x100 ? point : '?'));
+      constexpr unsigned minus = 0x2212;
+      const unsigned plain = point == greek_mu ? micro : (point == minus ? '-' : point);
+      to[i] = static_cast<char>(plain < 0x100 ? plain : '?');
     }
   }
   if (carriage_returns_) std::replace(to, to + count, '\r', '\n');

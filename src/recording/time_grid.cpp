@@ -99,6 +99,7 @@ TimeGrid::TimeGrid(const std::vector<double>& first_times_s, double resolution_s
   repeated_ = 1.0 - share_of(steps, 0.0) > repeated_share;
   if (repeated_) resolution_s_ = std::max(resolution_s_, usual_rise(steps));
   const double mean = mean_without_jumps(steps, wide_gap_steps * std::max(median, 0.0) + 2.0 * resolution_s_);
+  if (repeated_) count_rate(first_times_s, steps);
   // Coarse stamps: the median is a multiple of their resolution, the mean is not.
   step_s_ = median > 4.0 * resolution_s_ ? median : mean;
 
@@ -113,6 +114,20 @@ TimeGrid::TimeGrid(const std::vector<double>& first_times_s, double resolution_s
   back_from_s_ = -resolution_s_ - even_tolerance * step_s_;
   least_even_s_ = step_s_ * (1.0 - even_tolerance) - resolution_s_;
   most_even_s_ = step_s_ * (1.0 + even_tolerance) + resolution_s_;
+}
+
+// From the first change of the stamp to the last one, counted in rows, where the clock neither jumps nor runs back.
+void TimeGrid::count_rate(const std::vector<double>& first_times_s, const std::vector<double>& steps) {
+  const double most = wide_gap_steps * usual_rise(steps);
+  if (std::any_of(steps.begin(), steps.end(), [&](double step) { return step < 0.0 || step > most; })) return;
+  const auto rises = [](double step) { return step > 0.0; };
+  const auto first = std::find_if(steps.begin(), steps.end(), rises) - steps.begin();
+  const auto last = steps.rend() - std::find_if(steps.rbegin(), steps.rend(), rises);  // behind the last rise
+  if (last - 1 <= first) return;
+  counted_rows_ = static_cast<double>(last - 1 - first);
+  const double span_s =
+      first_times_s[static_cast<std::size_t>(last)] - first_times_s[static_cast<std::size_t>(first + 1)];
+  if (span_s > 0.0) counted_rate_hz_ = counted_rows_ / span_s;
 }
 
 void TimeGrid::start_first(double time_s) { parts_.push_back({0, 0, time_s, time_s, 0.0}); }
@@ -142,6 +157,9 @@ double TimeGrid::rate(const std::vector<TimedRows>& parts) const {
     uncertainty_s += resolution_at(part.last_s);
   }
   if (!(span_s > 0.0)) return 0.0;
+  // Short and coarse: the count of rows between changes of the stamp is good to one row.
+  const bool count_is_better = counted_rate_hz_ > 0.0 && 1.0 / counted_rows_ < uncertainty_s / span_s;
+  if (count_is_better) return round_rate(counted_rate_hz_, std::min(1.0 / counted_rows_, rate_tolerance));
   return round_rate(steps / span_s, std::min(uncertainty_s / span_s, rate_tolerance));
 }
 
@@ -176,10 +194,9 @@ GridVerdict TimeGrid::verdict(const std::vector<RowTime>& remembered, const std:
     const double from = parts[i - 1].start_s + (parts[i - 1].last_s - parts[i - 1].first_s);
     const double jump = parts[i].first_s - parts[i - 1].last_s;
     const bool back = std::find(jumps_back_.begin(), jumps_back_.end(), i) != jumps_back_.end();
-    std::string text =
-        back ? fmt::format("after {} s the times jump back by {} s; how long the pause was is not known",
-                           base::plain(from), base::rounded(-jump))
-             : missing_text(from, jump, std::max(1.0, std::round(jump * verdict.rate_hz) - 1.0));
+    std::string text = back ? fmt::format("after {} s the times jump back by {} s; how long the pause was is not known",
+                                          base::plain(from), base::rounded(-jump))
+                            : missing_text(from, jump, std::max(1.0, std::round(jump * verdict.rate_hz) - 1.0));
     if (i == gaps_listed && parts.size() - 1 > gaps_listed) {
       text += fmt::format("; {} more gaps follow", parts.size() - 1 - gaps_listed);
     }

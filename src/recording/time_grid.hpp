@@ -65,6 +65,7 @@ class TimeGrid {
   GridVerdict verdict(const std::vector<RowTime>& remembered, const std::string& where) const;
 
  private:
+  void count_rate(const std::vector<double>& first_times_s, const std::vector<double>& steps);
   void start_first(double time_s);
   void start_next(double time_s);
   double resolution_at(double time_s) const;
@@ -74,8 +75,10 @@ class TimeGrid {
 
   double resolution_s_;
   double relative_resolution_;
-  bool repeated_ = false;  // stamps repeat: they are coarser than the step
-  double step_s_ = 0.0;    // common step
+  bool repeated_ = false;         // stamps repeat: they are coarser than the step
+  double counted_rate_hz_ = 0.0;  // of repeated stamps, by the rows between their changes; 0: not known
+  double counted_rows_ = 0.0;     // that it comes from
+  double step_s_ = 0.0;           // common step
   double gap_from_s_ = 0.0;
   double back_from_s_ = 0.0;
   double least_even_s_ = 0.0;

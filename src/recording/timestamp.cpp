@@ -134,8 +134,7 @@ std::optional<double> days_of(const WrittenDate& date, DateOrder order) {
   const int year = date.year_first ? date.part[0] : date.part[2];
   const int month = swapped ? date.part[0] : date.part[1];
   const int day = date.year_first ? date.part[2] : (swapped ? date.part[1] : date.part[0]);
-  const std::chrono::year_month_day calendar{std::chrono::year(year),
-                                             std::chrono::month(static_cast<unsigned>(month)),
+  const std::chrono::year_month_day calendar{std::chrono::year(year), std::chrono::month(static_cast<unsigned>(month)),
                                              std::chrono::day(static_cast<unsigned>(day))};
   if (!calendar.ok()) return {};
   return day_s * static_cast<double>(std::chrono::sys_days(calendar).time_since_epoch().count());

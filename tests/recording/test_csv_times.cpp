@@ -42,6 +42,16 @@ TEST_CASE("the rate does not suffer from the resolution of the times") {
   CHECK(coarse.recording().segments.size() == 1);
 }
 
+TEST_CASE("the rate of a short recording with coarse times is counted from change to change") {
+  // 300 rows at 1024 Hz in hundredths of a second: the span says 1031 Hz or less well.
+  std::vector<double> times;
+  for (int i = 0; i < 300; ++i) times.push_back(std::floor(100.0 * i / 1024.0) / 100.0);
+  Opened csv(table(times, 2, ramp));
+  CHECK(csv.recording().segments.size() == 1);
+  CHECK(csv.recording().rate_hz == Approx(1024.0).epsilon(1.0 / 280.0));  // good to one row of at least 280
+  CHECK(found(csv.recording().findings, base::Code::uneven_times)->strength == base::Strength::weak);
+}
+
 TEST_CASE("a gap in the times begins a segment and is reported") {
   auto times = even(500, 1000.0);
   const auto later = even(300, 1000.0, 0.6);

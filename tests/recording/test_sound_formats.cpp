@@ -128,8 +128,8 @@ const Format& named(const char* stated) {
 struct Damage {
   const char* claim;
   std::string content;
-  std::size_t frames;         // that are read
-  double from_s, to_s;        // of the finding; negative: none
+  std::size_t frames;   // that are read
+  double from_s, to_s;  // of the finding; negative: none
   int bits;
 };
 
@@ -169,8 +169,8 @@ TEST_CASE("BW64, the RF64 of ITU-R BS.2088, is read as well") {
 }
 
 TEST_CASE("each kind of cut or lying sound file is read as far as it goes and says from when to when") {
-  // Headers as libsndfile writes them: RIFF of 16-bit data at 44; AIFF: COMM at 12 with its frames at 22, SSND at 38 with
-  // its size at 42; W64: data at 80 with its size at 96; RF64: ds64 at 12 with the size of the data at 28.
+  // Headers as libsndfile writes them: RIFF of 16-bit data at 44; AIFF: COMM at 12 with its frames at 22, SSND at 38
+  // with its size at 42; W64: data at 80 with its size at 96; RF64: ds64 at 12 with the size of the data at 28.
   const std::string aiff = written(named("AIFF, 16-bit"), 2, 4000);
   const std::string aifc = written(named("AIFF, 32-bit float"), 2, 4000);
   const std::string w64 = written(named("W64, 24-bit"), 2, 4000);
@@ -190,8 +190,8 @@ TEST_CASE("each kind of cut or lying sound file is read as far as it goes and sa
       {"AIFF whose SSND size is all ones", with(aiff, 42, ones.substr(4)), 4000, -1, -1, 16},
       {"AIFF whose COMM states no frames", with(aiff, 22, zeros.substr(4)), 4000, -1, -1, 16},
       {"AIFF whose COMM states too many frames", with(aiff, 22, big(1000000, 4)), 4000, -1, -1, 16},
-      {"AIFF whose COMM and SSND state twice the frames",
-       with(with(aiff, 22, big(8000, 4)), 42, big(8 + 8000 * 4, 4)), 4000, 0.5, 1.0, 16},
+      {"AIFF whose COMM and SSND state twice the frames", with(with(aiff, 22, big(8000, 4)), 42, big(8 + 8000 * 4, 4)),
+       4000, 0.5, 1.0, 16},
       {"floating AIFC cut", aifc.substr(0, aifc.size() - 1000 * 8), 3000, 0.375, 0.5, 0},
       {"W64 cut", w64.substr(0, w64_data + 1000 * 6), 1000, 0.125, 0.5, 24},
       {"W64 never completed", with(w64, 96, zeros), 4000, 0.5, -1, 24},
