@@ -7,12 +7,22 @@
 namespace stillmass::base {
 namespace {
 
+// What a file says of itself may be megabytes long.
+std::string clipped(const std::string& text) {
+  constexpr std::size_t most = 1000;
+  std::string out = printable(text);
+  if (out.size() <= most) return out;
+  std::size_t end = most;
+  while ((static_cast<unsigned char>(out[end]) & 0xC0) == 0x80) --end;  // not within a letter
+  return out.substr(0, end) + "...";
+}
+
 std::string one_line(const std::string& where, std::optional<int> line, const std::string& what,
                      const std::string& remedy) {
   std::string text = where;
   if (line) text += ":" + std::to_string(*line);
   if (!text.empty()) text += ": ";
-  text += what;
+  text += clipped(what);
   if (!remedy.empty()) text += "; " + remedy;
   return printable(text);
 }

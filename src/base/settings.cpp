@@ -40,8 +40,10 @@ namespace fs = std::filesystem;
 int line_of(const toml::node& node) { return static_cast<int>(node.source().begin.line); }
 
 // toml++ 3.3 aborts on some bytes that TOML forbids anyway, so they are refused here first: control bytes, and
-// non-ASCII outside strings and comments. Follows the quoting of TOML 1.0 far enough to know what is inside a string.
+// non-ASCII outside strings and comments. So are keys of more parts than any table of keys has: tables within tables
+// are visited and destroyed by recursion. Follows the quoting of TOML 1.0 far enough to know what is inside a string.
 void scan_bytes(std::string_view text, const std::string& name) {
+  constexpr int most_dots = 16;  // of one key
   int line = 1;
   const auto refuse = [&](const std::string& what) {
     throw usage_error(name, what, "mend the line in a text editor", line);
@@ -58,12 +60,14 @@ void scan_bytes(std::string_view text, const std::string& name) {
   char quote = 0;
   bool triple = false;
   bool comment = false;
+  int dots = 0;
   for (std::size_t i = 0; i < text.size(); ++i) {
     const char c = text[i];
     const auto byte = static_cast<unsigned char>(c);
     if (c == '\n') {
       ++line;
       comment = false;
+      dots = 0;
       if (!triple) quote = 0;
       continue;
     }
@@ -81,12 +85,19 @@ void scan_bytes(std::string_view text, const std::string& name) {
       if (c == '\\' && quote == '"') {
         if (i + 1 < text.size() && text[i + 1] != '\n') ++i;
       } else if (c == quote && (!triple || text.substr(i, 3) == std::string(3, quote))) {
-        if (triple) i += 2;
+        if (triple) {  // up to two quotes more belong to the text
+          i += 2;
+          for (int more = 0; more < 2 && i + 1 < text.size() && text[i + 1] == c; ++more) ++i;
+        }
         quote = 0;
         triple = false;
       }
     } else if (c == '#') {
       comment = true;
+    } else if (c == '.') {
+      if (++dots > most_dots) refuse("a key of too many parts");
+    } else if (std::string_view(",=[]{}").find(c) != std::string_view::npos) {
+      dots = 0;
     } else if (c == '"' || c == '\'') {
       quote = c;
       triple = text.substr(i, 3) == std::string(3, c);

@@ -148,9 +148,12 @@ std::string safe_file_name(std::string_view name) {
 }
 
 std::string_view nearest_name(std::string_view name, std::span<const std::string_view> candidates) {
+  constexpr std::size_t longest = 100;  // nobody looks for a slip in a longer name, and the search would take long
   std::string_view best;
+  if (name.size() > longest) return best;
   std::size_t least = name.size() / 3 + 2;  // more changes than that are no slip: common practice
   for (const std::string_view candidate : candidates) {
+    if (candidate.size() > longest) continue;
     const std::size_t distance = edit_distance(lower(name), lower(candidate));
     if (distance < least) {
       least = distance;

@@ -1,7 +1,10 @@
+#include <string>
+#include <string_view>
 #include <vector>
 
 #include "stillmass/base/error.hpp"
 #include "stillmass/base/settings.hpp"
+#include "stillmass/base/text.hpp"
 
 #include "support/catch.hpp"
 #include "support/temporary_folder.hpp"
@@ -74,6 +77,23 @@ TEST_CASE("bytes that would upset the parser are refused before it sees them") {
   // Where toml++ 3.3 asserts, and where it takes letters outside ASCII for impossible.
   CHECK(fault_of("\n[+machine]\n").find("s.toml:2: ") == 0);
   CHECK(fault_of("[machine]\nname = 0\"\"\"\xC3\xA4\"\"\"\n").find("s.toml:2: ") == 0);
+}
+
+TEST_CASE("keys of a million parts and names of a million letters are refused, quickly and in a short line") {
+  // toml++ takes such keys and visits its tables by recursion: once a stack overflow.
+  std::string parts;
+  for (int i = 0; i < 1'000'000; ++i) parts += "a.";
+  const std::string many = "s.toml:1: a key of too many parts";
+  CHECK(fault_of(parts + "a = 1\n").find(many) == 0);
+  CHECK(fault_of("[" + parts + "a]\n").find(many) == 0);
+  CHECK(fault_of("x = [\"\"\"text\"\"\"\", { " + parts + "a = 1 }]\n").find(many) == 0);
+  CHECK(fault_of("[machine]\nname = 'a. b. c. d. e. f. g. h. i. j. k. l. m. n. o. p. q. r.'\n").empty());
+
+  const std::string name(1'000'000, 'n');
+  const std::string fault = fault_of("[machine]\n" + name + " = 1\n");
+  CHECK(fault.find("s.toml:2: unknown key 'machine.nnn") == 0);
+  CHECK(fault.size() < 2000);
+  CHECK(nearest_name(name, std::vector<std::string_view>{name}).empty());
 }
 
 TEST_CASE("a settings file that is not there is an error of usage") {
