@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <cstdint>
 #include <numbers>
 #include <utility>
 
@@ -130,12 +131,15 @@ double KaiserSinc::at(std::span<const double> x, double position, double bandwid
   const double to = std::min(last, std::floor(position + reach(bandwidth)));
   if (from > to) return 0.0;
   const double step = bandwidth * static_cast<double>(nodes_per_crossing);
-  const auto end = static_cast<std::size_t>(to);
+  // Signed numbers: they turn into doubles and back in one instruction.
+  const auto end = static_cast<std::int64_t>(to);
+  const std::int64_t last_node = std::ssize(table_) - 1;
   double sum = 0.0;
-  for (auto i = static_cast<std::size_t>(from); i <= end; ++i) {
+  for (auto i = static_cast<std::int64_t>(from); i <= end; ++i) {
     const double node = std::abs(position - static_cast<double>(i)) * step;
-    const auto whole = std::min(static_cast<std::size_t>(node), table_.size() - 1);
-    sum += x[i] * (table_[whole].value + (node - static_cast<double>(whole)) * table_[whole].rise);
+    const std::int64_t whole = std::min(static_cast<std::int64_t>(node), last_node);
+    const Node& at = table_[static_cast<std::size_t>(whole)];
+    sum += x[static_cast<std::size_t>(i)] * (at.value + (node - static_cast<double>(whole)) * at.rise);
   }
   return bandwidth * sum;
 }

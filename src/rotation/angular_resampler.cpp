@@ -73,7 +73,7 @@ void add_invalid(const recording::Chunk& chunk, std::size_t channel, std::vector
 
 Halved read(recording::Reader& reader, FrameRange range, const std::vector<std::size_t>& channels,
             std::size_t halvings) {
-  const std::vector<double> half_band = numeric::half_band(halving_pass, stop_db);
+  static const std::vector<double> half_band = numeric::half_band(halving_pass, stop_db);
   std::vector<Halvings> filters(channels.size(), Halvings(halvings, half_band));
   Halved out;
   out.channels.resize(channels.size());

@@ -60,15 +60,19 @@ Levels pulse_levels(const Reader& reader, FrameRange range, std::size_t channel,
     middle.push_back(0.5 * (highest + lowest));
   };
   for_valid_samples(reader, range, channel, context, [&](std::int64_t first, std::span<const double> samples) {
-    for (std::size_t i = 0; i < samples.size(); ++i) {
-      const std::int64_t number = (first + static_cast<std::int64_t>(i)) / block;
+    for (std::size_t i = 0; i < samples.size();) {
+      const std::int64_t frame = first + static_cast<std::int64_t>(i);
+      const std::int64_t number = frame / block;
       if (number != current) {
         close();
         current = number;
         lowest = highest = samples[i];
       }
-      lowest = std::min(lowest, samples[i]);
-      highest = std::max(highest, samples[i]);
+      const std::size_t end = std::min(samples.size(), i + static_cast<std::size_t>((number + 1) * block - frame));
+      for (; i < end; ++i) {
+        lowest = std::min(lowest, samples[i]);
+        highest = std::max(highest, samples[i]);
+      }
     }
   });
   close();
