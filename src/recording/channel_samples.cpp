@@ -55,7 +55,8 @@ void ChannelSamples::take(std::span<const double> samples, std::int64_t first_fr
   const std::int64_t last_start = std::min(starts, std::ssize(line_) - static_cast<std::int64_t>(spike_window) + 1);
   for (std::int64_t i = 0; i < last_start; ++i) {
     const double* const x = line_.data() + i;
-    if (stands_still(x[0], x[1], offset_)) levels.take_still(x[1], line_begin + i + 1);
+    if (is_edge(x[0], x[1], x[2], x[3])) levels.take_edge(x[1], line_begin + i + 1);
+    if (is_edge(x[0], x[2], x[4], x[6])) levels.take_edge(x[2], line_begin + i + 2);
   }
 }
 

@@ -29,19 +29,19 @@ void LevelCounts::widen(int exponent) {
   if (exponent_ != empty_exponent) {
     const int shift = std::min(exponent - exponent_, 20);
     std::array<std::int64_t, bins> counts{};
-    std::array<Still, bins> still{};
+    std::array<Edges, bins> edges{};
     for (int bin = 0; bin < bins; ++bin) {
       const auto from = static_cast<std::size_t>(bin);
       const auto to = static_cast<std::size_t>(((bin - side) >> shift) + side);
       counts[to] += counts_[from];
-      if (still_[from].count == 0) continue;
-      Still& sum = still[to];
-      sum.first = sum.count == 0 ? still_[from].first : std::min(sum.first, still_[from].first);
-      sum.last = std::max(sum.last, still_[from].last);
-      sum.count += still_[from].count;
+      if (edges_[from].count == 0) continue;
+      Edges& sum = edges[to];
+      sum.first = sum.count == 0 ? edges_[from].first : std::min(sum.first, edges_[from].first);
+      sum.last = std::max(sum.last, edges_[from].last);
+      sum.count += edges_[from].count;
     }
     counts_ = counts;
-    still_ = still;
+    edges_ = edges;
   }
   exponent_ = exponent;
 }
@@ -56,12 +56,12 @@ void LevelCounts::take(std::span<const double> samples, double reach) {
   }
 }
 
-void LevelCounts::take_still(double sample, std::int64_t frame) {
+void LevelCounts::take_edge(double sample, std::int64_t frame) {
   widen(exponent_of(std::abs(sample - zero_)));
-  Still& still = still_[static_cast<std::size_t>(bin_of(sample))];
-  still.first = still.count == 0 ? frame : std::min(still.first, frame);
-  still.last = std::max(still.last, frame);
-  ++still.count;
+  Edges& edges = edges_[static_cast<std::size_t>(bin_of(sample))];
+  edges.first = edges.count == 0 ? frame : std::min(edges.first, frame);
+  edges.last = std::max(edges.last, frame);
+  ++edges.count;
 }
 
 void LevelCounts::merge(const LevelCounts& later) {
@@ -71,11 +71,11 @@ void LevelCounts::merge(const LevelCounts& later) {
   widen(other.exponent_);
   for (std::size_t bin = 0; bin < bins; ++bin) {
     counts_[bin] += other.counts_[bin];
-    if (other.still_[bin].count == 0) continue;
-    Still& still = still_[bin];
-    still.first = still.count == 0 ? other.still_[bin].first : std::min(still.first, other.still_[bin].first);
-    still.last = std::max(still.last, other.still_[bin].last);
-    still.count += other.still_[bin].count;
+    if (other.edges_[bin].count == 0) continue;
+    Edges& edges = edges_[bin];
+    edges.first = edges.count == 0 ? other.edges_[bin].first : std::min(edges.first, other.edges_[bin].first);
+    edges.last = std::max(edges.last, other.edges_[bin].last);
+    edges.count += other.edges_[bin].count;
   }
 }
 
@@ -92,10 +92,6 @@ std::optional<LevelCounts::FlatTop> LevelCounts::flat_top(int sign, double step)
   const int half_span = (highest - lowest) / 2;
   if (half_span < quality_limit::flat_top_span_bins) return std::nullopt;
   const std::int64_t all = sum(0, bins);
-  // A tone that the sampling meets at the same few phases in every period has few levels, not flat tops.
-  if (2 * std::count_if(counts_.begin() + lowest, counts_.begin() + highest + 1, is_used) < highest - lowest) {
-    return std::nullopt;
-  }
   for (const double share : quality_limit::flat_top_heights) {
     const int height =
         std::max({2, static_cast<int>(std::ceil(share * half_span)), static_cast<int>(std::ceil(step / bin_width()))});
@@ -107,15 +103,15 @@ std::optional<LevelCounts::FlatTop> LevelCounts::flat_top(int sign, double step)
     if (2 * beyond > all || static_cast<double>(in) < quality_limit::flat_top_ratio * static_cast<double>(next))
       continue;
     FlatTop top;
-    std::int64_t still = 0;
+    std::int64_t found = 0;
     for (int bin = from; bin < from + height; ++bin) {
-      const Still& each = still_[static_cast<std::size_t>(bin)];
+      const Edges& each = edges_[static_cast<std::size_t>(bin)];
       if (each.count == 0) continue;
-      top.frames.begin = still == 0 ? each.first : std::min(top.frames.begin, each.first);
+      top.frames.begin = found == 0 ? each.first : std::min(top.frames.begin, each.first);
       top.frames.end = std::max(top.frames.end, each.last + 1);
-      still += each.count;
+      found += each.count;
     }
-    if (still < quality_limit::flat_top_samples) continue;
+    if (found < quality_limit::flat_top_edges) continue;
     top.level = zero_ + bin_width() * (sign > 0 ? highest + 1 - side : lowest - side);
     top.samples = in;
     return top;

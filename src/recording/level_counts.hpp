@@ -1,6 +1,8 @@
 #pragma once
 
+#include <algorithm>
 #include <array>
+#include <cmath>
 #include <cstdint>
 #include <optional>
 #include <span>
@@ -10,16 +12,16 @@
 namespace stillmass::recording {
 
 /// How often a signal stands at each level: a histogram over +-2^n about zero, 2^n being the least that holds every
-/// sample, so that histograms of parts, merged, are to the bit those of the whole. Samples that stand still are counted
-/// a second time with their frames: a flat top is made of them even where noise lies on it.
+/// sample, so that histograms of parts, merged, are to the bit those of the whole. The edges of flat tops are counted a
+/// second time with their frames.
 class LevelCounts {
  public:
   explicit LevelCounts(double zero) : zero_(zero) {}
 
   /// Samples, none of them further from zero than `reach`.
   void take(std::span<const double> samples, double reach);
-  /// One of them again, where it stands still (`stands_still`).
-  void take_still(double sample, std::int64_t frame);
+  /// One of them again, where it stands at the edge of a flat top (`is_edge`).
+  void take_edge(double sample, std::int64_t frame);
   void merge(const LevelCounts& later);
 
   /// A cluster of samples at the top (sign +1) or the bottom (-1) of the range, with hardly any next to it. A rounded
@@ -28,7 +30,7 @@ class LevelCounts {
   struct FlatTop {
     double level = 0.0;  ///< of its outer edge
     std::int64_t samples = 0;
-    FrameRange frames;  ///< from the first to the last that stands still
+    FrameRange frames;  ///< from the first edge to the last
   };
   std::optional<FlatTop> flat_top(int sign, double step) const;
 
@@ -40,7 +42,7 @@ class LevelCounts {
   static constexpr int bins = 2 * side;
   static constexpr int empty_exponent = -1100;
 
-  struct Still {
+  struct Edges {
     std::int64_t count = 0;
     std::int64_t first = 0;
     std::int64_t last = 0;
@@ -54,13 +56,17 @@ class LevelCounts {
   double zero_;
   int exponent_ = empty_exponent;
   std::array<std::int64_t, bins> counts_{};
-  std::array<Still, bins> still_{};
+  std::array<Edges, bins> edges_{};
 };
 
-/// Whether a sample stands still: it moves by less than 1/128 of its distance from zero to its neighbour.
-inline bool stands_still(double before, double sample, double zero) {
-  const double least = (sample < zero ? zero - sample : sample - zero) / 128.0;
-  return (sample < before ? before - sample : sample - before) <= least;
+/// Whether the signal jumps in the first or the last of these three steps and rests in the two others: the edge of a
+/// flat top, noise on it or not. The steps of a rounded top (a parabola) differ by a factor of three at most.
+inline bool is_edge(double a, double b, double c, double d) {
+  constexpr double jump = 8.0;
+  const double in = std::abs(b - a);
+  const double middle = std::abs(c - b);
+  const double out = std::abs(d - c);
+  return in > jump * std::max(middle, out) || out > jump * std::max(in, middle);
 }
 
 }  // namespace stillmass::recording

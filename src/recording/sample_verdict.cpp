@@ -54,7 +54,7 @@ class Judge {
   }
 
   std::string with_unit(double value) const {
-    return fmt::format("{} {}", base::rounded(value), base::si_unit(channel_.unit.quantity).name);
+    return fmt::format("{} {}", base::rounded(value / channel_.unit.to_si), channel_.unit.name);
   }
 
   static std::string counted(std::int64_t count, const char* thing) {

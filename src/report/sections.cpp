@@ -18,9 +18,8 @@ namespace {
 
 using base::rounded;
 
-std::string si_text(std::optional<double> si, base::Quantity quantity) {
+std::string si_text(std::optional<double> si, const base::Unit& unit) {
   if (!si) return "";
-  const base::Unit unit = base::trade_unit(quantity);
   return rounded(*si / unit.to_si) + " " + std::string(unit.name);
 }
 
@@ -198,14 +197,13 @@ std::vector<Block> check_blocks(const step::CheckResult& result) {
   table.header = {"channel", "verdict", "r.m.s.", "peak", "crest factor", "findings"};
   std::vector<base::Finding> all = result.findings;
   for (const step::ChannelCheck& each : result.channels) {
-    const base::Quantity quantity = each.channel.unit.quantity;
     std::string codes;
     for (const base::Finding& finding : each.findings) {
       codes += (codes.empty() ? "" : ", ") + std::string(base::text(finding.code).name);
       all.push_back(finding);
     }
-    table.rows.push_back({each.channel.name, std::string(step::name(each.verdict)), si_text(each.quality.rms, quantity),
-                          si_text(each.quality.peak, quantity),
+    table.rows.push_back({each.channel.name, std::string(step::name(each.verdict)),
+                          si_text(each.quality.rms, each.channel.unit), si_text(each.quality.peak, each.channel.unit),
                           each.quality.crest_factor ? rounded(*each.quality.crest_factor, 2) : "", codes});
   }
   blocks.emplace_back(std::move(table));

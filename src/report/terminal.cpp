@@ -16,10 +16,12 @@ using base::rounded;
 
 constexpr std::size_t screen = 100;
 
-std::string in_trade_unit(std::optional<double> si, base::Quantity quantity, double factor = 1.0) {
-  if (!si) return "-";
-  const base::Unit unit = base::trade_unit(quantity);
-  return rounded(*si * factor / unit.to_si) + " " + std::string(unit.name);
+std::string in_unit(std::optional<double> si, const base::Unit& unit) {
+  return si ? rounded(*si / unit.to_si) + " " + std::string(unit.name) : "-";
+}
+
+std::string in_trade_unit(std::optional<double> si, base::Quantity quantity) {
+  return in_unit(si, base::trade_unit(quantity));
 }
 
 std::string heading(const recording::Recording& recording) {
@@ -61,9 +63,8 @@ std::string text(const step::CheckResult& result) {
   std::string out = heading(result.recording);
   std::vector<std::vector<std::string>> rows;
   for (const step::ChannelCheck& each : result.channels) {
-    const base::Quantity quantity = each.channel.unit.quantity;
     rows.push_back({base::printable(each.channel.name), std::string(step::name(each.verdict)),
-                    in_trade_unit(each.quality.rms, quantity), in_trade_unit(each.quality.peak, quantity),
+                    in_unit(each.quality.rms, each.channel.unit), in_unit(each.quality.peak, each.channel.unit),
                     each.quality.crest_factor ? rounded(*each.quality.crest_factor, 2) : "-"});
   }
   out += aligned({"channel", "verdict", "r.m.s.", "peak", "crest factor"}, rows);

@@ -127,7 +127,7 @@ std::optional<Finding> aliasing(const Spectrum& s) {
   if (!(at_top > no_roll_off * below && share > top_share)) return std::nullopt;
   return finding(
       Code::aliasing_suspected, s, base::Strength::weak,
-      fmt::format("the spectrum does not fall off towards half the sampling rate ({:.4g} Hz), where {:.0f} % "
+      fmt::format("the spectrum does not fall off towards half the sampling rate ({:.4g} Hz), where {:.2g} % "
                   "of the power still stands",
                   top, 100.0 * share));
 }

@@ -88,6 +88,36 @@ TEST_CASE("flat tops below the range are an overload, rounded ones of a slow sig
   CHECK(quality_of(wav16(slow).file()).findings.empty());
 }
 
+TEST_CASE("a signal that repeats itself to the sample has few levels, not flat tops") {
+  // What a generator gives a shaker: tones with a common period, sampled at the same instants in each.
+  for (const int period : {20, 32, 45, 64, 320}) {
+    std::vector<int> samples;
+    for (int i = 0; i < 60000; ++i) {
+      const double t = 2.0 * pi * (i % period) / period;
+      samples.push_back(static_cast<int>(std::lround(6000.0 * std::sin(t) + 5000.0 * std::sin(2.0 * t + 1.0) +
+                                                     (period > 100 ? 4000.0 * std::sin(13.0 * t) : 0.0))) +
+                        (i * 7919) % 3);
+    }
+    const auto quality = quality_of(wav16(samples).file());
+    for (const auto& each : quality.findings) UNSCOPED_INFO(period << ": " << each.text);
+    CHECK_FALSE(has(quality, Code::overload));
+  }
+}
+
+TEST_CASE("flat tops with the recorder's noise on them are an overload") {
+  std::minstd_rand random(3);
+  for (const double level : {0.5, 0.8, 0.95}) {
+    std::vector<int> samples;
+    for (int i = 0; i < 20000; ++i) {
+      const double x = std::clamp(20000.0 * std::sin(0.1234 * i), -25000.0, 20000.0 * level);
+      samples.push_back(static_cast<int>(std::lround(x)) + static_cast<int>(random() % 9));
+    }
+    const auto quality = quality_of(wav16(samples).file());
+    INFO(level);
+    CHECK(has(quality, Code::overload));
+  }
+}
+
 TEST_CASE("a loose cable leaves exact zeros") {
   auto samples = lively(5000);
   std::fill(samples.begin() + 2000, samples.begin() + 2100, 0);

@@ -105,7 +105,8 @@ TEST_CASE("an amplifier's flat tops are found below full scale, with noise on th
       return Span{0.0, seconds(signal)};
     });
     INFO("tops of " << 100.0 * share << " % of the samples, missed:" << found.missed);
-    CHECK(found.found >= least_found);
+    // Tops of one or two samples cannot be told from round ones.
+    CHECK(found.found >= (share < 0.005 ? 12 : least_found));
     CHECK(found.timed == found.found);
   }
 }
@@ -285,8 +286,7 @@ TEST_CASE("one sensor on two inputs is found, whatever the gain, and two sensors
     SiteSignal second = signal;  // a neighbouring point: the same lines, its own noise
     const auto noise = filtered_noise(signal.samples.size(), seed + 7);
     const double rms = signal.rms();
-    for (std::size_t i = 0; i < noise.size(); ++i)
-      second.samples[i] = 0.8 * second.samples[i] + 0.1 * rms * noise[i];
+    for (std::size_t i = 0; i < noise.size(); ++i) second.samples[i] = 0.8 * second.samples[i] + 0.1 * rms * noise[i];
     const auto result =
         checked(MemoryReader(signal.rate_hz, {stored(signal, "a", seed), stored(second, "b", seed + 100)}));
     wrong += has(result.channels[1].findings, Code::identical_channels);
@@ -350,7 +350,7 @@ TEST_CASE("units wrong by a great factor are suspected") {
   // The earth's acceleration in the stated unit gives a factor of 9.81 away, where the sensor measures down to 0 Hz.
   const auto gravity = found_in(Code::unit_suspected, [&](SiteSignal& signal, std::uint64_t) {
     const double rms = signal.rms();
-    for (double& v : signal.samples) v = 1.0 + 0.05 * v / rms;
+    for (double& v : signal.samples) v = 1.0 + 0.01 * v / rms;
     signal.range = 4.0;
     return Span{0.0, 0.0};
   });

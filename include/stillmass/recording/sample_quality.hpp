@@ -42,9 +42,9 @@ inline constexpr double dead_steps = 2.0;           ///< peak-to-peak value in s
 
 // A flat top with noise on it: samples that crowd at an extreme level.
 inline constexpr std::array<double, 4> flat_top_heights{0.004, 0.01, 0.02, 0.04};  ///< of the crowd, of half the span
-inline constexpr double flat_top_ratio = 4.0;        ///< samples in it over those in the next three heights; a sine: 1
-inline constexpr std::int64_t flat_top_samples = 8;  ///< of the crowd that stand still, at least
-inline constexpr int flat_top_span_bins = 24;        ///< finer than that the levels must be told apart
+inline constexpr double flat_top_ratio = 4.0;      ///< samples in it over those in the next three heights; a sine: 1
+inline constexpr std::int64_t flat_top_edges = 4;  ///< of the crowd: a jump and then rest, or the reverse
+inline constexpr int flat_top_span_bins = 24;      ///< finer than that the levels must be told apart
 
 // A signal of two levels: a tacho's pulses.
 inline constexpr double pulse_edge = 0.15;    ///< so near to the least or largest value, of the span ...
