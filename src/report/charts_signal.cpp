@@ -53,30 +53,66 @@ double highest_of_interest(const step::SpectrumResult& result, const spectral::S
   return std::min(top, half_rate);
 }
 
+// When something is wrong, as a band across the channel; what lasts the whole recording is in the text only.
+void show_findings(const std::vector<base::Finding>& findings, double duration_s, Panel& panel) {
+  constexpr double least_width = 0.004;  // of the recording, to be seen at all
+  constexpr double whole = 0.8;
+  for (const base::Finding& each : findings) {
+    if (!each.from_s || !each.to_s || *each.to_s - *each.from_s > whole * duration_s) continue;
+    const double widening = std::max(0.0, 0.5 * (least_width * duration_s - (*each.to_s - *each.from_s)));
+    Zone zone;
+    zone.direction = Direction::vertical;
+    zone.from = std::max(0.0, *each.from_s - widening);
+    zone.to = std::min(duration_s, *each.to_s + widening);
+    zone.label = std::string(base::text(each.code).name);
+    zone.tone = Tone::caution;
+    panel.zones.push_back(std::move(zone));
+  }
+}
+
+double usual_step(const std::vector<double>& times) {
+  std::vector<double> steps;
+  for (std::size_t i = 1; i < times.size(); ++i) steps.push_back(times[i] - times[i - 1]);
+  const auto middle = steps.begin() + static_cast<std::ptrdiff_t>(steps.size() / 2);
+  std::nth_element(steps.begin(), middle, steps.end());
+  return *middle;
+}
+
 }  // namespace
 
 Chart overview_chart(const step::CheckResult& result) {
   Chart chart;
   chart.title = "The recording at a glance: " + result.recording.file.filename().string();
-  chart.caption = "Least and largest sample of each column of the picture.";
+  chart.caption = "Least and largest sample of each column of the picture; shaded: when something was found.";
   chart.x = {"Time", "s"};
   const auto& picture = result.overview;
   for (std::size_t c = 0; c < std::min(result.channels.size(), most_panels); ++c) {
     const recording::Channel& channel = result.channels[c].channel;
-    const base::Unit unit = base::trade_unit(channel.unit.quantity);
+    const base::Unit unit = channel.unit;
     Panel panel;
     panel.y = {channel.name, std::string(unit.name)};
+    show_findings(result.findings, result.recording.duration_s(), panel);
+    show_findings(result.channels[c].findings, result.recording.duration_s(), panel);
+    // A band each for the stretches between the gaps.
+    const double pause = picture.time_s.size() > 1 ? 1.5 * usual_step(picture.time_s) : 0.0;
     Band band;
     band.name = channel.name;
+    const auto close = [&] {
+      if (!band.x.empty()) panel.bands.push_back(band);
+      band.x.clear();
+      band.low.clear();
+      band.high.clear();
+    };
     for (std::size_t i = 0; i < picture.time_s.size(); ++i) {
       const auto& range = picture.channels[c][i];
+      if (!range || (i > 0 && picture.time_s[i] - picture.time_s[i - 1] > pause)) close();
       if (!range) continue;
       band.x.push_back(picture.time_s[i]);
       band.low.push_back(range->lo / unit.to_si);
       band.high.push_back(range->hi / unit.to_si);
     }
-    if (band.x.empty()) continue;
-    panel.bands.push_back(std::move(band));
+    close();
+    if (panel.bands.empty()) continue;
     chart.panels.push_back(std::move(panel));
   }
   return chart;

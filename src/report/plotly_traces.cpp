@@ -113,6 +113,8 @@ class TraceWriter {
 
   /// Out along the upper edge and back along the lower.
   void write_band(const Band& band, const Panel& panel, std::size_t index) {
+    constexpr double beside_series = 0.22;
+    constexpr double alone = 0.6;
     const bool logarithmic = panel.y.scale == Scale::logarithmic;
     const double least = logarithmic ? 1e-3 * panel.y.range->lo : 0.0;
     const auto drawable = [&](double value) { return logarithmic ? std::max(value, least) : value; };
@@ -125,7 +127,7 @@ class TraceWriter {
     json_.close(']').key("y").open('[');
     for (const double high : band.high) json_.number(drawable(high), digits_of_values);
     for (auto low = band.low.rbegin(); low != band.low.rend(); ++low) json_.number(drawable(*low), digits_of_values);
-    json_.close(']').key("fillcolor").text(colour(looks_.of(band).role, 0.22));
+    json_.close(']').key("fillcolor").text(colour(looks_.of(band).role, panel.series.empty() ? alone : beside_series));
     json_.key("line").open('{').key("width").number(0).close('}').close('}');
   }
 

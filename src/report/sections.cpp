@@ -360,7 +360,11 @@ Section inputs_section(const Envelope& envelope) {
 std::vector<std::pair<std::string, std::string>> facts(const Envelope& envelope) {
   std::vector<std::pair<std::string, std::string>> out = {{"made by", "stillmass " + std::string(base::version())},
                                                           {"command", envelope.command}};
-  for (const auto& [key, value] : envelope.settings) out.emplace_back(key, value);
+  for (const auto& [key, value] : envelope.settings) {
+    // Where results went and how much was printed changes no number.
+    constexpr std::array silent{"html", "json", "csv", "out", "quiet", "threads"};
+    if (std::find(silent.begin(), silent.end(), key) == silent.end()) out.emplace_back(key, value);
+  }
   return out;
 }
 

@@ -50,7 +50,7 @@ void draw_grid(SvgWriter& out, const PanelFrame& frame, const std::vector<Tick>&
   out.path(lines, {"grid", 1.0});
 }
 
-void draw_band(SvgWriter& out, const Band& band, const PanelFrame& frame, const Look& look) {
+void draw_band(SvgWriter& out, const Band& band, const PanelFrame& frame, const Look& look, double opacity) {
   std::string d;
   for (std::size_t i = 0; i < band.x.size(); ++i) {
     const double high = frame.y.has(band.high[i]) ? frame.y(band.high[i]) : frame.height;
@@ -60,7 +60,7 @@ void draw_band(SvgWriter& out, const Band& band, const PanelFrame& frame, const 
     const double low = frame.y.has(band.low[i]) ? frame.y(band.low[i]) : frame.height;
     d += fmt::format("L{} {}", px(frame.x(band.x[i])), px(low));
   }
-  if (!d.empty()) out.fill(d + "z", look.role, 0.22);
+  if (!d.empty()) out.fill(d + "z", look.role, opacity);
 }
 
 /// Path of a curve; where the scale has no place for a value the pen is lifted.
@@ -182,7 +182,7 @@ void draw_inside(SvgWriter& out, const Panel& panel, const PanelFrame& frame, co
   draw_grid(out, frame, x_ticks, y_ticks);
   if (panel.heat_map) draw_heat_map(out, *panel.heat_map, frame.x, frame.y);
   draw_marks(out, panel, frame, Direction::vertical);  // a peak on its mark stays in sight
-  for (const Band& band : panel.bands) draw_band(out, band, frame, looks.of(band));
+  for (const Band& band : panel.bands) draw_band(out, band, frame, looks.of(band), panel.series.empty() ? 0.6 : 0.22);
   for (const Series& series : panel.series) draw_series(out, series, frame, looks.of(series));
   draw_marks(out, panel, frame, Direction::horizontal);
   draw_callouts(out, panel, frame);
