@@ -101,6 +101,7 @@ void keep_freed_memory() {
   constexpr int bytes = 64 * 1024 * 1024;
   ::mallopt(M_MMAP_THRESHOLD, bytes / 2);
   ::mallopt(M_TRIM_THRESHOLD, bytes);
+  ::mallopt(M_ARENA_MAX, 1);  // what one thread gave back the other can take
 #endif
 }
 

@@ -1,5 +1,7 @@
 #include "report/sections.hpp"
 
+#include <algorithm>
+#include <array>
 #include <set>
 #include <utility>
 

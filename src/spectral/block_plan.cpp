@@ -138,6 +138,7 @@ std::size_t fast_length_at_most(std::size_t n) {
 
 std::size_t block_length(const Recording& recording, FrameRange range, double resolution_hz, double overlap) {
   constexpr double finest_hz = 0.25;
+  constexpr double held_samples = 3 << 17;  // of all channels: keeps a long recording's memory under 60 MB
   constexpr double coarsest_hz = 1.0;
   constexpr std::int64_t blocks_to_refine = 64;
   constexpr std::int64_t least_blocks = 16;
@@ -164,7 +165,10 @@ std::size_t block_length(const Recording& recording, FrameRange range, double re
     return static_cast<std::size_t>(std::min(frames, static_cast<double>(longest)));
   };
   const std::size_t shortest = fast_length_at_least(at_most_longest(std::ceil(rate / coarsest_hz)));
-  std::size_t length = fast_length_at_most(at_most_longest(rate / finest_hz));
+  // Every channel holds a block and its sums: many channels at a high rate get coarser lines, never coarser than 1 Hz.
+  const double held = held_samples / static_cast<double>(std::max<std::size_t>(1, recording.channels.size()));
+  std::size_t length =
+      fast_length_at_most(at_most_longest(std::min(rate / finest_hz, std::max(rate / coarsest_hz, held))));
   while (length > shortest && count(length) < blocks_to_refine) length = fast_length_at_most(length - 1);
   while (length > least_frames && count(length) < least_blocks) length = fast_length_at_most(length - 1);
   if (count(length) < 1) throw no_block(recording, range, static_cast<double>(length) / rate);

@@ -16,7 +16,7 @@ namespace stillmass::base {
 
 /// Runs `work(begin, end)` for [0, count) cut into ranges of `grain` items (the last may be shorter) and hands each
 /// partial result to `merge(partial)` on the calling thread, in the order of the ranges. The cut depends on `count` and
-/// `grain` only, so 1 and N threads give the same bits. At most `2 * threads` partial results wait at a time.
+/// `grain` only, so 1 and N threads give the same bits. At most `threads + 1` partial results are held at a time.
 /// The first exception (of the lowest range) is thrown again here once all threads have ended. Not to be nested.
 template <class Work, class Merge>
 void for_ranges(const Context& context, std::size_t count, std::size_t grain, Work work, Merge merge) {
@@ -45,7 +45,7 @@ void for_ranges(const Context& context, std::size_t count, std::size_t grain, Wo
   const auto worker = [&] {
     std::unique_lock lock(mutex);
     while (true) {
-      changed.wait(lock, [&] { return over || next_range >= ranges || next_range < next_merge + 2 * threads; });
+      changed.wait(lock, [&] { return over || next_range >= ranges || next_range < next_merge + threads + 1; });
       if (over || next_range >= ranges) return;
       const std::size_t i = next_range++;
       lock.unlock();

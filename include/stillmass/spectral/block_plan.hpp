@@ -57,7 +57,8 @@ std::size_t fast_length_at_most(std::size_t n);
 
 /// Block length for lines at most `resolution_hz` apart: the shortest fast length that gives it.
 /// With `resolution_hz` 0 it is chosen: lines 0.25 to 1 Hz apart, as fine as 64 blocks allow, coarser only where fewer
-/// than 16 blocks would remain (common practice: 16 averages hold a line within 25 %).
+/// than 16 blocks would remain (common practice: 16 averages hold a line within 25 %), and never finer than 400 000
+/// samples of all channels in a block allow.
 /// Throws `Error` (usage) where no segment of the range holds one block of it.
 std::size_t block_length(const recording::Recording& recording, recording::FrameRange range, double resolution_hz,
                          double overlap);
