@@ -235,7 +235,7 @@ class Judge {
 
   void look_for_shift() {
     const auto shift = samples_.slow_mean.shift();
-    if (!shift || few_steps()) return;
+    if (!shift || few_steps() || quality_.looks_like_pulses) return;
     const char* const what = shift->kind == SlowMean::Shift::Kind::settles  ? "settles"
                              : shift->kind == SlowMean::Shift::Kind::drifts ? "drifts"
                                                                             : "jumps";

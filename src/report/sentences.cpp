@@ -315,12 +315,19 @@ std::string when(const base::Finding& finding) {
 }
 
 std::string uncertainty_note(const step::SpectrumResult& result) {
-  const bool is_calibrated =
-      std::all_of(result.channels.begin(), result.channels.end(),
-                  [](const step::ChannelSpectrum& each) { return each.channel.factor_u.has_value(); });
-  return is_calibrated ? "+- is the standard uncertainty, that of the sensor's calibration included."
-                       : "+- is the standard uncertainty from this recording; the sensor's calibration comes on top "
-                         "(usually 2 to 5 %).";
+  std::string without;
+  bool any = false;
+  for (const step::ChannelSpectrum& each : result.channels) {
+    any = any || each.channel.factor_u;
+    if (!each.channel.factor_u) without += (without.empty() ? "" : ", ") + each.channel.name;
+  }
+  if (without.empty()) return "+- is the standard uncertainty, that of the sensors' calibration included.";
+  if (any) {
+    return "+- is the standard uncertainty, that of the sensor's calibration included but for " + without +
+           ", where it comes on top (usually 2 to 5 %).";
+  }
+  return "+- is the standard uncertainty from this recording; the sensor's calibration comes on top (usually 2 to 5 "
+         "%).";
 }
 
 std::string sentence(const base::Refusal& refusal) {

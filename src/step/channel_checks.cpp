@@ -186,19 +186,25 @@ void look_at_level(ChannelCheck& check, const spectral::Spectrum* spectrum) {
 void judge_tachos(std::span<ChannelCheck> channels, const recording::Reader& reader, recording::FrameRange range,
                   const CheckRequest& request, const base::Context& context) {
   const recording::FrameRange part = longest_part(reader.recording(), range);
-  std::vector<std::string> lonely;  // tachos without pulses
+  std::vector<ChannelCheck*> lonely;  // tachos without pulses
   for (std::size_t c = 0; c < channels.size(); ++c) {
     ChannelCheck& each = channels[c];
     if (each.channel.role != Role::tacho) continue;
     const bool is_dead = std::any_of(each.findings.begin(), each.findings.end(),
                                      [](const Finding& f) { return f.code == Code::no_signal; });
     if (!is_dead) judge_tacho(each, c, reader, part, request, context);
-    if (!each.quality.looks_like_pulses) lonely.push_back(each.channel.name);
+    if (!each.quality.looks_like_pulses) lonely.push_back(&each);
   }
   for (ChannelCheck& each : channels) {
     if (each.channel.role != Role::vibration || !each.quality.looks_like_pulses) continue;
     std::string text = "'" + each.channel.name + "' is stated as vibration and jumps between two levels like a tacho";
-    if (!lonely.empty()) text += ", while the tacho channel '" + lonely.front() + "' does not";
+    if (!lonely.empty()) text += ", while the tacho channel '" + lonely.front()->channel.name + "' does not";
+    for (ChannelCheck* tacho : lonely) {
+      tacho->findings.push_back({Code::channels_swapped,
+                                 "'" + tacho->channel.name + "' does not look like a tacho, but '" + each.channel.name +
+                                     "', stated as vibration, does",
+                                 tacho->channel.name});
+    }
     each.findings.push_back({Code::channels_swapped,
                              std::move(text),
                              each.channel.name,
