@@ -133,6 +133,7 @@ bool fraction_split_off(const CsvDialect& dialect) {
                          all_digits(bare(cells[c + 1])) &&
                          (bare(cells[c + 1]).size() == 3 || bare(cells[c + 1]).size() == 6);
       all = all && split;
+      if (!all) break;
     }
     if (all) return true;
   }

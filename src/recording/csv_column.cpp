@@ -7,6 +7,7 @@
 #include "stillmass/base/number.hpp"
 
 #include "recording/csv_cell.hpp"
+#include "recording/csv_dialect.hpp"
 
 namespace stillmass::recording {
 namespace {
@@ -31,28 +32,32 @@ int decimals_of(std::string_view text) {
 
 }  // namespace
 
-CsvColumn column_of(const CsvDialect& dialect, std::size_t field) {
-  CsvColumn column;
+std::vector<CsvColumn> columns_of(const CsvDialect& dialect) {
+  std::vector<CsvColumn> columns(dialect.numeric.size());
   std::vector<std::string_view> cells;
   for (const std::string& row : dialect.rows) {
     split_cells(row, dialect.separator, cells);
-    if (field >= cells.size()) continue;
-    const Cell cell = read_cell(cells[field], dialect.decimal);
-    if (cell.kind != CellKind::number && cell.kind != CellKind::time) continue;
-    column.texts.emplace_back(bare(cells[field]));
-    double value = cell.value;
-    if (cell.kind == CellKind::time) {
-      if (!column.stamps) {
-        column.stamps = true;
-        column.reading.order = dialect.date_order;
-        if (date_part(cells[field]).empty()) column.reading.begin_at(value);
+    for (std::size_t c = 0; c < std::min(cells.size(), columns.size()); ++c) {
+      const Cell cell = read_cell(cells[c], dialect.decimal);
+      if (cell.kind != CellKind::number && cell.kind != CellKind::time) continue;
+      CsvColumn& column = columns[c];
+      column.texts.emplace_back(bare(cells[c]));
+      double value = cell.value;
+      if (cell.kind == CellKind::time) {
+        if (!column.stamps) {
+          column.stamps = true;
+          column.reading.order = dialect.date_order;
+          if (date_part(cells[c]).empty()) column.reading.begin_at(value);
+        }
+        value = column.reading.seconds(column.texts.back()).value_or(value);
       }
-      value = column.reading.seconds(column.texts.back()).value_or(value);
+      column.values.push_back(value);
     }
-    column.values.push_back(value);
   }
-  return column;
+  return columns;
 }
+
+const CsvColumn& column_of(const CsvDialect& dialect, std::size_t field) { return dialect.columns[field]; }
 
 std::vector<double> CsvColumn::steps() const {
   std::vector<double> steps;

@@ -4,9 +4,11 @@
 #include <string>
 #include <vector>
 
-#include "recording/csv_dialect.hpp"
+#include "recording/timestamp.hpp"
 
 namespace stillmass::recording {
+
+struct CsvDialect;
 
 /// One column of the first rows, for a look at what kind of numbers stand in it; cells without a number are left out.
 struct CsvColumn {
@@ -36,6 +38,8 @@ struct CsvColumn {
   double last_digit() const;
 };
 
-CsvColumn column_of(const CsvDialect& dialect, std::size_t field);
+/// The columns of the first rows, in one pass over them.
+std::vector<CsvColumn> columns_of(const CsvDialect& dialect);
+const CsvColumn& column_of(const CsvDialect& dialect, std::size_t field);
 
 }  // namespace stillmass::recording

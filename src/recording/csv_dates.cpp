@@ -16,6 +16,7 @@ namespace stillmass::recording {
 namespace {
 
 constexpr std::int64_t tail_bytes = 64 * 1024;
+constexpr std::size_t rows_for_a_stamp = 20;  // a column without one among so many holds none
 
 std::string cell_at(const std::string& row, std::size_t field, char separator) {
   std::vector<std::string_view> cells;
@@ -58,6 +59,11 @@ void settle_date_order(CsvDialect& dialect, const TextSource& text, const TextOp
       if (known && *known != order) refuse_mixed(cell, text.file().name());
       known = order;
     };
+    const auto stamped = [&](const std::string& row) {
+      return parse_timestamp(cell_at(row, c, dialect.separator)).has_value();
+    };
+    const auto look = static_cast<std::ptrdiff_t>(std::min(dialect.rows.size(), rows_for_a_stamp));
+    if (std::none_of(dialect.rows.begin(), dialect.rows.begin() + look, stamped)) continue;
     for (const std::string& row : dialect.rows) {
       const std::string cell = cell_at(row, c, dialect.separator);
       if (!parse_timestamp(cell) || date_part(cell).empty()) continue;

@@ -238,6 +238,7 @@ CsvDialect recognise_dialect(const TextSource& text, const TextOptions& options)
   }
   refuse_ambiguity(*dialect, options, name);
   settle_date_order(*dialect, text, options);
+  dialect->columns = columns_of(*dialect);
   return *dialect;
 }
 

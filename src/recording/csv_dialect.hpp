@@ -7,6 +7,7 @@
 
 #include "stillmass/recording/text_options.hpp"
 
+#include "recording/csv_column.hpp"
 #include "recording/text_source.hpp"
 #include "recording/timestamp.hpp"
 
@@ -22,6 +23,7 @@ struct CsvDialect {
   std::vector<std::string> header;  ///< the lines above the first row
   std::int64_t data_offset = 0;     ///< of the first row, in the text
   std::vector<std::string> rows;    ///< the first rows, for a look at what they hold
+  std::vector<CsvColumn> columns;   ///< the same by columns
 };
 
 /// What the user says is taken as said, the rest recognised. Throws `Error` (file) where no table of numbers is found,

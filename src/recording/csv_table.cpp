@@ -96,7 +96,7 @@ void place_columns(const CsvDialect& dialect, const std::vector<ColumnLabel>& la
                                       const std::string& where) {
   for (std::size_t c = 0; c < labels.size(); ++c) {
     if (!labels[c].is_time || !dialect.numeric[c]) continue;
-    const CsvColumn column = column_of(dialect, c);
+    const CsvColumn& column = column_of(dialect, c);
     const char* what = !column.moves() ? "stand still" : (column.runs_back() ? "run backwards" : "run back and forth");
     throw base::file_error(where, fmt::format("the times in column {} {}", c + 1, what),
                            "export it with times that go on, or give the sampling rate with --rate HZ");

@@ -82,7 +82,7 @@ TimeUnit unit_of(const CsvColumn& column, const ColumnLabel& label, const OpenOp
 
 bool has_times(const CsvDialect& dialect, const std::vector<ColumnLabel>& labels, std::size_t field) {
   if (!dialect.numeric[field]) return false;
-  const CsvColumn column = column_of(dialect, field);
+  const CsvColumn& column = column_of(dialect, field);
   if (column.values.empty()) return false;
   const bool epoch = field == 0 && !labels[field].unit && column.median_step() > 0.0 && since_1970(column);
   return (labels[field].is_time || column.stamps || epoch) && column.grows();
@@ -108,7 +108,7 @@ std::optional<std::size_t> named_field(const CsvDialect& dialect, const std::vec
 std::optional<std::size_t> counting_field(const CsvDialect& dialect, const std::vector<ColumnLabel>& labels) {
   for (std::size_t c = 0; c < labels.size(); ++c) {
     if (!dialect.numeric[c] || labels[c].unit) continue;
-    const CsvColumn column = column_of(dialect, c);
+    const CsvColumn& column = column_of(dialect, c);
     if ((labels[c].is_counter && column.counts() && !column.turns_back()) || (c == 0 && column.counts_rows())) return c;
   }
   return {};
