@@ -13,6 +13,7 @@
 #include "stillmass/survey/survey_file.hpp"
 
 #include "fuzz/memory_file.hpp"
+#include "recording/sound_recording.hpp"
 #include "support/temporary_folder.hpp"
 
 namespace stillmass::tests {
@@ -70,6 +71,12 @@ std::string check_recording(Bytes bytes) {
   std::string answer = answer_of([&] { check_file(file.path(), {}); });
   if (answer.find("--rate HZ") == std::string::npos) return answer;
   return answer_of([&] { check_file(file.path(), some_rate_hz); });
+}
+
+bool is_sound(Bytes bytes) {
+  constexpr std::size_t looked_at = 4;
+  const Bytes head = bytes.first(std::min(bytes.size(), looked_at));
+  return recording::is_sound(std::string(head.begin(), head.end()));
 }
 
 std::string read_survey_file(Bytes bytes) {

@@ -23,6 +23,10 @@ class BrokenPromise : public std::logic_error {
 /// Returns the error's text; empty where the bytes were taken.
 std::string check_recording(Bytes bytes);
 
+/// Whether the program takes a recording of these bytes for sound: the fuzzers of text and of sound keep to their
+/// kinds.
+bool is_sound(Bytes bytes);
+
 /// What the program does with a survey file of these bytes. Beside it stand recordings named "a.wav" and "b.csv"
 /// (empty: a survey file is read without opening them). Returns and throws as above.
 std::string read_survey_file(Bytes bytes);
