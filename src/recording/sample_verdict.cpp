@@ -90,7 +90,8 @@ class Judge {
     return true;
   }
 
-  bool few_steps() const { return span_ < quality_limit::few_steps * step_; }
+  // Without a change between neighbours nobody knows the step.
+  bool few_steps() const { return std::isfinite(step_) && span_ < quality_limit::few_steps * step_; }
 
   void look_for_few_bits() {
     if (!few_steps()) return;

@@ -306,10 +306,13 @@ Shortened shortened(const std::vector<base::Finding>& findings) {
 }
 
 std::string when(const base::Finding& finding) {
-  const std::string& text = finding.text;
-  const bool names_times =
-      text.ends_with(" s") || text.find(" s ") != std::string::npos || text.find(" s,") != std::string::npos;
-  if (!finding.from_s || names_times) return "";
+  const auto names_time = [&](std::string_view word) {  // "at 8.10 s"
+    const auto at = finding.text.find(word);
+    if (at == std::string::npos || at + word.size() >= finding.text.size()) return false;
+    const char next = finding.text[at + word.size()];
+    return next >= '0' && next <= '9' && finding.text.find(" s", at) != std::string::npos;
+  };
+  if (!finding.from_s || names_time("at ") || names_time("from ") || names_time("after ")) return "";
   if (!finding.to_s || *finding.to_s - *finding.from_s < 0.01) return fmt::format(" at {:.2f} s", *finding.from_s);
   return fmt::format(" from {:.2f} to {:.2f} s", *finding.from_s, *finding.to_s);
 }
