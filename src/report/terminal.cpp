@@ -34,14 +34,16 @@ std::string heading(const recording::Recording& recording) {
 
 std::string bullet(const std::string& text) { return "  - " + wrapped(text, screen - 4, 4) + "\n"; }
 
-std::string finding_lines(const std::vector<base::Finding>& findings) {
+// An assumption has no likely cause.
+std::string finding_lines(const std::vector<base::Finding>& findings, bool with_cause = true) {
   std::string out;
   const Shortened few = shortened(findings);
   for (const base::Finding& each : few.findings) {
     const base::CodeText& code = base::text(each.code);
     const std::string whose = each.channel.empty() ? "" : each.channel + ": ";
-    out += bullet(fmt::format("{}{}{} [{}]; {}", whose, each.text.empty() ? std::string(code.seen) : each.text,
-                              when(each), code.name, code.next_step));
+    const std::string cause = with_cause ? "likely " + std::string(code.likely_cause) + "; " : "";
+    out += bullet(fmt::format("{}{}{} [{}]; {}{}", whose, each.text.empty() ? std::string(code.seen) : each.text,
+                              when(each), code.name, cause, code.next_step));
   }
   for (const std::string& more : few.more) out += bullet("and " + more);
   return out;
@@ -259,7 +261,7 @@ std::string text(const survey::SurveyResult& result) {
   };
   pick(result.findings);
   for (const step::BumpResult& bump : result.bumps) pick(bump.findings);
-  if (!assumed.empty()) out += "\nAssumed:\n" + finding_lines(assumed);
+  if (!assumed.empty()) out += "\nAssumed:\n" + finding_lines(assumed, false);
   out += "\nCaution:\n";
   for (const std::string& each : cautions(result)) out += bullet(each);
   return out;
