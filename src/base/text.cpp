@@ -129,9 +129,12 @@ std::string utf16_to_utf8(std::string_view bytes, bool big_endian) {
 
 std::string printable(std::string_view bytes) {
   std::string out = is_utf8(bytes) ? std::string(bytes) : latin1_to_utf8(bytes);
-  for (char& c : out) {
-    const auto byte = static_cast<unsigned char>(c);
-    if (byte < 0x20 || byte == 0x7F) c = '?';
+  for (std::size_t i = 0; i < out.size(); ++i) {
+    const auto byte = static_cast<unsigned char>(out[i]);
+    if (byte < 0x20 || byte == 0x7F) out[i] = '?';
+    // U+0080 to U+009F are control characters too: C2 80 to C2 9F.
+    const bool is_control = byte == 0xC2 && i + 1 < out.size() && static_cast<unsigned char>(out[i + 1]) < 0xA0;
+    if (is_control) out.replace(i, 2, "?");
   }
   return out;
 }

@@ -42,8 +42,9 @@ std::string finding_lines(const std::vector<base::Finding>& findings, bool with_
     const base::CodeText& code = base::text(each.code);
     const std::string whose = each.channel.empty() ? "" : each.channel + ": ";
     const std::string cause = with_cause ? "likely " + std::string(code.likely_cause) + "; " : "";
-    out += bullet(fmt::format("{}{}{} [{}]; {}{}", whose, each.text.empty() ? std::string(code.seen) : each.text,
-                              when(each), code.name, cause, code.next_step));
+    const std::string seen = each.text.empty() ? std::string(code.seen) : each.text;
+    out += bullet(base::printable(
+        fmt::format("{}{}{} [{}]; {}{}", whose, seen, when(each), code.name, cause, code.next_step)));
   }
   for (const std::string& more : few.more) out += bullet("and " + more);
   return out;
