@@ -21,7 +21,7 @@ HOMES = {
     "fftw3": ["src/spectral/fft.cpp"],
     "sndfile": ["src/recording/sound_reader.cpp", "src/recording/writer.cpp"],
     "toml": ["src/base/settings.cpp"],
-    "nlohmann/": ["src/report/result_json.cpp", "src/report/result_read.cpp"],
+    "nlohmann/": ["src/report/json_parts.hpp", "src/report/result_read.cpp"],
     "CLI/": ["src/cli/"],
     "Eigen/": ["src/numeric/"],
     "unsupported/Eigen": [],
