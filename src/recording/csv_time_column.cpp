@@ -63,8 +63,11 @@ TimeUnit unit_of(const CsvColumn& column, const ColumnLabel& label, const OpenOp
   if (options.rate_hz) {
     if (const auto fitting = by_rate(column, *options.rate_hz)) return *fitting;
   }
-  if (!column.whole_numbers() && !may_be_days(column)) return {1.0, "s, assumed"};
-  if (!column.whole_numbers()) {
+  // Steps of half a second or more may be seconds of a slow logger or milliseconds of a quick one.
+  constexpr double slow_s = 0.45;
+  const bool is_quick = column.median_step() < slow_s;
+  if (!column.whole_numbers() && is_quick && !may_be_days(column)) return {1.0, "s, assumed"};
+  if (!column.whole_numbers() && may_be_days(column)) {
     throw base::usage_error(where, fmt::format("column {} may hold days, as spreadsheets count them", field + 1),
                             "say --time-unit d or --time-unit s; better export it with times in seconds");
   }

@@ -13,6 +13,7 @@ void RunList::add(const Run& run) {
   ++runs;
   samples += run.length();
   longest = std::max(longest, run.length());
+  end = std::max(end, run.end);
 }
 
 void RunList::append(const RunList& later) {
@@ -21,6 +22,7 @@ void RunList::append(const RunList& later) {
   runs += later.runs;
   samples += later.samples;
   longest = std::max(longest, later.longest);
+  end = std::max(end, later.end);
 }
 
 void FlatTops::add(const Run& run) {

@@ -20,13 +20,14 @@ struct Run {
   std::int64_t length() const { return end - begin; }
 };
 
-/// The earliest runs of some kind, as many as are kept, and how many there were.
+/// The earliest runs of some kind, as many as are kept, how many there were and where the last one ends.
 struct RunList {
   static constexpr std::size_t kept = 256;
   std::vector<Run> first;
   std::int64_t runs = 0;
   std::int64_t samples = 0;
   std::int64_t longest = 0;
+  std::int64_t end = 0;
 
   void add(const Run& run);
   void append(const RunList& later);

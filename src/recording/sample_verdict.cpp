@@ -75,8 +75,10 @@ class Judge {
       return f.channel == channel_.name && (f.code == Code::missing_values || f.code == Code::not_a_number);
     });
     if (samples_.missing == 0 || told) return;
-    report(Code::not_a_number, counted(samples_.missing, "sample") + " that are not numbers", samples_.first_missing,
-           samples_.last_missing + 1);
+    report(Code::not_a_number,
+           counted(samples_.missing, "sample") +
+               (samples_.missing == 1 ? " that is not a number" : " that are not numbers"),
+           samples_.first_missing, samples_.last_missing + 1);
   }
 
   bool is_dead() {
@@ -143,7 +145,7 @@ class Judge {
     report(Code::overload,
            fmt::format("{} at {}, {} in all", counted(tops.list.runs, "flat top"), with_unit(extreme),
                        counted(tops.list.samples, "sample")),
-           runs.front().begin, runs.back().end);
+           runs.front().begin, tops.list.end);
     return true;
   }
 

@@ -120,10 +120,13 @@ void apply_settings(std::vector<Channel>& channels, std::span<const ChannelSetti
     if (channel.stored_step) *channel.stored_step *= std::abs(channel.factor);
     if (channel.full_scale) *channel.full_scale *= std::abs(channel.factor);
     if (!channel.unit_known && channel.role != Role::tacho) {
-      base::Finding finding{base::Code::unit_assumed,
-                            fmt::format("nothing says the unit of channel {} ({}); its numbers are taken as {}",
-                                        channel.index, channel.name, channel.unit.name),
-                            channel.name};
+      const bool states_other = channel.name.ends_with(')') || channel.name.ends_with(']');
+      base::Finding finding{
+          base::Code::unit_assumed,
+          fmt::format(fmt::runtime(states_other ? "the unit in its name is none known here; its numbers are taken as {}"
+                                                : "nothing says its unit; its numbers are taken as {}"),
+                      channel.unit.name),
+          channel.name};
       findings.push_back(std::move(finding));
     }
   }

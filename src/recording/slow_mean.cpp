@@ -76,6 +76,21 @@ std::optional<SlowMean::Shift> SlowMean::shift() const {
   const auto far = [&](std::size_t i) {
     return std::abs(mean[i] - last) > std::max(0.1 * std::abs(at_first), 4.0 * scatter);
   };
+  const auto largest =
+      std::max_element(steps.begin(), steps.end(), [](double a, double b) { return std::abs(a) < std::abs(b); });
+  const auto jump = static_cast<std::size_t>(largest - steps.begin());
+  // A column that holds the jump has a mean between those of its neighbours: two steps make it.
+  double jumped = *largest;
+  for (const std::size_t beside : {jump - 1, jump + 1}) {
+    if (beside < steps.size() && steps[beside] * *largest > 0.0 && std::abs(steps[beside]) > 4.0 * scatter) {
+      jumped += steps[beside];
+      break;
+    }
+  }
+  const bool is_jump = std::abs(jumped) > 0.8 * std::abs(at_first);
+  if (jump > 0 && is_jump && std::abs(at_first) > noticed_at_first) {
+    return Shift{Shift::Kind::jumps, jumped, {columns[jump].frames.begin, columns[jump + 1].frames.end}};
+  }
   if (std::abs(at_first) > noticed_at_first) {
     std::size_t settled = 0;
     while (settled < n && far(settled)) ++settled;
@@ -90,11 +105,8 @@ std::optional<SlowMean::Shift> SlowMean::shift() const {
   const double begin = numeric::median({mean.begin(), mean.begin() + static_cast<std::ptrdiff_t>(quarter)});
   const double end = numeric::median({mean.end() - static_cast<std::ptrdiff_t>(quarter), mean.end()});
   if (!(std::abs(end - begin) > noticed)) return std::nullopt;
-  const auto largest =
-      std::max_element(steps.begin(), steps.end(), [](double a, double b) { return std::abs(a) < std::abs(b); });
-  const auto at = static_cast<std::size_t>(largest - steps.begin());
-  if (std::abs(*largest) > 0.6 * std::abs(end - begin)) {
-    return Shift{Shift::Kind::jumps, end - begin, {columns[at].frames.begin, columns[at + 1].frames.end}};
+  if (std::abs(jumped) > 0.6 * std::abs(end - begin)) {
+    return Shift{Shift::Kind::jumps, end - begin, {columns[jump].frames.begin, columns[jump + 1].frames.end}};
   }
   return Shift{Shift::Kind::drifts, end - begin, {columns.front().frames.begin, columns.back().frames.end}};
 }

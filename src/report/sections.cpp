@@ -166,7 +166,9 @@ std::vector<Block> finding_blocks(const std::vector<base::Finding>& findings) {
     std::string text = each.text.empty() ? std::string(code.seen) : each.text;
     text += when(each);
     text += fmt::format(". Likely: {}. Next: {}.", code.likely_cause, code.next_step);
-    for (const std::string& evidence : each.evidence) text += " " + evidence + ".";
+    for (std::size_t i = 0; i < each.evidence.size(); ++i) {
+      text += (i == 0 ? " Seen: " : "; ") + each.evidence[i] + (i + 1 == each.evidence.size() ? "." : "");
+    }
     blocks.emplace_back(Caution{each.strength == base::Strength::weak ? Tone::neutral : Tone::caution,
                                 each.channel.empty() ? "" : each.channel, text});
   }

@@ -49,16 +49,20 @@ Line quality_line(const survey::SurveyResult& result) {
     if (check.verdict == step::Verdict::doubtful) ++doubtful;
   }
   const std::size_t all = result.quality.size();
+  const auto& calibrations = result.calibrations;
+  const bool is_off = !calibrations.findings.empty() || !calibrations.refusals.empty();
+  const std::string off = is_off ? "; a calibration does not fit, see below" : "";
   if (unusable > 0) {
     return {"Recordings",
-            fmt::format("{} of {} have an unusable channel{}; take them again before you leave", unusable, all, named),
+            fmt::format("{} of {} have an unusable channel{}; take them again before you leave{}", unusable, all, named,
+                        off),
             Tone::bad};
   }
   if (doubtful > 0) {
-    return {"Recordings", fmt::format("{} of {} good, {} usable with remarks", all - doubtful, all, doubtful),
+    return {"Recordings", fmt::format("{} of {} good, {} usable with remarks{}", all - doubtful, all, doubtful, off),
             Tone::caution};
   }
-  return {"Recordings", fmt::format("all {} good", all), Tone::good};
+  return {"Recordings", fmt::format("all {} good{}", all, off), is_off ? Tone::caution : Tone::good};
 }
 
 Line severity_line(const survey::SurveyResult& result) {

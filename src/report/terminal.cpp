@@ -43,8 +43,8 @@ std::string finding_lines(const std::vector<base::Finding>& findings, bool with_
     const std::string whose = each.channel.empty() ? "" : each.channel + ": ";
     const std::string cause = with_cause ? "likely " + std::string(code.likely_cause) + "; " : "";
     const std::string seen = each.text.empty() ? std::string(code.seen) : each.text;
-    out += bullet(base::printable(
-        fmt::format("{}{}{} [{}]; {}{}", whose, seen, when(each), code.name, cause, code.next_step)));
+    out += bullet(
+        base::printable(fmt::format("{}{}{} [{}]; {}{}", whose, seen, when(each), code.name, cause, code.next_step)));
   }
   for (const std::string& more : few.more) out += bullet("and " + more);
   return out;

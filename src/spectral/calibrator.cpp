@@ -18,7 +18,7 @@ namespace {
 
 // Common practice, all of them.
 constexpr double as_stated = 0.1;             // a sensor in order is nearer to its certificate than that
-constexpr double recognised = 0.05;           // a ratio so near to a well-known factor is taken for it
+constexpr double recognised = 0.1;            // so far the sensor itself may be off beside a well-known factor
 constexpr double frequency_tolerance = 0.03;  // of a calibrator's frequency
 constexpr double dead_level = 0.01;           // of the level expected
 constexpr double unsteady = 0.05;             // scatter of the level from block to block
@@ -33,8 +33,12 @@ struct KnownFactor {
   const char* text;
 };
 constexpr std::array known_factors = {
-    KnownFactor{base::standard_gravity, "9.81 times too much: a value in m/s2 was taken as one in g"},
-    KnownFactor{1.0 / base::standard_gravity, "9.81 times too little: a value in g was taken as one in m/s2"},
+    KnownFactor{base::standard_gravity,
+                "9.81 times too much: a value in m/s2 was taken as one in g, or the recorder's range is a tenth of "
+                "that stated"},
+    KnownFactor{1.0 / base::standard_gravity,
+                "9.81 times too little: a value in g was taken as one in m/s2, or the recorder's range is ten times "
+                "that stated"},
     KnownFactor{std::numbers::sqrt2, "1.41 times too much: a peak value was taken for r.m.s."},
     KnownFactor{1.0 / std::numbers::sqrt2, "1.41 times too little: an r.m.s. value was taken for a peak"},
     KnownFactor{2.0 * std::numbers::sqrt2, "2.83 times too much: a peak-to-peak value was taken for r.m.s."},
@@ -44,6 +48,21 @@ constexpr std::array known_factors = {
     KnownFactor{1000.0, "1000 times too much: a prefix (milli) was left out"},
     KnownFactor{0.001, "1000 times too little: a prefix (milli) was left out"},
 };
+
+// 0 displacement, 1 velocity, 2 acceleration; nothing for what is no motion.
+std::optional<int> motion_rank(base::Quantity quantity) {
+  if (quantity == base::Quantity::displacement) return 0;
+  if (quantity == base::Quantity::velocity) return 1;
+  if (quantity == base::Quantity::acceleration) return 2;
+  return std::nullopt;
+}
+
+// How often the channel's quantity is the derivative of the calibrator's; 0 where one of them is no motion.
+int integrals_between(base::Quantity of_calibrator, base::Quantity of_channel) {
+  const auto from = motion_rank(of_calibrator);
+  const auto to = motion_rank(of_channel);
+  return from && to ? *to - *from : 0;
+}
 
 base::Refusal no_tone(std::string seen) {
   return {
@@ -80,7 +99,7 @@ std::vector<double> force_level_db(std::span<const HitBlock> hits, double rate_h
 std::string suspicion_of(double ratio) {
   if (std::abs(ratio - 1.0) <= as_stated) return "";
   for (const KnownFactor& factor : known_factors) {
-    if (std::abs(ratio / factor.value - 1.0) <= recognised) return factor.text;
+    if (std::abs(ratio / factor.value - 1.0) <= recognised) return "about " + std::string(factor.text);
   }
   if (ratio < dead_level) return "next to nothing: the sensor is dead or not seated";
   return fmt::format("{} times the level expected, which no usual mix-up explains", base::rounded(ratio, 3));
@@ -112,7 +131,9 @@ base::Answer<Calibration> calibrate(const recording::Reader& reader, recording::
                                     base::rounded(found.front().amplitude_rms.value), unit, tone.frequency_hz));
   }
   // An unstated unit (V, plain numbers) is what the calibration is to find, then the factor carries it to SI.
-  const double ratio = at->amplitude_rms.value / tone.rms;
+  const double expected =
+      tone.rms * std::pow(2.0 * std::numbers::pi * tone.frequency_hz, integrals_between(tone.quantity, quantity));
+  const double ratio = at->amplitude_rms.value / expected;
   // The spread of a line's power is twice that of its level.
   if (at->spread && 0.5 * *at->spread > unsteady) {
     return base::Refusal{"unsteady-tone",
@@ -126,7 +147,7 @@ base::Answer<Calibration> calibrate(const recording::Reader& reader, recording::
   out.measured.quantity = quantity;
   const double relative = std::hypot(at->amplitude_rms.relative().value_or(0.0), tone.relative_u);
   out.correction = {1.0 / ratio, relative / ratio, {}, base::Quantity::ratio};
-  if (quantity == tone.quantity) out.suspicion = suspicion_of(ratio);
+  if (motion_rank(quantity)) out.suspicion = suspicion_of(ratio);
   return out;
 }
 

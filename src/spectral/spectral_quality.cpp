@@ -25,6 +25,7 @@ constexpr int hum_comb = 3;
 constexpr int hum_harmonics = 9;             // looked at up to this one
 constexpr double hum_tolerance = 0.004;      // relative; a supply stays within 0.2 Hz of 50 Hz
 constexpr double slope_fall = 4.0;           // density over an octave: steeper than 6 dB
+constexpr double slope_spread = 0.4;         // of the blocks' densities on it: near 0 for a tone, 1 for noise
 constexpr double slope_share = 0.5;          // of the integrated mean square that lies on the slope
 constexpr double top_band = 0.1;             // of the range below rate/2, seen for roll-off
 constexpr double no_roll_off = 0.5;          // density of the top over that of the range below it
@@ -217,6 +218,13 @@ std::optional<double> slope_end_hz(const Spectrum& s) {
     end *= 2.0;
   }
   if (end < 4.0 * start) return std::nullopt;
+  // A steady tone among the lowest lines is a slow machine's, not a slope.
+  const auto line = [&](double f) { return static_cast<std::size_t>(std::lround(f / s.line_hz)); };
+  if (s.spread.size() > line(end)) {
+    std::vector<double> spread(s.spread.begin() + static_cast<std::ptrdiff_t>(line(start)),
+                               s.spread.begin() + static_cast<std::ptrdiff_t>(line(2.0 * start) + 1));
+    if (numeric::median(std::move(spread)) < slope_spread) return std::nullopt;
+  }
   const Spectrum velocity = as_quantity(s, base::Quantity::velocity);
   const double on_slope = band_rms(velocity, {start, end}).value;
   const double all = band_rms(velocity, {start, top}).value;
@@ -228,8 +236,9 @@ std::vector<Finding> spectral_findings(const Spectrum& spectrum, const recording
                                        std::optional<double> line_frequency_hz) {
   std::vector<Finding> findings;
   const bool is_usable = spectrum.blocks > 0 && spectrum.averaging == Averaging::mean && spectrum.density.size() > 32;
-  if (!is_usable || channel.role == recording::Role::tacho || !(mean_square_above_zero(spectrum) > 0.0))
-    return findings;
+  if (!is_usable || channel.role == recording::Role::tacho) return findings;
+  const double all = mean_square_above_zero(spectrum);
+  if (!(all > 0.0) || !std::isfinite(all)) return findings;
   const auto add = [&](std::optional<Finding> found) {
     if (found) findings.push_back(std::move(*found));
   };

@@ -197,12 +197,12 @@ void judge_tachos(std::span<ChannelCheck> channels, const recording::Reader& rea
   }
   for (ChannelCheck& each : channels) {
     if (each.channel.role != Role::vibration || !each.quality.looks_like_pulses) continue;
-    std::string text = "'" + each.channel.name + "' is stated as vibration and jumps between two levels like a tacho";
+    std::string text = "'" + each.channel.name + "' is taken as vibration and jumps between two levels like a tacho";
     if (!lonely.empty()) text += ", while the tacho channel '" + lonely.front()->channel.name + "' does not";
     for (ChannelCheck* tacho : lonely) {
       tacho->findings.push_back({Code::channels_swapped,
                                  "'" + tacho->channel.name + "' does not look like a tacho, but '" + each.channel.name +
-                                     "', stated as vibration, does",
+                                     "', taken as vibration, does",
                                  tacho->channel.name});
     }
     each.findings.push_back({Code::channels_swapped,
@@ -229,7 +229,7 @@ void judge_units(std::span<ChannelCheck> channels, std::span<const spectral::Spe
     ChannelCheck& each = channels[c];
     const bool is_dead = std::any_of(each.findings.begin(), each.findings.end(),
                                      [](const Finding& f) { return f.code == Code::no_signal; });
-    if (each.channel.role != Role::vibration || !each.channel.unit_known || is_dead) continue;
+    if (each.channel.role != Role::vibration || is_dead) continue;
     const bool has_spectrum = c < spectra.size() && !spectra[c].density.empty();
     look_at_gravity(each);
     look_at_level(each, has_spectrum ? &spectra[c] : nullptr);

@@ -16,6 +16,17 @@ namespace {
 using base::Code;
 using base::Finding;
 
+constexpr double most_missing = 0.2;  // of the samples; with more the channel is unusable (common practice)
+
+// Spikes, cut-off tops and steps are wide in frequency: they, not a lacking filter, fill the top of the spectrum.
+void blame_the_cause(std::vector<Finding>& findings) {
+  const bool is_wide = std::any_of(findings.begin(), findings.end(), [](const Finding& each) {
+    return each.code == Code::spikes || each.code == Code::clipped || each.code == Code::overload ||
+           each.code == Code::dropout || each.code == Code::near_noise_floor || each.code == Code::few_bits;
+  });
+  if (is_wide) std::erase_if(findings, [](const Finding& each) { return each.code == Code::aliasing_suspected; });
+}
+
 Verdict worst(const std::vector<Finding>& findings, recording::Role role) {
   Verdict verdict = Verdict::good;
   for (const Finding& finding : findings) verdict = std::max(verdict, weight(finding, role));
@@ -88,7 +99,14 @@ CheckResult check(const recording::Reader& reader, const CheckRequest& request, 
   judge_tachos(result.channels, reader, result.range, request, context);
   judge_likeness(result.channels, result.spectra);
   judge_units(result.channels, result.spectra);
-  for (ChannelCheck& each : result.channels) each.verdict = worst(each.findings, each.channel.role);
+  for (ChannelCheck& each : result.channels) {
+    blame_the_cause(each.findings);
+    each.verdict = worst(each.findings, each.channel.role);
+    const recording::ChannelQuality& quality = each.quality;
+    if (static_cast<double>(quality.missing) > most_missing * static_cast<double>(quality.missing + quality.samples)) {
+      each.verdict = Verdict::unusable;
+    }
+  }
   for (const Finding& finding : result.recording.findings) {
     const auto owner = std::find_if(result.channels.begin(), result.channels.end(), [&](const ChannelCheck& each) {
       return !finding.channel.empty() && each.channel.name == finding.channel;

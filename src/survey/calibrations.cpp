@@ -7,6 +7,7 @@
 
 #include "stillmass/base/number.hpp"
 #include "stillmass/modal/hits.hpp"
+#include "stillmass/recording/sample_quality.hpp"
 #include "stillmass/step/part.hpp"
 
 namespace stillmass::survey {
@@ -85,7 +86,15 @@ class Calibrator {
       if (channel.role != Role::vibration) continue;
       const ChannelSetting* setting = setting_of(of, channel.index);
       if (setting == nullptr && recording.channels.size() > 1 && !of.open.channels.empty()) continue;
-      if (channel.unit.quantity != of.calibrator.quantity && !is_recorder_unit(channel)) continue;
+      const bool is_motion = channel.unit.quantity == Quantity::acceleration ||
+                             channel.unit.quantity == Quantity::velocity ||
+                             channel.unit.quantity == Quantity::displacement;
+      if (!is_motion && !is_recorder_unit(channel)) continue;
+      if (cut_off(*reader, part(*reader, of), c)) {
+        refusals.push_back({"no-calibrator-tone", "'" + channel.name + "' is cut off at the end of its range",
+                            "record the calibrator again with a larger range"});
+        continue;
+      }
       const auto answer = spectral::calibrate(*reader, part(*reader, of), c, of.calibrator, context_);
       if (!answer) {
         refusals.push_back(answer.refusal());
@@ -103,6 +112,14 @@ class Calibrator {
     }
   }
 
+  // A level that the recorder has cut off is none.
+  bool cut_off(const recording::Reader& reader, recording::FrameRange range, std::size_t channel) const {
+    const auto quality = recording::sample_quality(reader, range, context_);
+    return std::any_of(quality[channel].findings.begin(), quality[channel].findings.end(), [](const base::Finding& f) {
+      return f.code == base::Code::clipped || f.code == base::Code::overload;
+    });
+  }
+
   void take(std::size_t i, const recording::Channel& channel, const spectral::Calibration& result, bool is_stated,
             std::optional<base::Unit> unit) {
     ChannelCalibration& one = add(i, channel, result);
@@ -113,15 +130,38 @@ class Calibrator {
                               base::rounded(result.frequency_hz, 4) + " Hz";
     if (!one.applied) {
       one.text = fmt::format("{}: '{}' shows {}, {}", file(i), channel.name, level, result.suspicion);
-      out_.findings.push_back(
-          {base::Code::calibration_off,
-           one.text + "; its factor was left as stated (" + base::rounded(factor, 4) + " times it would fit)",
-           channel.name});
+      out_.findings.push_back({base::Code::calibration_off,
+                               one.text + "; its factor was left as stated (" + base::rounded(factor, 4) +
+                                   " times it would fit), with an uncertainty as large as that",
+                               channel.name});
+      apply(i, channel.index, doubted(result));
       return;
     }
-    one.text = fmt::format("{}: '{}' shows {}; its factor is multiplied by {} +- {}", file(i), channel.name, level,
-                           base::rounded(factor, 4), percent(*result.correction.relative()));
-    apply(i, channel.index, {factor, *result.correction.relative(), unit});
+    const std::string u = percent(*result.correction.relative());
+    const std::string does = unit ? fmt::format("1 {} is {} {} +- {}", channel.unit.name,
+                                                base::rounded(factor * channel.unit.to_si, 4), unit->name, u)
+                                  : fmt::format("its factor is multiplied by {} +- {}", base::rounded(factor, 4), u);
+    one.text = fmt::format("{}: '{}' shows {}; {}", file(i), channel.name, level, does);
+    if (!apply(i, channel.index, {factor, *result.correction.relative(), unit})) say_unused(one);
+  }
+
+  // What a calibration contradicts is as uncertain as the contradiction is large.
+  static Correction doubted(const spectral::Calibration& result) {
+    const double factor = result.correction.value;
+    return {1.0, std::max(std::abs(factor - 1.0), std::abs(1.0 / factor - 1.0)), {}};
+  }
+
+  void say_unused(ChannelCalibration& one) {
+    one.applied = false;
+    one.text += "; no other recording has this sensor";
+    out_.findings.push_back({base::Code::calibration_off,
+                             file(one.recording) + ": no other recording has the sensor of channel " +
+                                 std::to_string(one.index) + (one.sensor.empty() ? "" : " ('" + one.sensor + "')") +
+                                 "; nothing is corrected by it",
+                             one.channel,
+                             {},
+                             {},
+                             base::Strength::fair});
   }
 
   ChannelCalibration& add(std::size_t i, const recording::Channel& channel, const spectral::Calibration& result) {
@@ -134,16 +174,18 @@ class Calibrator {
     return one;
   }
 
-  // To the same sensor in every other recording.
-  void apply(std::size_t from, int index, const Correction& correction) {
+  // To the same sensor in every other recording; false where there is none.
+  bool apply(std::size_t from, int index, const Correction& correction) {
     ChannelSetting source;
     source.index = index;
     if (const ChannelSetting* setting = setting_of(survey_.recordings[from], index)) source = *setting;
+    bool applied = false;
     for (std::size_t i = 0; i < survey_.recordings.size(); ++i) {
       SurveyRecording& target = survey_.recordings[i];
       if (i == from || target.kind == Kind::calibration) continue;
       for (ChannelSetting& setting : target.open.channels) {
         if (setting.role == Role::tacho || !same_sensor(source, setting)) continue;
+        applied = true;  // or said below
         if (!same_factor(source, setting)) {
           out_.findings.push_back({base::Code::calibration_off,
                                    fmt::format("{}: channel {} states another unit, scale or sensitivity than in the "
@@ -155,14 +197,31 @@ class Calibrator {
                                    base::Strength::fair});
           continue;
         }
-        Correction both = correction;
-        if (setting.correction) {
-          both.factor *= setting.correction->factor;
-          both.unit = setting.correction->unit;
-        }
-        setting.correction = both;
+        setting.correction = setting.correction ? joined(*setting.correction, correction, from, setting) : correction;
       }
     }
+    return applied;
+  }
+
+  // Two calibrations of one sensor, say before and after the visit: their mean, and half their difference where that is
+  // more than their uncertainty. They share the calibrator, so the mean is no surer than one of them.
+  Correction joined(const Correction& first, const Correction& second, std::size_t from,
+                    const ChannelSetting& setting) {
+    Correction both = first;
+    both.factor = 0.5 * (first.factor + second.factor);
+    const double apart = std::abs(second.factor / first.factor - 1.0);
+    both.relative_u = std::max({first.relative_u, second.relative_u, 0.5 * apart});
+    if (apart > 2.0 * std::max(first.relative_u, second.relative_u)) {
+      std::string text = fmt::format("{}: the calibrations of channel {} differ by {}; their mean is used", file(from),
+                                     setting.index, percent(apart));
+      const bool is_told = std::any_of(out_.findings.begin(), out_.findings.end(),
+                                       [&](const base::Finding& each) { return each.text == text; });
+      if (!is_told) {
+        out_.findings.push_back(
+            {base::Code::calibration_off, std::move(text), setting.name.value_or(""), {}, {}, base::Strength::fair});
+      }
+    }
+    return both;
   }
 
   void on_mass(std::size_t i) {
@@ -209,8 +268,10 @@ class Calibrator {
                                          base::rounded(ratio, 4), answer->band_hz.lo, answer->band_hz.hi);
     if (!one.applied) {
       one.text = seen + ", " + answer->suspicion;
-      out_.findings.push_back(
-          {base::Code::calibration_off, one.text + "; hammer and sensor were left as stated", force->name});
+      out_.findings.push_back({base::Code::calibration_off,
+                               one.text + "; both were left as stated, with an uncertainty as large as that",
+                               force->name});
+      apply(i, force->index, doubted(*answer));
       return;
     }
     one.text = fmt::format("{}; the hammer's factor is multiplied by {} +- {}", seen, base::rounded(ratio, 4),
@@ -228,7 +289,7 @@ class Calibrator {
     }
     const int response_index = response->index;
     const std::optional<double> response_u = response->factor_u;
-    apply(i, force->index, {ratio, relative, {}});
+    if (!apply(i, force->index, {ratio, relative, {}})) return say_unused(one);
     share_uncertainty(i, response_index, response_u.value_or(assumed_u));
   }
 

@@ -90,7 +90,8 @@ TEST_CASE("texts of any origin become printable UTF-8") {
   CHECK(latin1_to_utf8("\xB5m") == "\xC2\xB5m");
   CHECK(utf16_to_utf8(std::string_view("\xFF\xFE\x41\x00\x3D\xD8\x00\xDE", 8), false) == "A\xF0\x9F\x98\x80");
   CHECK(printable("a\nb\xE9") == "a?b\xC3\xA9");
-  CHECK(printable("a\xC2\x9B" "31mb") == "a?31mb");  // U+009B begins a terminal's control sequence
+  CHECK(printable("a\xC2\x9B"
+                  "31mb") == "a?31mb");  // U+009B begins a terminal's control sequence
   CHECK(safe_file_name("../etc/x y") == "-..-etc-x-y");
   CHECK(safe_file_name("") == "-");
 }

@@ -51,7 +51,7 @@ const std::vector<Sample>& samples() {
        {{0.0015, 0.0025, -0.0035}},
        "semicolon, decimal comma"},
       {"tab, carriage returns, trailing tabs",
-       "Time\tF [N]\t\r\n0.0\t 1\t\r\n0.5\t+2\t\r\n1.0\t 3e1\t\r\n",
+       "Time [s]\tF [N]\t\r\n0.0\t 1\t\r\n0.5\t+2\t\r\n1.0\t 3e1\t\r\n",
        2,
        {"F"},
        {"N"},

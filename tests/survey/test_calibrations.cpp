@@ -39,8 +39,9 @@ class Visit {
   }
 
   void add_calibrator(double rms = 10.0, double frequency_hz = 159.155) {
-    recording::write_wav(folder_ / "cal.wav", {rate, {"a"}, {stored(tone(rms * std::sqrt(2.0), frequency_hz))}}, 24);
-    recordings_ += entry("cal.wav", "calibration", "");
+    const std::string file = "cal" + std::to_string(++calibrators_) + ".wav";
+    recording::write_wav(folder_ / file, {rate, {"a"}, {stored(tone(rms * std::sqrt(2.0), frequency_hz))}}, 24);
+    recordings_ += entry(file, "calibration", calibrator);
   }
 
   std::string entry(const std::string& file, const std::string& kind, const std::string& more) const {
@@ -55,6 +56,7 @@ class Visit {
   }
 
   std::string channel = "unit = \"m/s2\"\nscale = 50";
+  std::string calibrator;
 
  private:
   std::vector<double> stored(std::vector<double> x) const {
@@ -64,6 +66,7 @@ class Visit {
 
   TemporaryFolder folder_;
   double truth_;
+  int calibrators_ = 0;
   std::string recordings_;
 };
 
@@ -99,6 +102,7 @@ TEST_CASE("a factor of 9.81 between stated and measured level is said, and the u
   CHECK(has(result.findings, base::Code::calibration_off));
   CHECK(result.calibrations.channels[0].text.find("9.81 times too little") != std::string::npos);
   CHECK(velocity(result).value == Approx(0.005 / base::standard_gravity).epsilon(3e-3));  // as stated
+  CHECK(*velocity(result).relative() > 8.0);  // and so uncertain that the truth lies within
 }
 
 TEST_CASE("a recorder whose scale nobody knows gets it from the calibrator") {
@@ -114,6 +118,44 @@ TEST_CASE("a recorder whose scale nobody knows gets it from the calibrator") {
   }
 }
 
+TEST_CASE(
+    "calibrations before and after the visit give their mean, not their product, and one of nobody corrects nothing") {
+  Visit visit(0.95);
+  visit.add_calibrator();
+  visit.add_calibrator();
+  const auto twice = visit.run();
+  CHECK(velocity(twice).value == Approx(0.005).epsilon(3e-3));
+  CHECK(*velocity(twice).relative() < 0.02);
+  CHECK_FALSE(has(twice.findings, base::Code::calibration_off));
+
+  Visit other(0.95);
+  other.channel = "unit = \"m/s2\"\nscale = 50\nsensor = \"red\"";
+  other.add_calibrator();
+  other.channel = "unit = \"m/s2\"\nscale = 50";
+  const auto unused = other.run();
+  CHECK_FALSE(unused.calibrations.channels[0].applied);
+  CHECK(has(unused.findings, base::Code::calibration_off));
+}
+
+TEST_CASE("a calibrator whose level is stated as velocity calibrates an accelerometer") {
+  // 10 m/s2 at 1000 rad/s are 10 mm/s (CHECKS C1).
+  Visit visit(0.95);
+  visit.calibrator = "calibrator = { level = 10, unit = \"mm/s\", frequency_hz = 159.155 }\n";
+  visit.add_calibrator();
+  const auto result = visit.run();
+  REQUIRE(result.calibrations.channels.size() == 1);
+  CHECK(result.calibrations.channels[0].result.correction.value == Approx(1.0 / 0.95).epsilon(1e-3));
+}
+
+TEST_CASE("a calibrator that the recorder has cut off calibrates nothing") {
+  Visit visit(1.0);
+  visit.add_calibrator(40.0);  // a peak of 57 m/s2 in a range of 50
+  const auto result = visit.run();
+  CHECK(result.calibrations.channels.empty());
+  REQUIRE_FALSE(result.refusals.empty());
+  CHECK(result.refusals[0].seen.find("cut off") != std::string::npos);
+}
+
 TEST_CASE("a dead sensor on the calibrator is refused with what to do, and nothing is corrected") {
   Visit visit(1.0);
   visit.add_calibrator(0.0);
@@ -121,7 +163,7 @@ TEST_CASE("a dead sensor on the calibrator is refused with what to do, and nothi
   CHECK(result.calibrations.channels.empty());
   REQUIRE(result.refusals.size() >= 1);
   CHECK(result.refusals[0].code == "no-calibrator-tone");
-  CHECK(result.refusals[0].seen.find("cal.wav") != std::string::npos);
+  CHECK(result.refusals[0].seen.find("cal1.wav") != std::string::npos);
   CHECK(velocity(result).value == Approx(0.005).epsilon(3e-3));
 }
 

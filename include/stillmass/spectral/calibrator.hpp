@@ -21,7 +21,7 @@ namespace stillmass::spectral {
 /// 1000 rad/s and 10 m/s2 r.m.s., known to 3 % at twice the standard uncertainty (common practice).
 struct CalibratorTone {
   double frequency_hz = 1000.0 / (2.0 * std::numbers::pi);
-  double rms = 10.0;  ///< SI unit of the quantity
+  double rms = 10.0;  ///< SI unit of the quantity; taken to that of the channel at the frequency, where it is another
   base::Quantity quantity = base::Quantity::acceleration;
   double relative_u = 0.015;  ///< standard uncertainty of the level
 };
@@ -64,7 +64,8 @@ base::Answer<Calibration> calibrate_on_mass(std::span<const HitBlock> hits, doub
                                             const HitWindows& windows);
 
 /// What a measured level that is `ratio` times the expected one looks like; empty within 10 % of 1.
-/// The list: dead, 9.80665 and its inverse, sqrt 2 (peak for r.m.s.), 2 sqrt 2 (peak-to-peak), 25.4, 1000.
+/// The list, each within 10 %: dead, 9.80665 and its inverse, sqrt 2 (peak for r.m.s.), 2 sqrt 2 (peak-to-peak), 25.4,
+/// 1000.
 std::string suspicion_of(double ratio);
 
 }  // namespace stillmass::spectral

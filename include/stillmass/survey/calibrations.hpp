@@ -19,7 +19,7 @@ struct ChannelCalibration {
   std::string channel;        ///< its name
   std::string sensor;         ///< may be empty
   spectral::Calibration result;
-  bool applied = false;  ///< false: the level is so far from what the channel states that the user must decide
+  bool applied = false;  ///< false: too far from what the channel states, or no other recording has the sensor
   std::string text;      ///< one sentence: what was found and what was done with it
 };
 
