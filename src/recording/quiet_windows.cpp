@@ -45,14 +45,22 @@ bool QuietWindows::quieter(const Window& a, const Window& b) {
   return a.span() != b.span() ? a.span() < b.span() : a.number < b.number;
 }
 
+bool QuietWindows::louder(const Window& a, const Window& b) {
+  return a.span() != b.span() ? a.span() > b.span() : a.number < b.number;
+}
+
 void QuietWindows::sort_in(const Window& window) {
   ++windows_;
   const double span = window.span();
   const int bin = span > 0.0 ? static_cast<int>(std::floor(4.0 * std::log2(span))) + quarters / 2 : 0;
   ++spans_[static_cast<std::size_t>(std::clamp(bin, 0, quarters - 1))];
-  if (quietest_.size() == kept && !quieter(window, quietest_.back())) return;
-  quietest_.insert(std::upper_bound(quietest_.begin(), quietest_.end(), window, quieter), window);
-  if (quietest_.size() > kept) quietest_.pop_back();
+  const auto keep = [&](std::vector<Window>& all, auto before) {
+    if (all.size() == kept && !before(window, all.back())) return;
+    all.insert(std::upper_bound(all.begin(), all.end(), window, before), window);
+    if (all.size() > kept) all.pop_back();
+  };
+  keep(quietest_, quieter);
+  keep(loudest_, louder);
 }
 
 void QuietWindows::merge(const QuietWindows& later) {
@@ -61,9 +69,13 @@ void QuietWindows::merge(const QuietWindows& later) {
     *this = later;
     return;
   }
-  quietest_.insert(quietest_.end(), later.quietest_.begin(), later.quietest_.end());
-  std::sort(quietest_.begin(), quietest_.end(), quieter);
-  if (quietest_.size() > kept) quietest_.resize(kept);
+  const auto join = [](std::vector<Window>& all, const std::vector<Window>& more, auto before) {
+    all.insert(all.end(), more.begin(), more.end());
+    std::sort(all.begin(), all.end(), before);
+    if (all.size() > kept) all.resize(kept);
+  };
+  join(quietest_, later.quietest_, quieter);
+  join(loudest_, later.loudest_, louder);
   for (std::size_t bin = 0; bin < spans_.size(); ++bin) spans_[bin] += later.spans_[bin];
   windows_ += later.windows_;
   for (const auto& window : {later.head_, later.tail_}) {
@@ -87,6 +99,19 @@ double QuietWindows::span_quantile(double probability) const {
   return 0.0;
 }
 
+std::vector<FrameRange> QuietWindows::runs(std::vector<std::int64_t> numbers, std::size_t least,
+                                           std::size_t most) const {
+  std::sort(numbers.begin(), numbers.end());
+  std::vector<FrameRange> found;
+  for (std::size_t i = 0; i < numbers.size();) {
+    std::size_t end = i + 1;
+    while (end < numbers.size() && numbers[end] == numbers[end - 1] + 1) ++end;
+    if (end - i >= least && end - i <= most) found.push_back({numbers[i] * frames_, (numbers[end - 1] + 1) * frames_});
+    i = end;
+  }
+  return found;
+}
+
 std::vector<FrameRange> QuietWindows::gaps() const {
   if (windows_ < quality_limit::quiet_windows) return {};
   const double usual = span_quantile(0.5);
@@ -95,15 +120,21 @@ std::vector<FrameRange> QuietWindows::gaps() const {
   for (const Window& window : quietest_) {
     if (window.span() < quality_limit::quiet_share * usual) quiet.push_back(window.number);
   }
-  std::sort(quiet.begin(), quiet.end());
-  std::vector<FrameRange> gaps;
-  for (std::size_t i = 0; i < quiet.size();) {
-    std::size_t end = i + 1;
-    while (end < quiet.size() && quiet[end] == quiet[end - 1] + 1) ++end;
-    if (end - i >= 2) gaps.push_back({quiet[i] * frames_, (quiet[end - 1] + 1) * frames_});
-    i = end;
+  return runs(std::move(quiet), 2, kept);
+}
+
+std::vector<FrameRange> QuietWindows::bursts() const {
+  if (windows_ < quality_limit::quiet_windows) return {};
+  const double usual = span_quantile(0.5);
+  const double high = span_quantile(0.9);
+  if (span_quantile(0.25) < quality_limit::quiet_steady * usual || high > quality_limit::burst_steady * usual)
+    return {};
+  std::vector<std::int64_t> loud;
+  for (const Window& window : loudest_) {
+    if (window.span() > quality_limit::burst_ratio * high) loud.push_back(window.number);
   }
-  return gaps;
+  if (loud.size() == kept) return {};  // so many are no exception
+  return runs(std::move(loud), 1, 2);
 }
 
 }  // namespace stillmass::recording

@@ -33,7 +33,7 @@ class Judge {
     take_numbers();
     if (is_dead()) return quality_;
     quality_.looks_like_pulses = samples_.levels.has_two_levels();
-    if (channel_.role == Role::tacho) return quality_;
+    if (channel_.role == Role::tacho || !is_vibration_or_force()) return quality_;
     look_for_clipping();
     look_for_few_bits();
     if (channel_.role == Role::force) return quality_;
@@ -79,6 +79,21 @@ class Judge {
            counted(samples_.missing, "sample") +
                (samples_.missing == 1 ? " that is not a number" : " that are not numbers"),
            samples_.first_missing, samples_.last_missing + 1);
+  }
+
+  // A column of speeds or temperatures beside the vibration is no signal to be judged.
+  bool is_vibration_or_force() const {
+    switch (channel_.unit.quantity) {
+      case base::Quantity::acceleration:
+      case base::Quantity::velocity:
+      case base::Quantity::displacement:
+      case base::Quantity::force:
+      case base::Quantity::voltage:
+      case base::Quantity::ratio:
+        return true;
+      default:
+        return false;
+    }
   }
 
   bool is_dead() {
@@ -226,7 +241,10 @@ class Judge {
     for (const Spike& spike : samples_.spikes.largest) {
       if (spike.distance > quality_limit::spike_rms * *quality_.rms) found.push_back(spike);
     }
-    if (found.empty()) return;
+    if (found.empty()) {
+      look_for_bursts();
+      return;
+    }
     const double largest = found.front().distance;
     std::sort(found.begin(), found.end(), [](const Spike& a, const Spike& b) { return a.frame < b.frame; });
     report(
@@ -234,6 +252,20 @@ class Judge {
         fmt::format("{}{} far off their neighbours, by {} at most", found.size() == SpikeList::kept ? "at least " : "",
                     counted(std::ssize(found), "single sample"), with_unit(largest)),
         found.front().frame, found.back().frame + 1);
+  }
+
+  // Interference that the recorder's filter has made longer than one sample.
+  void look_for_bursts() {
+    if (few_steps() || quality_.looks_like_pulses) return;
+    std::vector<Run> found;
+    for (const FrameRange& burst : samples_.windows.bursts()) found.push_back({burst.begin, burst.end, 0, 0.0});
+    if (found.empty()) return;
+    auto& finding =
+        report(Code::spikes,
+               fmt::format("{} far above the swing of the steady signal", counted(std::ssize(found), "short burst")),
+               found.front().begin, found.back().end);
+    finding.strength = base::Strength::fair;
+    list_places(found, finding);
   }
 
   void look_for_shift() {

@@ -39,12 +39,19 @@ std::optional<base::Estimate> with_calibration(std::optional<base::Estimate> lev
   return level;
 }
 
-// The level in a band cut to what the spectrum holds; nothing where they do not meet.
-std::optional<base::Estimate> level(const spectral::Spectrum& spectrum, Interval band) {
+// The part of a band that the spectrum holds; nothing where they do not meet.
+std::optional<Interval> held(const spectral::Spectrum& spectrum, Interval band) {
   if (spectrum.density.empty()) return {};
   const Interval given{spectrum.frequency(spectrum.first_line), spectrum.rate_hz / 2.0};
   if (!band.intersects(given) || given.lo >= given.hi) return {};
-  return spectral::band_rms(spectrum, {std::max(band.lo, given.lo), std::min(band.hi, given.hi)});
+  return Interval{std::max(band.lo, given.lo), std::min(band.hi, given.hi)};
+}
+
+// The level in that part.
+std::optional<base::Estimate> level(const spectral::Spectrum& spectrum, Interval band) {
+  const auto part = held(spectrum, band);
+  if (!part) return {};
+  return spectral::band_rms(spectrum, *part);
 }
 
 base::Answer<Severity> severity_of(const ChannelSpectrum& channel, const SpectrumRequest& request,
@@ -134,6 +141,7 @@ SpectrumResult spectrum(const recording::Reader& reader, const SpectrumRequest& 
     each.shown = in_quantity(spectra[c], request.quantity.value_or(Quantity::velocity));
     each.band_hz = request.band_hz.value_or(standard_band(request.site));
     each.overall = with_calibration(level(each.shown, each.band_hz), channel);
+    each.band_hz = held(each.shown, each.band_hz).value_or(each.band_hz);  // what was summed, and no more, is stated
     if (spectra[c].density.empty()) {
       each.findings.push_back({base::Code::missing_values, "no block of valid samples in the part used", channel.name});
     } else if (channel.role == recording::Role::vibration) {

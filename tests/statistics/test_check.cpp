@@ -199,6 +199,25 @@ TEST_CASE("spikes are found with their time") {
   }
 }
 
+TEST_CASE("interference that a filter has made a few samples long is found with its time") {
+  for (const double size : {15.0, 50.0}) {
+    const auto found = found_in(Code::spikes, [&](SiteSignal& signal, std::uint64_t) {
+      const double height = size * signal.rms();
+      for (const double part : {0.2, 0.55, 0.8}) {
+        const auto at = static_cast<std::size_t>(part * static_cast<double>(signal.samples.size()));
+        for (int i = 0; i < 6; ++i) {  // a decaying ringing, as of a steep filter
+          signal.samples[at + static_cast<std::size_t>(i)] += height * std::cos(1.9 * i) * std::exp(-0.5 * i);
+        }
+      }
+      signal.range += height;
+      return Span{0.19 * seconds(signal), 0.81 * seconds(signal)};
+    });
+    INFO(size << " times the r.m.s. value, missed:" << found.missed);
+    CHECK(found.found >= 17);  // a run of resonance can hide them
+    CHECK(found.timed == found.found);
+  }
+}
+
 TEST_CASE("hum of the mains is found by its harmonics") {
   for (const double share : {0.35, 0.7, 1.4}) {  // r.m.s., of the signal's
     const auto found = found_in(Code::mains_hum, [&](SiteSignal& signal, std::uint64_t seed) {

@@ -57,6 +57,10 @@ inline constexpr std::int64_t quiet_windows = 25;  ///< fewer than that tell not
 inline constexpr double quiet_steady = 0.4;  ///< lower quartile of their peak-to-peak values, of the median: steady
 inline constexpr double quiet_share = 0.02;  ///< two windows in a row below that share of the median: a dropout
 
+inline constexpr double burst_steady =
+    2.0;  ///< 90th percentile of the windows, of their median: steady enough for bursts
+inline constexpr double burst_ratio = 2.5;  ///< single windows so far above that percentile: interference, a knock
+
 // Settling and drift of the mean.
 inline constexpr double drift_seconds = 0.5;     ///< least length of the columns whose means are compared
 inline constexpr std::size_t drift_columns = 8;  ///< fewer than that tell nothing

@@ -48,7 +48,7 @@ struct ChannelSpectrum {
   recording::Channel channel;
   spectral::Spectrum measured;
   spectral::Spectrum shown;                         ///< in the quantity asked for
-  base::Interval band_hz;                           ///< of the overall level
+  base::Interval band_hz;                           ///< of the overall level: the part that the spectrum holds
   std::optional<base::Estimate> overall;            ///< r.m.s., SI; absent where the band cannot be given
   std::optional<base::Estimate> severity_velocity;  ///< r.m.s. velocity in the standard's band
   std::vector<SpectralPeak> peaks;                  ///< strongest first
