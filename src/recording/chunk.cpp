@@ -7,7 +7,8 @@ namespace stillmass::recording {
 void Chunk::resize(std::size_t channel_count, std::size_t count) {
   frames = count;
   if (count > capacity_ || channel_count * capacity_ != samples_.size()) {
-    capacity_ = std::max<std::size_t>(count, 1);
+    // Five cache lines more, so that channels do not begin at the same place of the processor's caches.
+    capacity_ = count + 40;
     samples_.resize(channel_count * capacity_);
   }
 }

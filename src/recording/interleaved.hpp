@@ -17,16 +17,20 @@ class Interleaved {
 
   /// Reads frames, at most `most_frames` of them. Returns how many there were.
   std::int64_t read(SoundReader& sound, std::int64_t frames);
-  /// out[i] = factor * sample + offset, of channel c of the frames read (full scale 1.0).
-  void channel(std::size_t c, double factor, double offset, std::span<double> out) const;
-  /// True where no sample read is infinite or not a number.
-  bool all_finite() const { return all_finite_; }
+  /// What a channel's samples (full scale 1.0) become, and where they go: out[i] = factor * sample + offset.
+  struct Target {
+    double factor = 1.0;
+    double offset = 0.0;
+    double* out = nullptr;
+  };
+  /// Hands the first `frames` of the frames read to the targets, one a channel. False where one of these samples is
+  /// infinite or not a number.
+  bool to(std::span<const Target> targets, std::size_t frames) const;
 
   static constexpr std::size_t most_frames = 512;  ///< they stay in the processor's nearest cache
 
  private:
   std::size_t channels_;
-  bool all_finite_ = true;
   std::variant<std::vector<std::int32_t>, std::vector<float>, std::vector<double>> samples_;
 };
 

@@ -55,7 +55,7 @@ class SoundRecording : public Reader {
       if (read != static_cast<std::int64_t>(count)) {
         broken_at(at_ + static_cast<std::int64_t>(done) + std::max<std::int64_t>(0, read));
       }
-      for (std::size_t c = 0; c < channels; ++c) spread(chunk, c, done, count);
+      spread(chunk, done, count);
       done += count;
     }
     validity_.finish(chunk);
@@ -66,14 +66,21 @@ class SoundRecording : public Reader {
   std::unique_ptr<Reader> second() const override { return std::make_unique<SoundRecording>(source_, recording_); }
 
  private:
-  // Channel c of the frames just read, to the chunk's frames from `first` on.
-  void spread(Chunk& chunk, std::size_t c, std::size_t first, std::size_t count) {
-    const Channel& channel = recording_->channels[c];
-    const auto out = chunk.channel(c).subspan(first, count);
-    frames_.channel(c, channel.factor, channel.offset, out);
-    if (frames_.all_finite() && stays_finite(channel)) return;
-    for (std::size_t i = 0; i < count; ++i) {
-      if (!std::isfinite(out[i])) validity_.mark_bad(c, chunk.first_frame + static_cast<std::int64_t>(first + i));
+  // The frames just read, to the chunk's frames from `first` on.
+  void spread(Chunk& chunk, std::size_t first, std::size_t count) {
+    targets_.clear();
+    for (std::size_t c = 0; c < recording_->channels.size(); ++c) {
+      const Channel& channel = recording_->channels[c];
+      targets_.push_back({channel.factor, channel.offset, chunk.channel(c).data() + first});
+    }
+    const bool all_finite = frames_.to(targets_, count);
+    for (std::size_t c = 0; c < targets_.size(); ++c) {
+      if (all_finite && stays_finite(recording_->channels[c])) continue;
+      for (std::size_t i = 0; i < count; ++i) {
+        if (!std::isfinite(targets_[c].out[i])) {
+          validity_.mark_bad(c, chunk.first_frame + static_cast<std::int64_t>(first + i));
+        }
+      }
     }
   }
 
@@ -94,6 +101,7 @@ class SoundRecording : public Reader {
   SoundReader sound_;
   std::int64_t at_ = 0;
   Interleaved frames_;
+  std::vector<Interleaved::Target> targets_;
   Validity validity_;
 };
 
