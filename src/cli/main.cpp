@@ -1,6 +1,5 @@
 #include <csignal>
 #include <cstdio>
-#include <ctime>
 #include <exception>
 #include <fstream>
 #include <span>
@@ -30,22 +29,29 @@ class SignalWatch {
     sigset_t set = watched();
     pthread_sigmask(SIG_BLOCK, &set, nullptr);
     watcher_ = std::jthread([&stop](const std::stop_token& over) {
-      sigset_t signals = watched();
-      const timespec pause{0, 50'000'000};
-      while (!over.stop_requested()) {
-        if (sigtimedwait(&signals, nullptr, &pause) < 0) continue;
+      const sigset_t signals = watched();
+      for (int signal = 0; sigwait(&signals, &signal) == 0;) {
+        if (over.stop_requested()) return;
+        if (signal == wake) continue;
         if (stop.stop_requested()) std::_Exit(cli::stopped);
         stop.request_stop();
       }
     });
   }
+  ~SignalWatch() {
+    watcher_.request_stop();
+    pthread_kill(watcher_.native_handle(), wake);  // so that the program need not wait for the thread to look
+  }
+  SignalWatch(const SignalWatch&) = delete;
+  SignalWatch& operator=(const SignalWatch&) = delete;
 
  private:
+  static constexpr int wake = SIGUSR1;
+
   static sigset_t watched() {
     sigset_t set;
     sigemptyset(&set);
-    sigaddset(&set, SIGINT);
-    sigaddset(&set, SIGTERM);
+    for (const int signal : {SIGINT, SIGTERM, wake}) sigaddset(&set, signal);
     return set;
   }
   std::jthread watcher_;
