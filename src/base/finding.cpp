@@ -54,7 +54,7 @@ constexpr auto codes = std::to_array<CodeText>({
      "turn the shaft by hand or tap the sensor and look which channel answers"},
     {Code::mounting_resonance, "mounting-resonance", "a single high hump, and hardly anything above it",
      "the sensor rings on its mounting: held by hand, on a weak magnet, on paint or dirt",
-     "clean the spot, use a stud or wax, and judge only below a third of the hump's frequency"},
+     "clean the spot, use a stud or wax, and judge only below 0.3 of the hump's frequency"},
     {Code::calibration_off, "calibration-off", "the calibration recording does not show the level stated",
      "a wrong unit, scale or sensitivity, a peak value taken for r.m.s., or a dead sensor",
      "mend what is stated of the channel, or record the calibrator again"},

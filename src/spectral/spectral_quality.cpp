@@ -33,7 +33,7 @@ constexpr double top_share = 0.002;          // of the mean square, so that sile
 constexpr double steps_above_noise = 2.0;    // density over that of the stored steps
 constexpr double flat_range = 3.0;           // greatest over least density of octaves of mere noise: 5 dB
 constexpr double mounting_least_hz = 500.0;  // no sensor rings on its mounting below that
-constexpr double mounting_most_hz = 3000.0;  // above, a third of it clears the 1000 Hz of the severity standards
+constexpr double mounting_most_hz = 3300.0;  // above, 0.3 of it clears the 1000 Hz of the severity standards
 constexpr double mounting_rise = 8.0;        // density of the hump over that two octaves below: 9 dB
 constexpr double mounting_fall = 30.0;       // and over that an octave above: 15 dB, a sensor falls 40 dB a decade
 constexpr double mounting_lost = 0.5;        // density an octave above over that two octaves below
@@ -190,7 +190,7 @@ std::optional<Finding> mounting_resonance(const Spectrum& s) {
       Code::mounting_resonance, s, base::Strength::weak,
       fmt::format("the spectrum has a hump of {:.0f} dB near {:.0f} Hz and falls {:.0f} dB in the octave above "
                   "it; amplitudes are true to about 10 % below {:.0f} Hz only",
-                  10.0 * std::log10(hump / below), hump_hz, 10.0 * std::log10(hump / above), hump_hz / 3.0));
+                  10.0 * std::log10(hump / below), hump_hz, 10.0 * std::log10(hump / above), 0.3 * hump_hz));
 }
 
 std::optional<Finding> noise_of_steps(const Spectrum& s, const recording::Channel& channel) {
