@@ -189,6 +189,10 @@ Unit trade_unit(Quantity quantity) {
   }
 }
 
+bool is_motion(Quantity quantity) {
+  return quantity == Quantity::acceleration || quantity == Quantity::velocity || quantity == Quantity::displacement;
+}
+
 std::string_view name(Quantity quantity) {
   switch (quantity) {
     case Quantity::ratio:

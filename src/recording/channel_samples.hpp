@@ -10,10 +10,10 @@
 
 #include "recording/level_counts.hpp"
 #include "recording/moments.hpp"
-#include "recording/quiet_windows.hpp"
 #include "recording/runs.hpp"
 #include "recording/slow_mean.hpp"
 #include "recording/spikes.hpp"
+#include "recording/window_spans.hpp"
 
 namespace stillmass::recording {
 
@@ -40,7 +40,7 @@ class ChannelSamples {
   RunChain runs;
   SpikeList spikes;
   LevelCounts levels;
-  QuietWindows windows;
+  WindowSpans windows;
   SlowMean slow_mean;
 
  private:

@@ -17,6 +17,13 @@ int exponent_of(double value) {
 
 }  // namespace
 
+void LevelCounts::Edges::add(const Edges& more) {
+  if (more.count == 0) return;
+  first = count == 0 ? more.first : std::min(first, more.first);
+  last = std::max(last, more.last);
+  count += more.count;
+}
+
 int LevelCounts::bin_of(double sample) const {
   const auto bin = static_cast<int>(std::floor(std::ldexp(sample - zero_, 10 - exponent_))) + side;
   return std::clamp(bin, 0, bins - 1);
@@ -34,11 +41,7 @@ void LevelCounts::widen(int exponent) {
       const auto from = static_cast<std::size_t>(bin);
       const auto to = static_cast<std::size_t>(((bin - side) >> shift) + side);
       counts[to] += counts_[from];
-      if (edges_[from].count == 0) continue;
-      Edges& sum = edges[to];
-      sum.first = sum.count == 0 ? edges_[from].first : std::min(sum.first, edges_[from].first);
-      sum.last = std::max(sum.last, edges_[from].last);
-      sum.count += edges_[from].count;
+      edges[to].add(edges_[from]);
     }
     counts_ = counts;
     edges_ = edges;
@@ -58,10 +61,7 @@ void LevelCounts::take(std::span<const double> samples, double reach) {
 
 void LevelCounts::take_edge(double sample, std::int64_t frame) {
   widen(exponent_of(std::abs(sample - zero_)));
-  Edges& edges = edges_[static_cast<std::size_t>(bin_of(sample))];
-  edges.first = edges.count == 0 ? frame : std::min(edges.first, frame);
-  edges.last = std::max(edges.last, frame);
-  ++edges.count;
+  edges_[static_cast<std::size_t>(bin_of(sample))].add({1, frame, frame});
 }
 
 void LevelCounts::merge(const LevelCounts& later) {
@@ -71,12 +71,15 @@ void LevelCounts::merge(const LevelCounts& later) {
   widen(other.exponent_);
   for (std::size_t bin = 0; bin < bins; ++bin) {
     counts_[bin] += other.counts_[bin];
-    if (other.edges_[bin].count == 0) continue;
-    Edges& edges = edges_[bin];
-    edges.first = edges.count == 0 ? other.edges_[bin].first : std::min(edges.first, other.edges_[bin].first);
-    edges.last = std::max(edges.last, other.edges_[bin].last);
-    edges.count += other.edges_[bin].count;
+    edges_[bin].add(other.edges_[bin]);
   }
+}
+
+LevelCounts::Span LevelCounts::occupied() const {
+  const auto is_used = [](std::int64_t count) { return count > 0; };
+  const auto lowest = static_cast<int>(std::find_if(counts_.begin(), counts_.end(), is_used) - counts_.begin());
+  const auto highest = static_cast<int>(counts_.rend() - std::find_if(counts_.rbegin(), counts_.rend(), is_used)) - 1;
+  return {lowest, highest};
 }
 
 std::int64_t LevelCounts::sum(int from, int to) const {
@@ -86,9 +89,7 @@ std::int64_t LevelCounts::sum(int from, int to) const {
 }
 
 std::optional<LevelCounts::FlatTop> LevelCounts::flat_top(int sign, double step) const {
-  const auto is_used = [](std::int64_t count) { return count > 0; };
-  const auto lowest = static_cast<int>(std::find_if(counts_.begin(), counts_.end(), is_used) - counts_.begin());
-  const auto highest = static_cast<int>(counts_.rend() - std::find_if(counts_.rbegin(), counts_.rend(), is_used)) - 1;
+  const auto [lowest, highest] = occupied();
   const int half_span = (highest - lowest) / 2;
   if (half_span < quality_limit::flat_top_span_bins) return std::nullopt;
   const std::int64_t all = sum(0, bins);
@@ -103,15 +104,10 @@ std::optional<LevelCounts::FlatTop> LevelCounts::flat_top(int sign, double step)
     if (2 * beyond > all || static_cast<double>(in) < quality_limit::flat_top_ratio * static_cast<double>(next))
       continue;
     FlatTop top;
-    std::int64_t found = 0;
-    for (int bin = from; bin < from + height; ++bin) {
-      const Edges& each = edges_[static_cast<std::size_t>(bin)];
-      if (each.count == 0) continue;
-      top.frames.begin = found == 0 ? each.first : std::min(top.frames.begin, each.first);
-      top.frames.end = std::max(top.frames.end, each.last + 1);
-      found += each.count;
-    }
-    if (found < quality_limit::flat_top_edges) continue;
+    Edges edges;
+    for (int bin = from; bin < from + height; ++bin) edges.add(edges_[static_cast<std::size_t>(bin)]);
+    if (edges.count < quality_limit::flat_top_edges) continue;
+    top.frames = {edges.first, edges.last + 1};
     top.level = zero_ + bin_width() * (sign > 0 ? highest + 1 - side : lowest - side);
     top.samples = in;
     return top;
@@ -120,9 +116,7 @@ std::optional<LevelCounts::FlatTop> LevelCounts::flat_top(int sign, double step)
 }
 
 bool LevelCounts::has_two_levels() const {
-  const auto is_used = [](std::int64_t count) { return count > 0; };
-  const auto lowest = static_cast<int>(std::find_if(counts_.begin(), counts_.end(), is_used) - counts_.begin());
-  const auto highest = static_cast<int>(counts_.rend() - std::find_if(counts_.rbegin(), counts_.rend(), is_used)) - 1;
+  const auto [lowest, highest] = occupied();
   if (highest - lowest < quality_limit::flat_top_span_bins) return false;
   const int edge = static_cast<int>(quality_limit::pulse_edge * (highest - lowest + 1));
   const std::int64_t low = sum(lowest, lowest + edge);

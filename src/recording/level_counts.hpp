@@ -46,11 +46,17 @@ class LevelCounts {
     std::int64_t count = 0;
     std::int64_t first = 0;
     std::int64_t last = 0;
+    void add(const Edges& more);
+  };
+  struct Span {
+    int lowest = 0;
+    int highest = -1;  // below `lowest`: nothing was counted
   };
 
   int bin_of(double sample) const;
   double bin_width() const;
   void widen(int exponent);
+  Span occupied() const;
   std::int64_t sum(int from, int to) const;  // bins [from, to)
 
   double zero_;

@@ -18,7 +18,8 @@ using base::Finding;
 
 constexpr double most_missing = 0.2;  // of the samples; with more the channel is unusable (common practice)
 
-// Spikes, cut-off tops and steps are wide in frequency: they, not a lacking filter, fill the top of the spectrum.
+// Spikes, cut-off tops, dropouts and the recorder's own steps are wide in frequency: they, not a lacking filter, fill
+// the top of the spectrum.
 void blame_the_cause(std::vector<Finding>& findings) {
   const bool is_wide = std::any_of(findings.begin(), findings.end(), [](const Finding& each) {
     return each.code == Code::spikes || each.code == Code::clipped || each.code == Code::overload ||

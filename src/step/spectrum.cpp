@@ -18,17 +18,13 @@ using base::Quantity;
 constexpr Interval severity_band{10.0, 1000.0};      // ISO 10816-1 and its parts
 constexpr Interval slow_severity_band{2.0, 1000.0};  // for speeds up to 600 r/min (from memory)
 
-bool is_motion(Quantity quantity) {
-  return quantity == Quantity::acceleration || quantity == Quantity::velocity || quantity == Quantity::displacement;
-}
-
 Interval standard_band(const Site& site) {
   const bool slow = site.machine && site.machine->speed_hz && site.machine->speed_hz->lo <= 10.0;
   return slow ? slow_severity_band : severity_band;
 }
 
 spectral::Spectrum in_quantity(const spectral::Spectrum& measured, Quantity wanted) {
-  if (!is_motion(measured.quantity) || measured.quantity == wanted) return measured;
+  if (!base::is_motion(measured.quantity) || measured.quantity == wanted) return measured;
   const double low = spectral::slope_end_hz(measured).value_or(0.0);
   return spectral::as_quantity(measured, wanted, low);
 }
@@ -166,7 +162,7 @@ SpectrumResult spectrum(const recording::Reader& reader, const SpectrumRequest& 
       machine::Cause cause = machine::cause_of_peak(tone.frequency, each.shown.line_hz, result.forcing, request.modes);
       each.peaks.push_back({tone, std::move(cause)});
     }
-    if (!is_motion(each.measured.quantity) || each.measured.density.empty()) {
+    if (!base::is_motion(each.measured.quantity) || each.measured.density.empty()) {
       each.severity = base::Refusal{"limit-unknown", "the channel is not a vibration", ""};
       continue;
     }

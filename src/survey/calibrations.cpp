@@ -51,6 +51,13 @@ bool same_factor(const ChannelSetting& a, const ChannelSetting& b) {
   return a.scale == b.scale;
 }
 
+// A level that the recorder has cut off is none.
+bool is_cut_off(const recording::ChannelQuality& quality) {
+  return std::any_of(quality.findings.begin(), quality.findings.end(), [](const base::Finding& each) {
+    return each.code == base::Code::clipped || each.code == base::Code::overload;
+  });
+}
+
 std::string percent(double relative) { return base::rounded(100.0 * relative, 2) + " %"; }
 
 class Calibrator {
@@ -79,6 +86,8 @@ class Calibrator {
     const SurveyRecording& of = survey_.recordings[i];
     const auto reader = recording::open(of.file, of.open, context_);
     const recording::Recording& recording = reader->recording();
+    const recording::FrameRange range = part(*reader, of);
+    const auto quality = recording::sample_quality(*reader, range, context_);
     std::vector<base::Refusal> refusals;
     bool found = false;
     for (std::size_t c = 0; c < recording.channels.size(); ++c) {
@@ -86,16 +95,13 @@ class Calibrator {
       if (channel.role != Role::vibration) continue;
       const ChannelSetting* setting = setting_of(of, channel.index);
       if (setting == nullptr && recording.channels.size() > 1 && !of.open.channels.empty()) continue;
-      const bool is_motion = channel.unit.quantity == Quantity::acceleration ||
-                             channel.unit.quantity == Quantity::velocity ||
-                             channel.unit.quantity == Quantity::displacement;
-      if (!is_motion && !is_recorder_unit(channel)) continue;
-      if (cut_off(*reader, part(*reader, of), c)) {
+      if (!base::is_motion(channel.unit.quantity) && !is_recorder_unit(channel)) continue;
+      if (is_cut_off(quality[c])) {
         refusals.push_back({"no-calibrator-tone", "'" + channel.name + "' is cut off at the end of its range",
                             "record the calibrator again with a larger range"});
         continue;
       }
-      const auto answer = spectral::calibrate(*reader, part(*reader, of), c, of.calibrator, context_);
+      const auto answer = spectral::calibrate(*reader, range, c, of.calibrator, context_);
       if (!answer) {
         refusals.push_back(answer.refusal());
         continue;
@@ -110,14 +116,6 @@ class Calibrator {
       refusal.seen = file(i) + ": " + refusal.seen;
       out_.refusals.push_back(std::move(refusal));
     }
-  }
-
-  // A level that the recorder has cut off is none.
-  bool cut_off(const recording::Reader& reader, recording::FrameRange range, std::size_t channel) const {
-    const auto quality = recording::sample_quality(reader, range, context_);
-    return std::any_of(quality[channel].findings.begin(), quality[channel].findings.end(), [](const base::Finding& f) {
-      return f.code == base::Code::clipped || f.code == base::Code::overload;
-    });
   }
 
   void take(std::size_t i, const recording::Channel& channel, const spectral::Calibration& result, bool is_stated,

@@ -158,10 +158,9 @@ void read_calibration(const Table& row, SurveyRecording& out) {
     if (out.kind != Kind::calibration) row.refuse("calibrator", "only a recording of kind \"calibration\" has one");
     const std::string name = table->text("unit").value_or("m/s2");
     const auto unit = base::unit_named(name);
-    const bool is_motion =
-        unit && (unit->quantity == base::Quantity::acceleration || unit->quantity == base::Quantity::velocity ||
-                 unit->quantity == base::Quantity::displacement);
-    if (!is_motion) table->refuse("unit", "'" + name + "' is not a unit of vibration", "one of m/s2, g, mm/s, um");
+    if (!unit || !base::is_motion(unit->quantity)) {
+      table->refuse("unit", "'" + name + "' is not a unit of vibration", "one of m/s2, g, mm/s, um");
+    }
     out.calibrator.quantity = unit->quantity;
     out.calibrator.frequency_hz = table->number("frequency_hz").value_or(out.calibrator.frequency_hz);
     out.calibrator.rms = table->number("level").value_or(10.0) * unit->to_si;

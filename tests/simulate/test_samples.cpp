@@ -51,6 +51,20 @@ double rms(const std::vector<double>& samples) {
   return std::sqrt(sum / static_cast<double>(samples.size()));
 }
 
+// A force channel, and a single blow of 500 N and 9 ms at 1.0003 s.
+const std::string one_blow = R"([[recording.channel]]
+role = "force"
+sensor = "force"
+full_scale_v = 1
+[hammer]
+point = "centre"
+peak_n = 500
+tip_ms = 9
+first_s = 1.0003
+interval_s = 10
+blows = 1
+)";
+
 std::vector<double> centre_of(const std::string& text) {
   return simulate::samples_of(tests::parsed(tests::one_body(text)), 0).channels[0];
 }
@@ -117,16 +131,7 @@ amplitude_n = [0, 100, 0]
 
 TEST_CASE("on the calibrator a sensor feels 10 m/s2 r.m.s. at 1000 rad/s, on a hung mass force over mass") {
   CHECK(rms(centre_of(tests::recording("calibrator", 2048, 6))) == Approx(10.0).epsilon(1e-3));
-  const auto text = tests::recording("hung-mass", 2048, 6, "hung_mass_kg = 12.5\n") +
-                    "[[recording.channel]]\nrole = \"force\"\nsensor = \"force\"\nfull_scale_v = 1\n" + R"(
-[hammer]
-point = "centre"
-peak_n = 500
-tip_ms = 9
-first_s = 1.0003
-interval_s = 10
-blows = 1
-)";
+  const auto text = tests::recording("hung-mass", 2048, 6, "hung_mass_kg = 12.5\n") + one_blow;
   const auto samples = simulate::samples_of(tests::parsed(tests::one_body(text)), 0);
   for (std::size_t i = 0; i < samples.channels[0].size(); ++i) {
     CHECK(samples.channels[0][i] == Approx(samples.channels[1][i] / 12.5).margin(1e-3));
@@ -134,16 +139,7 @@ blows = 1
 }
 
 TEST_CASE("a blow's response is the closed form of the half-sine blow on one degree of freedom") {
-  const auto text = tests::recording("bump", 2048, 6) +
-                    "[[recording.channel]]\nrole = \"force\"\nsensor = \"force\"\nfull_scale_v = 1\n" + R"(
-[hammer]
-point = "centre"
-peak_n = 500
-tip_ms = 9
-first_s = 1.0003
-interval_s = 10
-blows = 1
-)";
+  const auto text = tests::recording("bump", 2048, 6) + one_blow;
   const auto samples = simulate::samples_of(tests::parsed(tests::one_body(text)), 0);
   const oracle::OneDegree mode{20.0, 0.02, 100.0};
   const oracle::HalfSine blow{1.0003, 500.0, 0.009};

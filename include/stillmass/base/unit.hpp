@@ -42,6 +42,9 @@ Unit si_unit(Quantity quantity);
 /// The unit in which people at the machine read it: mm/s, um, g, rpm; else the SI unit.
 Unit trade_unit(Quantity quantity);
 
+/// True for acceleration, velocity and displacement.
+bool is_motion(Quantity quantity);
+
 /// Plain name: "acceleration", ...
 std::string_view name(Quantity quantity);
 std::optional<Quantity> quantity_named(std::string_view name);

@@ -1,4 +1,4 @@
-#include "recording/quiet_windows.hpp"
+#include "recording/window_spans.hpp"
 
 #include <algorithm>
 #include <cmath>
@@ -8,10 +8,10 @@
 
 namespace stillmass::recording {
 
-QuietWindows::QuietWindows(double rate_hz)
+WindowSpans::WindowSpans(double rate_hz)
     : frames_(std::max<std::int64_t>(16, std::llround(quality_limit::quiet_seconds * rate_hz))) {}
 
-void QuietWindows::take(std::span<const double> samples, std::int64_t first_frame) {
+void WindowSpans::take(std::span<const double> samples, std::int64_t first_frame) {
   while (!samples.empty()) {
     Window piece;
     piece.number = first_frame / frames_;
@@ -28,7 +28,7 @@ void QuietWindows::take(std::span<const double> samples, std::int64_t first_fram
 
 // The first window of a part may be continued to the left, the last one to the right; one between them that lacks
 // samples (missing ones, a gap) is left out.
-void QuietWindows::add(const Window& piece) {
+void WindowSpans::add(const Window& piece) {
   Window* current = tail_ ? &*tail_ : head_ ? &*head_ : nullptr;
   if (current != nullptr && current->number == piece.number) {
     current->samples += piece.samples;
@@ -41,15 +41,15 @@ void QuietWindows::add(const Window& piece) {
   if (current->samples == frames_) sort_in(*current);
 }
 
-bool QuietWindows::quieter(const Window& a, const Window& b) {
+bool WindowSpans::quieter(const Window& a, const Window& b) {
   return a.span() != b.span() ? a.span() < b.span() : a.number < b.number;
 }
 
-bool QuietWindows::louder(const Window& a, const Window& b) {
+bool WindowSpans::louder(const Window& a, const Window& b) {
   return a.span() != b.span() ? a.span() > b.span() : a.number < b.number;
 }
 
-void QuietWindows::sort_in(const Window& window) {
+void WindowSpans::sort_in(const Window& window) {
   ++windows_;
   const double span = window.span();
   const int bin = span > 0.0 ? static_cast<int>(std::floor(4.0 * std::log2(span))) + quarters / 2 : 0;
@@ -63,7 +63,7 @@ void QuietWindows::sort_in(const Window& window) {
   keep(loudest_, louder);
 }
 
-void QuietWindows::merge(const QuietWindows& later) {
+void WindowSpans::merge(const WindowSpans& later) {
   if (!later.head_) return;
   if (!head_) {
     *this = later;
@@ -88,7 +88,7 @@ void QuietWindows::merge(const QuietWindows& later) {
   }
 }
 
-double QuietWindows::span_quantile(double probability) const {
+double WindowSpans::span_quantile(double probability) const {
   std::int64_t below = 0;
   for (std::size_t bin = 0; bin < spans_.size(); ++bin) {
     below += spans_[bin];
@@ -99,8 +99,8 @@ double QuietWindows::span_quantile(double probability) const {
   return 0.0;
 }
 
-std::vector<FrameRange> QuietWindows::runs(std::vector<std::int64_t> numbers, std::size_t least,
-                                           std::size_t most) const {
+std::vector<FrameRange> WindowSpans::runs(std::vector<std::int64_t> numbers, std::size_t least,
+                                          std::size_t most) const {
   std::sort(numbers.begin(), numbers.end());
   std::vector<FrameRange> found;
   for (std::size_t i = 0; i < numbers.size();) {
@@ -112,7 +112,7 @@ std::vector<FrameRange> QuietWindows::runs(std::vector<std::int64_t> numbers, st
   return found;
 }
 
-std::vector<FrameRange> QuietWindows::gaps() const {
+std::vector<FrameRange> WindowSpans::gaps() const {
   if (windows_ < quality_limit::quiet_windows) return {};
   const double usual = span_quantile(0.5);
   if (span_quantile(0.25) < quality_limit::quiet_steady * usual) return {};
@@ -123,7 +123,7 @@ std::vector<FrameRange> QuietWindows::gaps() const {
   return runs(std::move(quiet), 2, kept);
 }
 
-std::vector<FrameRange> QuietWindows::bursts() const {
+std::vector<FrameRange> WindowSpans::bursts() const {
   if (windows_ < quality_limit::quiet_windows) return {};
   const double usual = span_quantile(0.5);
   const double high = span_quantile(0.9);

@@ -14,13 +14,13 @@ namespace stillmass::recording {
 /// The peak-to-peak values of a signal over short windows, of which the quietest and the loudest are kept: in a signal
 /// that is steady otherwise a loose contact leaves windows of next to nothing, interference leaves single loud ones.
 /// Windows stand on a fixed grid of frames, so parts that follow each other can be merged wherever they are cut.
-class QuietWindows {
+class WindowSpans {
  public:
-  explicit QuietWindows(double rate_hz);
+  explicit WindowSpans(double rate_hz);
 
   /// Consecutive valid samples.
   void take(std::span<const double> samples, std::int64_t first_frame);
-  void merge(const QuietWindows& later);
+  void merge(const WindowSpans& later);
 
   /// Stretches of two or more windows with next to no signal, in order; empty where the signal is not steady enough
   /// from window to window for this to mean anything.
