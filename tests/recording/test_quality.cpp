@@ -88,6 +88,57 @@ TEST_CASE("flat tops below the range are an overload, rounded ones of a slow sig
   CHECK(quality_of(wav16(slow).file()).findings.empty());
 }
 
+namespace {
+
+// The number that stands behind `word` in a finding's text.
+double number_after(const base::Finding& finding, const std::string& word) {
+  const auto at = finding.text.find(word);
+  REQUIRE(at != std::string::npos);
+  return std::stod(finding.text.substr(at + word.size()));
+}
+
+}  // namespace
+
+TEST_CASE("how far the mean settles or jumps, and when, is what was put in") {
+  // Means by arithmetic: 8000 exp(-t / 2 s) has 8000 * 4 (1 - exp(-1/4)) in the first column of half a second.
+  auto samples = lively(20000);
+  for (std::size_t i = 0; i < samples.size(); ++i) {
+    samples[i] += static_cast<int>(std::lround(8000.0 * std::exp(-0.0005 * static_cast<double>(i))));
+  }
+  const auto settling = quality_of(wav16(samples).file());
+  const auto* settles = found(settling.findings, Code::drift);
+  REQUIRE(settles != nullptr);
+  CHECK(number_after(*settles, "settles by ") == Approx(-32000.0 * (1.0 - std::exp(-0.25)) / 32768.0).epsilon(0.03));
+  CHECK(*settles->from_s == 0.0);
+  CHECK(*settles->to_s == Approx(4.6).margin(1.0));  // a tenth is left after 2 s * ln 10
+
+  samples = lively(20000);
+  for (std::size_t i = 12345; i < samples.size(); ++i) samples[i] -= 5000;
+  const auto jumping = quality_of(wav16(samples).file());
+  const auto* jump = found(jumping.findings, Code::drift);
+  REQUIRE(jump != nullptr);
+  CHECK(number_after(*jump, "jumps by ") == Approx(-5000.0 / 32768.0).epsilon(0.05));
+  CHECK(*jump->from_s <= 12.345);
+  CHECK(*jump->to_s >= 12.345);
+  CHECK(*jump->to_s - *jump->from_s <= 1.5);
+}
+
+TEST_CASE("a flat top's level and the count of its samples are what was put in") {
+  std::vector<int> samples;
+  std::minstd_rand random(5);
+  int cut = 0;
+  for (int i = 0; i < 20000; ++i) {
+    const double x = 20000.0 * std::sin(0.1234 * i);
+    cut += x > 15000.0 ? 1 : 0;
+    samples.push_back(static_cast<int>(std::lround(std::min(x, 15000.0))) + static_cast<int>(random() % 9));
+  }
+  const auto quality = quality_of(wav16(samples).file());
+  const auto* top = found(quality.findings, Code::overload);
+  REQUIRE(top != nullptr);
+  CHECK(number_after(*top, "near ") == Approx(15004.0 / 32768.0).epsilon(0.01));
+  CHECK(number_after(*top, "value: ") == Approx(cut).epsilon(0.03));
+}
+
 TEST_CASE("a signal that repeats itself to the sample has few levels, not flat tops") {
   // What a generator gives a shaker: tones with a common period, sampled at the same instants in each.
   for (const int period : {20, 32, 45, 64, 320}) {

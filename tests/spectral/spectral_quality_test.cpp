@@ -2,6 +2,8 @@
 
 #include <algorithm>
 #include <cmath>
+#include <numbers>
+#include <string>
 
 #include "spectral/signals.hpp"
 #include "support/catch.hpp"
@@ -59,6 +61,64 @@ TEST_CASE("hum of the electric supply is named, at 50 and at 60 Hz") {
     CHECK(has(spectral::spectral_findings(spectrum(x), {}, std::round(supply)), Code::mains_hum));
     CHECK_FALSE(has(spectral::spectral_findings(spectrum(x), {}, supply < 55.0 ? 60.0 : 50.0), Code::mains_hum));
   }
+}
+
+namespace {
+
+const base::Finding& the(const std::vector<base::Finding>& findings, Code code) {
+  const auto at = std::find_if(findings.begin(), findings.end(), [&](const auto& f) { return f.code == code; });
+  REQUIRE(at != findings.end());
+  return *at;
+}
+
+double number_after(const base::Finding& finding, const std::string& word) {
+  const auto at = finding.text.find(word);
+  REQUIRE(at != std::string::npos);
+  return std::stod(finding.text.substr(at + word.size()));
+}
+
+}  // namespace
+
+TEST_CASE("the share of the hum is that of the mean squares") {
+  auto x = rolled_off(71);
+  double square = 0.0;
+  for (double& v : x) {
+    v *= 0.4;
+    square += v * v / static_cast<double>(x.size());
+  }
+  tests::add_tone(x, rate, 50.0, 0.15);
+  tests::add_tone(x, rate, 150.0, 0.10);
+  const auto findings = spectral::spectral_findings(spectrum(x), {});
+  const double share = (0.15 * 0.15 + 0.10 * 0.10) / (square + 0.15 * 0.15 + 0.10 * 0.10);
+  CHECK(std::stod(the(findings, Code::mains_hum).text) == Approx(100.0 * share).epsilon(0.05));
+}
+
+TEST_CASE(
+    "a sensor's resonance on its mounting is named where it is, and the limit is where its response is 10 % too high") {
+  constexpr double fast = 12800.0;
+  constexpr double resonance_hz = 1500.0;
+  const double w = 2.0 * std::numbers::pi * resonance_hz / fast;
+  const double r = std::exp(-w / 30.0);  // Q of 15
+  const double c = 2.0 * r * std::cos(w);
+  auto x = tests::noise(200000, 72);
+  double y1 = 0.0;
+  double y2 = 0.0;
+  double before = 0.0;
+  for (double& v : x) {
+    const double in = 0.5 * (v + before);  // nothing at half the rate, as behind a filter
+    before = v;
+    const double y = (1.0 - c + r * r) * in + c * y1 - r * r * y2;
+    y2 = y1;
+    y1 = y;
+    v = y;
+  }
+  const auto findings = spectral::spectral_findings(
+      spectral::averaged_spectrum(x, fast, base::Quantity::acceleration, {.block_frames = 6400}), {});
+  const base::Finding& found = the(findings, Code::mounting_resonance);
+  CHECK(number_after(found, "near ") == Approx(resonance_hz).epsilon(0.08));
+  const double limit_hz = number_after(found, "10 % below ");
+  const double ratio = limit_hz / number_after(found, "near ");
+  CHECK(1.0 / (1.0 - ratio * ratio) == Approx(1.10).epsilon(0.005));  // one degree of freedom, little damping
 }
 
 TEST_CASE("drift that integration would blow up is a low-frequency slope, and its end is given") {
