@@ -29,6 +29,13 @@ Forces::Forces(const SkidFile& file, const Skid& skid, std::size_t recording_num
     const Force& force = file.forces[i];
     std::array<std::vector<double>, 3> patterns;
     for (std::size_t a = 0; a < 3; ++a) patterns[a] = skid.pattern(force.body, force.at_m, axis(a));
+    if (force.kind == ForceKind::neighbour) {
+      const RecordingKind kind = file.recordings[recording_number].kind;
+      const bool runs =
+          kind == RecordingKind::steady || kind == RecordingKind::coastdown || kind == RecordingKind::background;
+      if (runs) neighbours_.push_back({force, patterns});
+      continue;
+    }
     const bool with_speed = force.kind == ForceKind::flow;
     if (!with_speed && force.kind != ForceKind::ambient) {
       tones_.push_back({force, patterns});
@@ -68,6 +75,10 @@ void Forces::add_next(double time_s, const Shaft& shaft, double rated_speed, std
   const double relative_speed = shaft.speed / rated_speed;
   if (shaft.speed > 0.0) {
     for (const Tone& tone : tones_) add_tone(tone, time_s, shaft, relative_speed, dof_force);
+  }
+  for (const Tone& tone : neighbours_) {
+    const double level = std::cos(2.0 * pi * tone.force.frequency_hz * time_s + tone.force.phase_rad);
+    for (std::size_t a = 0; a < 3; ++a) add_scaled(dof_force, tone.patterns[a], level * tone.force.amplitude[a]);
   }
   for (Noise& noise : noises_) {
     noise.value = noise.keep * noise.value + noise.fresh * random_.normal(noise.stream, sample_);

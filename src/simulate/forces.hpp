@@ -41,6 +41,7 @@ class Forces {
   numeric::Random random_;
   double line_hz_;
   std::vector<Tone> tones_;
+  std::vector<Tone> neighbours_;
   std::vector<Noise> noises_;
   std::uint32_t sample_ = 0;
 };

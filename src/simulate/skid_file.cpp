@@ -74,6 +74,7 @@ ForceKind force_kind(const std::string& name) {
   if (name == "unbalance") return ForceKind::unbalance;
   if (name == "order") return ForceKind::order;
   if (name == "line") return ForceKind::line;
+  if (name == "neighbour") return ForceKind::neighbour;
   return name == "flow" ? ForceKind::flow : ForceKind::ambient;
 }
 
@@ -86,6 +87,10 @@ Force read_force(const Table& table, const SkidFile& skid) {
   const bool broadband = force.kind == ForceKind::flow || force.kind == ForceKind::ambient;
   force.amplitude = vector_or_zero(table, broadband ? "density_n_per_rthz" : "amplitude_n");
   force.multiple = table.number("multiple").value_or(1.0);
+  force.frequency_hz = table.number("frequency_hz").value_or(0.0);
+  if ((force.kind == ForceKind::neighbour) != (force.frequency_hz > 0.0)) {
+    table.refuse("kind", "a force of kind \"neighbour\" and 'frequency_hz' go together");
+  }
   force.phase_rad = table.number("phase_deg").value_or(0.0) * degree;
   force.corner_hz = table.number("corner_hz").value_or(500.0);
   return force;
@@ -161,6 +166,7 @@ PlannedRecording read_recording(const Table& table, const SkidFile& skid) {
   const std::string kind = *table.text("kind");
   plan.kind = kind == "steady"       ? RecordingKind::steady
               : kind == "coastdown"  ? RecordingKind::coastdown
+              : kind == "background" ? RecordingKind::background
               : kind == "calibrator" ? RecordingKind::calibrator
               : kind == "hung-mass"  ? RecordingKind::hung_mass
                                      : RecordingKind::bump;

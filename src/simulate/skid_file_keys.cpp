@@ -67,7 +67,7 @@ constexpr auto keys = std::to_array<Key>({
     {"point.direction", KeyType::text, "", true, "", "signed axis", "+x|-x|+y|-y|+z|-z", {}},
 
     {"force", KeyType::tables, "", false, "", "a force on a body", "", {}},
-    {"force.kind", KeyType::text, "", true, "", "", "unbalance|order|line|flow|ambient", {}},
+    {"force.kind", KeyType::text, "", true, "", "", "unbalance|order|line|flow|ambient|neighbour", {}},
     {"force.body", KeyType::text, "", true, "", "name of a body", "", {}},
     {"force.at_m", KeyType::numbers, "m", true, "", "[x, y, z]", "", {-1e3, 1e3}},
     {"force.unbalance_g_mm", KeyType::number, "g mm", false, "0", "of kind unbalance", "", not_negative},
@@ -76,12 +76,13 @@ constexpr auto keys = std::to_array<Key>({
      "N",
      false,
      "",
-     "[x, y, z]; of kinds order (at rated speed) and line",
+     "[x, y, z]; of kinds order (at rated speed), line and neighbour",
      "",
      {-1e9, 1e9}},
     {"force.density_n_per_rthz", KeyType::numbers, "N/sqrt(Hz)", false, "", "[x, y, z]; of kinds flow and ambient", "",
      not_negative},
     {"force.multiple", KeyType::number, "", false, "1", "of the running or the line frequency", "", positive},
+    {"force.frequency_hz", KeyType::number, "Hz", false, "", "of kind neighbour", "", positive},
     {"force.phase_deg", KeyType::number, "deg", false, "0", "", "", {-360.0, 360.0}},
     {"force.corner_hz", KeyType::number, "Hz", false, "500", "of kinds flow and ambient", "", positive},
 
@@ -115,7 +116,7 @@ constexpr auto keys = std::to_array<Key>({
 
     {"recording", KeyType::tables, "", true, "", "a recording to be made", "", {}},
     {"recording.file", KeyType::text, "", true, "", "NAME.wav or NAME.csv", "", {}},
-    {"recording.kind", KeyType::text, "", true, "", "", "steady|coastdown|bump|calibrator|hung-mass", {}},
+    {"recording.kind", KeyType::text, "", true, "", "", "steady|coastdown|background|bump|calibrator|hung-mass", {}},
     {"recording.rate_hz", KeyType::number, "Hz", true, "", "", "", {1.0, 1e6}},
     {"recording.duration_s", KeyType::number, "s", true, "", "", "", {1e-3, 1e5}},
     {"recording.hung_mass_kg", KeyType::number, "kg", false, "", "of kind hung-mass, with the sensor on it", "",

@@ -37,6 +37,8 @@ std::map<double, std::vector<Push>> pushes_of(const SkidFile& file, const Skid& 
     } else if (force.kind == ForceKind::order || force.kind == ForceKind::line) {
       const double base_hz = force.kind == ForceKind::order ? file.drive.speed_hz : file.drive.line_hz;
       pushes[force.multiple * base_hz].push_back({skid.pattern(force.body, force.at_m, force.amplitude), phase});
+    } else if (force.kind == ForceKind::neighbour) {
+      pushes[force.frequency_hz].push_back({skid.pattern(force.body, force.at_m, force.amplitude), phase});
     }
   }
   return pushes;

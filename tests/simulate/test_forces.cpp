@@ -1,6 +1,8 @@
 #include <cmath>
 #include <numbers>
 
+#include "stillmass/base/error.hpp"
+
 #include "simulate/forces.hpp"
 #include "simulate/hammer.hpp"
 #include "simulate/sensors.hpp"
@@ -135,6 +137,33 @@ amplitude_n = [0, 0, 10]
   CHECK(half[1] == 0.0);
   CHECK(full[2] == Approx(10.0));
   CHECK(half[2] == Approx(2.5));
+}
+
+TEST_CASE("a neighbour pushes at its own frequency while the machine stands, and rests during a hammer test") {
+  const std::string neighbour = R"(
+[[force]]
+kind = "neighbour"
+body = "block"
+at_m = [0, 0, 0]
+frequency_hz = 16
+amplitude_n = [0, 0, 3]
+phase_deg = 60
+)";
+  const auto force_at = [&](const std::string& kind, double time_s) {
+    const auto file = tests::parsed(tests::one_body(tests::recording(kind, 1000, 1) + neighbour));
+    const simulate::Skid skid(file, simulate::Condition::stopped, false);
+    simulate::Forces forces(file, skid, 0, 1e-4);
+    std::vector<double> force(6, 0.0);
+    forces.add_next(time_s, {0.0, 0.0, 0.0, false}, 100.0, force);
+    return force[2];
+  };
+  CHECK(force_at("background", 0.0) == Approx(1.5));
+  CHECK(force_at("background", 1.0 / 32.0) == Approx(-1.5));
+  CHECK(force_at("calibrator", 0.0) == 0.0);
+  CHECK_THROWS_AS(
+      tests::parsed(tests::one_body(tests::recording("steady", 1000, 1) +
+                                    "[[force]]\nkind = \"neighbour\"\nbody = \"block\"\nat_m = [0, 0, 0]\n")),
+      base::Error);
 }
 
 TEST_CASE("unbalance turns with the shaft and pushes back when the shaft slows") {

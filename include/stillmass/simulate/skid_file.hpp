@@ -59,6 +59,7 @@ enum class ForceKind {
   line,       ///< amplitude * cos(2 pi multiple * line frequency * t + phase) while the motor is on
   flow,       ///< broad-band, density * (w/w0)^2, each axis for itself
   ambient,    ///< broad-band, density, whether the machine runs or not
+  neighbour,  ///< amplitude * cos(2 pi frequency t + phase), of a machine beside this one; still during hammer tests
 };
 
 struct Force {
@@ -68,6 +69,7 @@ struct Force {
   double unbalance_kg_m = 0.0;
   Vector3 amplitude{};  ///< N; of broad-band forces: N/sqrt(Hz), one-sided, at low frequency
   double multiple = 1.0;
+  double frequency_hz = 0.0;  ///< of kind neighbour
   double phase_rad = 0.0;
   double corner_hz = 0.0;  ///< broad-band: density falls as 1 / (1 + (f/corner)^2)
 };
@@ -115,6 +117,7 @@ struct PlannedChannel {
 enum class RecordingKind {
   steady,
   coastdown,
+  background,  ///< the machine stands, its neighbours run
   bump,
   calibrator,  ///< the sensors on a handheld exciter: 10 m/s2 r.m.s. at 1000 rad/s
   hung_mass,   ///< a free mass struck by the hammer: acceleration = force / mass
