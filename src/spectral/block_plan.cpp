@@ -138,10 +138,8 @@ std::size_t fast_length_at_most(std::size_t n) {
 
 std::size_t block_length(const Recording& recording, FrameRange range, double resolution_hz, double overlap) {
   constexpr double finest_hz = 0.25;
-  constexpr double held_samples = 3 << 17;  // of all channels: keeps a long recording's memory under 60 MB
   constexpr double coarsest_hz = 1.0;
   constexpr std::int64_t blocks_to_refine = 64;
-  constexpr std::int64_t least_blocks = 16;
   constexpr std::size_t least_frames = 16;
 
   const auto count = [&](std::size_t length) { return count_blocks(recording, range, length, overlap); };

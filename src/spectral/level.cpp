@@ -1,6 +1,7 @@
 #include "stillmass/spectral/level.hpp"
 
 #include <algorithm>
+#include <array>
 #include <cmath>
 
 #include <fmt/format.h>
@@ -66,20 +67,35 @@ base::Estimate band_rms(const Spectrum& spectrum, base::Interval band_hz) {
   return rms;
 }
 
-std::vector<BandLevel> third_octaves(const Spectrum& spectrum, base::Interval range_hz) {
-  std::vector<BandLevel> levels;
+double nominal_third_octave_hz(int k) {
+  constexpr std::array nominal{1.0, 1.25, 1.6, 2.0, 2.5, 3.15, 4.0, 5.0, 6.3, 8.0};
+  const int decade = k >= 0 ? k / 10 : -((9 - k) / 10);
+  // A power of ten below 1 is divided by, so that 31.5 and 0.8 are exactly what they are called.
+  const double scale = std::pow(10.0, std::abs(decade + 3));
+  const double mantissa = nominal[static_cast<std::size_t>(k - 10 * decade)];
+  return decade + 3 >= 0 ? mantissa * scale : mantissa / scale;
+}
+
+ThirdOctaves third_octaves(const Spectrum& spectrum, base::Interval range_hz) {
+  ThirdOctaves result;
   const double lowest = std::max(range_hz.lo, spectrum.frequency(spectrum.first_line));
   const double highest = std::min(range_hz.hi, 0.5 * spectrum.rate_hz);
-  if (!(lowest < highest)) return levels;
-  const int first = lowest > 0.0 ? static_cast<int>(std::floor(10.0 * std::log10(lowest / 1000.0))) : -40;
-  for (int k = first;; ++k) {
+  if (!(lowest < highest)) return result;
+  // Without a lower limit the count begins with the first band wider than a line: below, bands have no end.
+  const double from = lowest > 0.0 ? lowest : spectrum.line_hz;
+  for (int k = static_cast<int>(std::floor(10.0 * std::log10(from / 1000.0)));; ++k) {
     const double centre = 1000.0 * std::pow(10.0, 0.1 * k);
     const double half = std::pow(10.0, 0.05);
     const base::Interval band{centre / half, centre * half};
-    if (band.hi > highest) return levels;
-    if (band.lo >= lowest && band.width() >= 2.0 * spectrum.noise_bandwidth_hz) {
-      levels.push_back({centre, band, band_rms(spectrum, band)});
+    if (band.hi > highest) return result;
+    if (band.lo < lowest) continue;
+    if (band.width() < 2.0 * spectrum.noise_bandwidth_hz) {
+      ++result.unresolved;
+      continue;
     }
+    const double nominal = nominal_third_octave_hz(k);
+    if (result.bands.empty()) result.resolved_from_hz = nominal;
+    result.bands.push_back({centre, nominal, band, band_rms(spectrum, band)});
   }
 }
 

@@ -3,34 +3,89 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
+#include <complex>
 #include <numeric>
 #include <utility>
 
-#include "stillmass/spectral/block_plan.hpp"
+#include <fmt/format.h>
+
+#include "stillmass/base/error.hpp"
+#include "stillmass/spectral/block_choice.hpp"
 
 namespace stillmass::spectral {
 
 namespace {
 
-BlockPlan plan_for(const recording::Recording& recording, recording::FrameRange range, const SpectrumOptions& options) {
-  const std::size_t length = options.block_frames != 0
-                                 ? options.block_frames
-                                 : block_length(recording, range, options.resolution_hz, options.overlap);
-  return BlockPlan::overlapping(recording, range, length, options.overlap);
+struct Named {
+  Averaging averaging;
+  std::string_view name;
+};
+constexpr std::array kinds{Named{Averaging::mean, "mean"}, Named{Averaging::peak_hold, "peak-hold"},
+                           Named{Averaging::exponential, "exponential"}};
+
+/// What the sums of the blocks before are multiplied by when another block comes.
+double decay_of(Averaging averaging, double exponential_averages) {
+  if (averaging != Averaging::exponential) return 1.0;
+  if (!(exponential_averages >= 1.0 && std::isfinite(exponential_averages))) {
+    throw base::usage_error({}, fmt::format("an exponential average over {} blocks", exponential_averages),
+                            "give a number of 1 or more");
+  }
+  return 1.0 - 1.0 / exponential_averages;
+}
+
+// One loop a kind, so that the compiler makes vector code of each.
+void add_block(std::span<const std::complex<double>> x, double* power, double* power_squared) {
+  for (std::size_t k = 0; k < x.size(); ++k) {
+    const double p = x[k].real() * x[k].real() + x[k].imag() * x[k].imag();
+    power[k] += p;
+    power_squared[k] += p * p;
+  }
+}
+
+void add_block(std::span<const std::complex<double>> x, double decay, double* power, double* power_squared) {
+  for (std::size_t k = 0; k < x.size(); ++k) {
+    const double p = x[k].real() * x[k].real() + x[k].imag() * x[k].imag();
+    power[k] = decay * power[k] + p;
+    power_squared[k] = decay * power_squared[k] + p * p;
+  }
+}
+
+void hold_block(std::span<const std::complex<double>> x, double* power) {
+  for (std::size_t k = 0; k < x.size(); ++k) {
+    power[k] = std::max(power[k], x[k].real() * x[k].real() + x[k].imag() * x[k].imag());
+  }
+}
+
+std::int64_t blocks_of(std::span<const BlockRun> runs) {
+  return std::accumulate(runs.begin(), runs.end(), std::int64_t{0},
+                         [](std::int64_t sum, const BlockRun& run) { return sum + run.count; });
 }
 
 }  // namespace
+
+std::string_view name(Averaging averaging) {
+  return std::find_if(kinds.begin(), kinds.end(), [=](const Named& n) { return n.averaging == averaging; })->name;
+}
+
+std::optional<Averaging> averaging_named(std::string_view name) {
+  const auto found = std::find_if(kinds.begin(), kinds.end(), [=](const Named& n) { return n.name == name; });
+  return found == kinds.end() ? std::nullopt : std::optional(found->averaging);
+}
 
 double Spectrum::amplitude_rms(std::size_t k) const { return std::sqrt(density[k] * noise_bandwidth_hz); }
 
 SpectrumConsumer::SpectrumConsumer(const recording::Recording& recording, recording::FrameRange range,
                                    const SpectrumOptions& options)
-    : SpectrumConsumer(recording, plan_for(recording, range, options), options.window, options.averaging) {}
+    : SpectrumConsumer(
+          recording,
+          BlockPlan::overlapping(recording, range, choose_block(recording, range, options).length, options.overlap),
+          options.window, options.averaging, options.exponential_averages) {}
 
 SpectrumConsumer::SpectrumConsumer(const recording::Recording& recording, BlockPlan plan, Window window,
-                                   Averaging averaging)
+                                   Averaging averaging, double exponential_averages)
     : BlockConsumer(std::move(plan)),
-      setup_(std::make_shared<const Setup>(Setup{recording.rate_hz, recording.channels, window, averaging})),
+      setup_(std::make_shared<const Setup>(
+          Setup{recording.rate_hz, recording.channels, window, averaging, decay_of(averaging, exponential_averages)})),
       transform_(samples(window, this->plan().length())),
       sums_(recording.channels.size()) {}
 
@@ -52,16 +107,12 @@ void SpectrumConsumer::take_block(const Block& block) {
     }
     append(sums.used, {block.first_frame, 1, 1});
     const auto x = transform_(block.channel(c));
-    double* power = sums.power.data();
-    double* power_squared = sums.power_squared.data();
-    for (std::size_t k = 0; k < x.size(); ++k) {
-      const double p = x[k].real() * x[k].real() + x[k].imag() * x[k].imag();
-      if (hold) {
-        power[k] = std::max(power[k], p);
-      } else {
-        power[k] += p;
-        power_squared[k] += p * p;
-      }
+    if (hold) {
+      hold_block(x, sums.power.data());
+    } else if (setup_->decay == 1.0) {
+      add_block(x, sums.power.data(), sums.power_squared.data());
+    } else {
+      add_block(x, setup_->decay, sums.power.data(), sums.power_squared.data());
     }
   }
 }
@@ -77,11 +128,15 @@ void SpectrumConsumer::merge(recording::Consumer& next) {
       mine = std::move(theirs);
       continue;
     }
-    for (std::size_t k = 0; k < mine.power.size(); ++k) {
-      mine.power[k] = hold ? std::max(mine.power[k], theirs.power[k]) : mine.power[k] + theirs.power[k];
-    }
+    // What came before weighs less by every block since.
+    const double weight =
+        setup_->decay == 1.0 ? 1.0 : std::pow(setup_->decay, static_cast<double>(blocks_of(theirs.used)));
+    const auto joined = [=](double before, double after) {
+      return hold ? std::max(before, after) : weight * before + after;
+    };
+    std::transform(mine.power.begin(), mine.power.end(), theirs.power.begin(), mine.power.begin(), joined);
     std::transform(mine.power_squared.begin(), mine.power_squared.end(), theirs.power_squared.begin(),
-                   mine.power_squared.begin(), std::plus<>());
+                   mine.power_squared.begin(), joined);
     for (const BlockRun& run : theirs.used) append(mine.used, run);
   }
 }
@@ -97,7 +152,7 @@ Spectrum SpectrumConsumer::spectrum(std::size_t channel) const {
   const std::size_t n = transform_.length();
   const auto w = transform_.weights();
   const double norm = std::inner_product(w.begin(), w.end(), w.begin(), 0.0);
-  const Averages count = averages(setup_->window, n, sums.used);
+  const Averages count = averages(setup_->window, n, sums.used, setup_->decay);
 
   Spectrum s;
   s.channel = setup_->channels[channel].name;
@@ -114,13 +169,18 @@ Spectrum SpectrumConsumer::spectrum(std::size_t channel) const {
 
   const bool hold = s.averaging == Averaging::peak_hold;
   const auto k_blocks = static_cast<double>(s.blocks);
+  // Sum of the weights, and the blocks of equal weight that scatter as much: both the number of blocks for a mean.
+  const double q = setup_->decay;
+  const double fallen = q == 1.0 ? 0.0 : std::pow(q, k_blocks);
+  const double weights = q == 1.0 ? k_blocks : (1.0 - fallen) / (1.0 - q);
+  const double equals = q == 1.0 ? k_blocks : weights * (1.0 + q) / (1.0 + fallen);
   s.density = density_factors(n, s.rate_hz, norm);
-  for (std::size_t k = 0; k < s.density.size(); ++k) s.density[k] *= hold ? sums.power[k] : sums.power[k] / k_blocks;
-  if (!hold && s.blocks > 1) {
+  for (std::size_t k = 0; k < s.density.size(); ++k) s.density[k] *= hold ? sums.power[k] : sums.power[k] / weights;
+  if (!hold && equals > 1.0) {
     s.spread.resize(s.density.size());
     for (std::size_t k = 0; k < s.spread.size(); ++k) {
-      const double mean = sums.power[k] / k_blocks;
-      const double variance = (sums.power_squared[k] - k_blocks * mean * mean) / (k_blocks - 1.0);
+      const double mean = sums.power[k] / weights;
+      const double variance = (sums.power_squared[k] / weights - mean * mean) * equals / (equals - 1.0);
       s.spread[k] = mean > 0.0 ? std::sqrt(std::max(variance, 0.0)) / mean : 0.0;
     }
   }

@@ -55,6 +55,13 @@ std::int64_t count_blocks(const recording::Recording& recording, recording::Fram
 std::size_t fast_length_at_least(std::size_t n);
 std::size_t fast_length_at_most(std::size_t n);
 
+/// Samples of all channels in one block, at most, where the program chooses its length: keeps a long recording's memory
+/// under 60 MB.
+inline constexpr double held_samples = 3 << 17;
+/// Blocks that remain, at least, where the program chooses their length (common practice: 16 averages hold a line
+/// within 25 %).
+inline constexpr std::int64_t least_blocks = 16;
+
 /// Block length for lines at most `resolution_hz` apart: the shortest fast length that gives it.
 /// With `resolution_hz` 0 it is chosen: lines 0.25 to 1 Hz apart, as fine as 64 blocks allow, coarser only where fewer
 /// than 16 blocks would remain (common practice: 16 averages hold a line within 25 %), and never finer than 400 000

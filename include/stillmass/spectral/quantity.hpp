@@ -21,8 +21,9 @@ std::complex<double> integration_factor(int integrations, double frequency_hz);
 double least_low_limit_hz(const Spectrum& spectrum);
 
 /// The spectrum as another quantity, line by line: density times (2 pi f)^-2n. Integrated lines below `low_limit_hz`
-/// (and below `least_low_limit_hz`) are not given: first_line says where it starts. Throws `Error` (usage) for a pair
-/// that is not of acceleration, velocity, displacement.
+/// (and below `least_low_limit_hz`) are not given: first_line says where it starts. Lobes that stand out are noted in
+/// `strong_lines`, so that levels (level.hpp) can count their power at their own frequency. Throws `Error` (usage) for
+/// a pair that is not of acceleration, velocity, displacement.
 Spectrum as_quantity(const Spectrum& spectrum, base::Quantity to, double low_limit_hz = 0.0);
 
 /// The frequency response with its output as another quantity (accelerance, mobility, receptance). Line 0 is 0 where it

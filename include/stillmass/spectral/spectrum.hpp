@@ -5,6 +5,7 @@
 #include <optional>
 #include <span>
 #include <string>
+#include <string_view>
 #include <vector>
 
 #include "stillmass/base/context.hpp"
@@ -19,14 +20,34 @@
 
 namespace stillmass::spectral {
 
-enum class Averaging { mean, peak_hold };
+/// How the densities |X|^2 of the blocks become one.
+/// mean: their mean (r.m.s. averaging). peak_hold: the greatest of each line. exponential: a running mean in which each
+/// block weighs 1 - 1/n of the next one, n = `exponential_averages`; the weights are divided by their sum, so the first
+/// blocks give no bias. In the long run the newest block weighs 1/n and noise is as smooth as from 2 n - 1 blocks that
+/// do not overlap (Spectrum::effective_averages has the true figure). Blocks count, not time: a gap weighs nothing.
+enum class Averaging { mean, peak_hold, exponential };
+std::string_view name(Averaging averaging);  ///< "mean", "peak-hold", "exponential"
+std::optional<Averaging> averaging_named(std::string_view name);
 
 struct SpectrumOptions {
   Window window = Window::hann;
   double overlap = 0.5;        ///< fraction of a block, 0 to 0.95
-  double resolution_hz = 0.0;  ///< line spacing asked for; 0: chosen (block_plan)
+  double resolution_hz = 0.0;  ///< line spacing asked for; 0: see block_choice.hpp
   Averaging averaging = Averaging::mean;
-  std::size_t block_frames = 0;  ///< exact block length; 0: from `resolution_hz`
+  double exponential_averages = 16.0;   ///< n of exponential averaging, 1 or more; not used otherwise
+  std::size_t block_frames = 0;         ///< exact block length; 0: from what follows, or `resolution_hz`
+  std::size_t lines = 0;                ///< so many lines from 0 to `lines_to_hz`; 0: not asked for
+  double lines_to_hz = 0.0;             ///< 0: half the rate
+  std::optional<double> speed_hz{};     ///< running speed, where known: helps to choose the block
+  std::optional<double> separate_hz{};  ///< least distance of forcing frequencies to be told apart, where known
+};
+
+/// A lobe that stands out of an integrated (or differentiated) spectrum: taken as a tone that carries the lobe's power.
+struct StrongLine {
+  double frequency_hz = 0.0;
+  double u_hz = 0.0;         ///< of the frequency
+  double mean_square = 0.0;  ///< of the measured signal (before integration)
+  double mismatch = 0.0;     ///< power by which the lobe differs from a tone's, over its power: 0 for a steady tone
 };
 
 /// Averaged one-sided auto-spectrum of one channel, as a spectral density.
@@ -43,10 +64,12 @@ struct Spectrum {
   double effective_averages = 0.0;  ///< independent averages: the relative standard error of a density is 1/sqrt of it
                                     ///< (sqrt 2 times that at 0 and rate/2)
   std::vector<Overlap> overlaps;    ///< of the averaged blocks: how much of one another they hold
-  std::vector<double> spread;       ///< relative standard deviation of the single blocks' densities: about 1 for
-                                    ///< Gaussian noise, near 0 for a steady tone; empty for one block or peak hold
+  std::vector<double> spread;       ///< relative standard deviation of the single blocks' densities (weighted as they
+                                    ///< are): about 1 for Gaussian noise, near 0 for a steady tone; empty for one
+                                    ///< block or peak hold
   std::size_t first_line = 0;       ///< lines below it are not given (low limit of an integration) and hold 0
   int integrations = 0;             ///< how often the measured signal was integrated line by line (quantity.hpp)
+  std::vector<StrongLine> strong_lines;  ///< found where it was integrated; levels count them at their own frequency
 
   double frequency(std::size_t k) const { return static_cast<double>(k) * line_hz; }
   /// r.m.s. amplitude of a tone on line k: sqrt(density * noise bandwidth).
@@ -59,9 +82,9 @@ class SpectrumConsumer final : public BlockConsumer {
  public:
   /// Throws `Error` (usage) as `averaged_spectra`.
   SpectrumConsumer(const recording::Recording& recording, recording::FrameRange range, const SpectrumOptions& options);
-  /// Of the blocks of a plan, for instance triggered ones.
+  /// Of the blocks of a plan, for instance triggered ones. Throws `Error` (usage): exponential averages below 1.
   SpectrumConsumer(const recording::Recording& recording, BlockPlan plan, Window window,
-                   Averaging averaging = Averaging::mean);
+                   Averaging averaging = Averaging::mean, double exponential_averages = 16.0);
 
   std::unique_ptr<recording::Consumer> fresh(recording::FrameRange owned) const override;
   void merge(recording::Consumer& next) override;
@@ -75,10 +98,11 @@ class SpectrumConsumer final : public BlockConsumer {
     std::vector<recording::Channel> channels;
     Window window = Window::hann;
     Averaging averaging = Averaging::mean;
+    double decay = 1.0;  ///< from block to block
   };
   struct Sums {
-    std::vector<double> power;          ///< of |X|^2, or its greatest value
-    std::vector<double> power_squared;  ///< of |X|^4
+    std::vector<double> power;          ///< weighted sum of |X|^2, or its greatest value
+    std::vector<double> power_squared;  ///< of |X|^4, with the same weights
     std::vector<BlockRun> used;
   };
 
@@ -92,8 +116,8 @@ class SpectrumConsumer final : public BlockConsumer {
 };
 
 /// Averaged spectra of all channels over the frames of `range`. Blocks never cross a gap. Matches SciPy `welch`
-/// (detrend False, scaling density) on the same samples to 1e-10. Throws `Error` (usage: resolution that the range
-/// cannot give).
+/// (detrend False, scaling density or, with the noise bandwidth, spectrum) on the same samples to 1e-10. Throws `Error`
+/// (usage: resolution that the range cannot give).
 std::vector<Spectrum> averaged_spectra(const recording::Reader& reader, recording::FrameRange range,
                                        const SpectrumOptions& options, const base::Context& context);
 

@@ -1,0 +1,48 @@
+#include "stillmass/spectral/noise_interval.hpp"
+
+#include <cmath>
+
+#include <fmt/format.h>
+
+#include "stillmass/numeric/distribution.hpp"
+
+#include "spectral/window_transform.hpp"
+
+namespace stillmass::spectral {
+
+double degrees_of_freedom(const Spectrum& spectrum, std::size_t line) {
+  // E|X|^4 = (2 + r^2) (E|X|^2)^2 for Gaussian X with E X^2 of magnitude r E|X|^2: r is the correlation with the mirror
+  // image of the line, about 0 and about rate/2.
+  const auto length = static_cast<std::size_t>(std::llround(spectrum.rate_hz / spectrum.line_hz));
+  const double at_zero = line_correlation(spectrum.window, 2 * line);
+  const double at_top = 2 * line <= length ? line_correlation(spectrum.window, length - 2 * line) : 0.0;
+  return 2.0 * spectrum.effective_averages / (1.0 + at_zero * at_zero + at_top * at_top);
+}
+
+base::Answer<base::Interval> density_interval(const Spectrum& spectrum, std::size_t line, double probability) {
+  if (spectrum.blocks == 0) {
+    return base::Refusal{"no-blocks", "no block of valid samples", "record again without missing samples"};
+  }
+  if (spectrum.averaging == Averaging::peak_hold) {
+    return base::Refusal{"peak-hold", "the greatest of the blocks grows with their number and estimates no density",
+                         "average it instead"};
+  }
+  if (line < spectrum.first_line || line >= spectrum.density.size()) {
+    return base::Refusal{"line-not-given", fmt::format("line {} is not given by the spectrum", line),
+                         "take a line between its low limit and half the sampling rate"};
+  }
+  const double dof = degrees_of_freedom(spectrum, line);
+  const double tail = 0.5 * (1.0 - probability);
+  const double scaled = dof * spectrum.density[line];
+  return base::Interval{scaled / numeric::chi_square_quantile(1.0 - tail, dof),
+                        scaled / numeric::chi_square_quantile(tail, dof)};
+}
+
+base::Answer<base::Interval> amplitude_interval(const Spectrum& spectrum, std::size_t line, double probability) {
+  const auto density = density_interval(spectrum, line, probability);
+  if (!density) return density.refusal();
+  return base::Interval{std::sqrt(density->lo * spectrum.noise_bandwidth_hz),
+                        std::sqrt(density->hi * spectrum.noise_bandwidth_hz)};
+}
+
+}  // namespace stillmass::spectral
