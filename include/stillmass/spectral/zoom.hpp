@@ -23,8 +23,8 @@ struct ZoomOptions {
   double resolution_hz = 0.0;         ///< line spacing asked for; 0: as fine as the longest gap-free stretch allows
   std::size_t most_points = 1 << 16;  ///< complex samples in a block at most: bounds the memory of one channel
   Window window = Window::hann;
-  double overlap = 0.5;               ///< fraction of a block, 0 to 0.95
-  std::vector<std::size_t> channels;  ///< indices into the recording's channels; empty: all
+  double overlap = 0.5;                 ///< fraction of a block, 0 to 0.95
+  std::vector<std::size_t> channels{};  ///< indices into the recording's channels; empty: all
 };
 
 /// Averaged one-sided auto-spectrum of one channel over a band, as a spectral density: `Spectrum` with lines that do
