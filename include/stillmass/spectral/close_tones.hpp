@@ -1,0 +1,93 @@
+#pragma once
+
+#include <cstddef>
+#include <optional>
+#include <span>
+#include <string>
+#include <string_view>
+#include <vector>
+
+#include "stillmass/base/context.hpp"
+#include "stillmass/base/estimate.hpp"
+#include "stillmass/base/interval.hpp"
+#include "stillmass/recording/reader.hpp"
+#include "stillmass/spectral/spectrum.hpp"
+#include "stillmass/spectral/tone.hpp"
+
+namespace stillmass::spectral {
+
+/// True for a tone of an averaged spectrum that may be more than one steady tone: its blocks scatter by more than a
+/// steady tone in that floor (standard deviation sqrt(2 P - 1) / P of the mean, P the prominence), or its peak is
+/// broader than the window's lobe; yet not by as much as random noise does (a resonance under noise is no pair).
+bool suspect(const Tone& tone);
+
+/// The band in which to look for what a tone of that spectrum is made of: its peak and the window's lobe on both sides.
+base::Interval band_around(const Tone& tone, const Spectrum& spectrum);
+
+/// Where to look.
+struct CloseBand {
+  std::size_t channel = 0;  ///< index into the recording's channels
+  base::Interval band_hz;   ///< within 0 to rate/2; as narrow as a few lines of the averaged spectrum
+};
+
+/// What a peak is made of.
+enum class Closeness {
+  single,      ///< one steady tone explains it down to the noise
+  resolved,    ///< two or three steady tones, each known
+  unresolved,  ///< more than one tone, closer together than the recording can tell apart
+  unsteady,    ///< neither: frequency or amplitude wander
+  none,        ///< no tone stands out of the noise, or no gap-free stretch holds enough samples
+};
+std::string_view name(Closeness closeness);
+
+/// A steady tone of a cluster.
+struct CloseTone {
+  base::Estimate frequency;      ///< Hz
+  base::Estimate amplitude_rms;  ///< SI unit of the channel's quantity
+  base::Estimate phase;          ///< rad, -pi to pi, of the cosine at the middle of the stretch
+};
+
+/// The tones of one band.
+struct ToneCluster {
+  std::size_t channel = 0;
+  std::string channel_name;
+  base::Interval band_hz;
+  Closeness closeness = Closeness::none;
+  std::vector<CloseTone> tones;    ///< ascending frequency: one (`single`, `unsteady`: mean frequency and r.m.s. value;
+                                   ///< `unresolved`: what one tone fits), two or three (`resolved`)
+  double stretch_s = 0.0;          ///< length of the gap-free stretch that was looked at
+  double least_spacing_hz = 0.0;   ///< 1 / stretch: tones closer than one beat in the stretch are not told apart
+  std::optional<double> record_s;  ///< `unresolved`: a length of recording that would part them (two beats)
+  std::optional<double> wander_hz;  ///< `unsteady`: r.m.s. deviation of the frequency within the stretch
+  std::optional<double> variation;  ///< `unsteady`: r.m.s. deviation of the amplitude over its mean
+  double noise_density = 0.0;       ///< of the noise beside the tones, SI unit squared per Hz, one-sided
+  double evidence = 0.0;  ///< by how much the criterion prefers the answer over one steady tone (greater is clearer;
+                          ///< > 10 is very strong: Kass & Raftery 1995); 0 for `single`
+};
+
+/// Parts tones closer than the lobe of the averaged spectrum's window.
+///
+/// Each band is mixed down and decimated as in `zoom`, from the longest gap-free stretch in the range without an
+/// invalid sample (at most 4096 complex samples), in one pass for all bands. Its Fourier lines within the band are
+/// fitted by least squares with one, two and three steady tones (frequency, amplitude, phase each) and a parabola for
+/// what tones outside leak in. How many: the Bayesian information criterion for sinusoids, 2 L ln(residual) + 5 L' with
+/// L' = ln L a tone, L the number of lines. Source: Djuric, IEEE Trans. SP 44 (1996) 1744; Stoica & Selen, IEEE SP
+/// Magazine 21 (2004) 36 (from memory).
+/// Two tones count as resolved where they are more than 1 / stretch apart (Rayleigh) and their sum explains the peak
+/// down to the noise, or leaves at most a tenth of the weaker one. A beating pair varies in amplitude and phase alike;
+/// a peak whose phase wanders by four times as much as its amplitude, or the other way round, is unsteady.
+///
+/// u: from the residual of the fit. One cluster a band, in their order. Throws `Error` (usage) for a band or channel
+/// that is not there, and what the reader throws.
+std::vector<ToneCluster> resolve_tones(const recording::Reader& reader, recording::FrameRange range,
+                                       std::span<const CloseBand> bands, const base::Context& context);
+
+/// The same of samples in memory, without a gap and all valid.
+ToneCluster resolve_tones(std::span<const double> samples, double rate_hz, base::Quantity quantity,
+                          base::Interval band_hz);
+
+/// The cluster with amplitudes (and phases) as another quantity. Throws `Error` (usage) for a pair that is not of
+/// acceleration, velocity, displacement.
+ToneCluster as_quantity(const ToneCluster& cluster, base::Quantity from, base::Quantity to);
+
+}  // namespace stillmass::spectral
