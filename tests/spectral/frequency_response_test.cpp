@@ -5,7 +5,6 @@
 #include <numbers>
 
 #include "stillmass/base/error.hpp"
-#include "stillmass/spectral/deflection.hpp"
 #include "stillmass/spectral/quantity.hpp"
 
 #include "spectral/signals.hpp"
@@ -188,29 +187,4 @@ TEST_CASE("accelerance, mobility and receptance are one response") {
   CHECK(std::abs(mobility.h1[k] - accelerance.h1[k] / s) < 1e-14 * std::abs(accelerance.h1[k]));
   CHECK(receptance.h1[0] == 0.0);
   CHECK(mobility.output_quantity == base::Quantity::velocity);
-}
-
-TEST_CASE("deflections give ratio and phase of each channel at a tone between lines") {
-  constexpr std::size_t frames = 50000;
-  constexpr double f = 24.63;
-  auto reference = tests::noise(frames, 36, 0), half = tests::noise(frames, 36, 1),
-       opposite = tests::noise(frames, 36, 2);
-  for (auto* x : {&reference, &half, &opposite}) {
-    for (double& v : *x) v *= 0.02;
-  }
-  tests::add_tone(reference, rate, f, 1.0, 0.4);
-  tests::add_tone(half, rate, f, 0.5, 0.4 + 0.3);
-  tests::add_tone(opposite, rate, f, 2.0, 0.4 + std::numbers::pi - 0.1);
-  const MemoryReader reader(rate, {{"r", reference}, {"h", half}, {"o", opposite}});
-  const auto spectra = spectral::cross_spectra(reader, all_frames(reader), {0, {1, 2}}, {.block_frames = 1024}, {});
-  const auto d = spectral::deflections(spectra, f);
-  REQUIRE(d.size() == 2);
-  CHECK(d[0].channel == "h");
-  CHECK(std::abs(d[0].magnitude.value - 0.5) < 4.0 * *d[0].magnitude.u);
-  CHECK(std::abs(d[0].phase.value - 0.3) < 4.0 * *d[0].phase.u);
-  CHECK(std::abs(d[1].magnitude.value - 2.0) < 4.0 * *d[1].magnitude.u);
-  CHECK(std::abs(d[1].phase.value - (std::numbers::pi - 0.1)) < 4.0 * *d[1].phase.u);
-  CHECK(*d[0].magnitude.u < 0.005);
-  CHECK(*d[1].coherence > 0.99);
-  CHECK_THROWS_AS(spectral::deflections(spectra, 900.0), base::Error);
 }
