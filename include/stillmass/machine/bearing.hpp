@@ -1,6 +1,7 @@
 #pragma once
 
 #include <optional>
+#include <string>
 #include <string_view>
 #include <vector>
 
@@ -26,5 +27,7 @@ BearingOrders bearing_orders(const Bearing& bearing);
 /// Geometries of data/tables/bearings.toml, each with its source there.
 std::vector<Bearing> bearing_table();
 std::optional<Bearing> bearing_named(std::string_view name);
+/// The size of the table whose name is nearest, for an error message; empty where none is near.
+std::string nearest_bearing(std::string_view name);
 
 }  // namespace stillmass::machine

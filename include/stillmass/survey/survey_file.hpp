@@ -53,7 +53,9 @@ struct Limit {
   std::string standard;  ///< "ISO 10816-7"; may be empty
   std::string category;  ///< "I", "II", a group or class; may be empty
   std::optional<double> shaft_height_m;
-  std::optional<double> target_m_s;  ///< broad-band r.m.s. velocity
+  std::optional<double> target_m_s;   ///< broad-band r.m.s. velocity
+  std::optional<double> alarm_m_s{};  ///< from which somebody must look
+  std::optional<double> trip_m_s{};   ///< from which the machine is stopped
 };
 
 /// A place where an absorber could be attached, and what is allowed there.

@@ -1,0 +1,74 @@
+#pragma once
+
+#include <cstddef>
+#include <optional>
+#include <string>
+#include <string_view>
+#include <vector>
+
+#include "stillmass/base/answer.hpp"
+#include "stillmass/base/context.hpp"
+#include "stillmass/base/estimate.hpp"
+#include "stillmass/base/interval.hpp"
+#include "stillmass/recording/reader.hpp"
+#include "stillmass/rotation/speed_curve.hpp"
+
+namespace stillmass::rotation {
+
+struct PowerCutOptions {
+  std::size_t channel = 0;         ///< position in `Recording::channels`
+  double electrical_hz = 100.0;    ///< twice the line frequency; the line itself is looked for within 0.3 %
+  std::optional<double> speed_hz;  ///< running speed before the cut, to follow the 1x line where there is no tacho
+  std::optional<base::Interval> time_s;  ///< part of the recording; absent: all of it
+  double block_s = 0.2;                  ///< length of the Hann window: what it sees is +-2 / block_s Hz wide
+};
+
+/// What became of the line when the power was cut.
+enum class PowerCutVerdict {
+  electrical,  ///< confirmed: the line fell at once, and nothing at its order went on with the speed
+  mechanical,  ///< refuted: its vibration goes on and follows the speed down
+  cannot_tell
+};
+/// "electrical", "mechanical", "cannot tell".
+std::string_view name(PowerCutVerdict verdict);
+
+/// The track behind the verdict, for a picture.
+struct PowerCutTrack {
+  std::vector<double> time_s;        ///< middle of the window
+  std::vector<double> at_frequency;  ///< r.m.s. at the electrical frequency
+  std::vector<double> at_order;      ///< r.m.s. at the order that frequency had before the cut
+  std::vector<double> speed_hz;
+};
+
+/// The test by switching off: a force of the motor's field ends with the current, one of the turning rotor does not.
+struct PowerCut {
+  PowerCutVerdict verdict = PowerCutVerdict::cannot_tell;
+  std::string reason;           ///< one sentence with the numbers
+  base::Estimate cut_s;         ///< when the line fell; of `cannot_tell` when the speed began to fall
+  base::Estimate frequency;     ///< of the line before the cut, Hz
+  base::Estimate before_rms;    ///< SI unit of the channel
+  base::Estimate after_rms;     ///< at the same frequency, from one window after the cut on
+  base::Estimate followed_rms;  ///< after the cut at the order the line had: what is mechanical goes on here
+  double noise_rms = 0.0;       ///< beside the line, after the cut, in the same window
+  base::Estimate fall_s;        ///< from 90 % to 10 % of the fall; no shorter than the window shows
+  double speed_before_hz = 0.0;
+  double speed_after_fall_hz = 0.0;  ///< when the line had fallen
+  PowerCutTrack track;
+};
+
+/// The line at twice the line frequency through a coast-down: complex base band under a Hann window of `block_s`, at a
+/// fixed frequency, and at the order that this frequency had before the cut (along the speed curve, or the 1x line
+/// followed by its own phase where there is none). Streams; the track grows by 4 / block_s values a second.
+///
+/// Electrical: before the cut at least 4 times the noise beside it, afterwards at its order less than a quarter of
+/// before or under twice the noise. Mechanical: at its order more than half of before goes on. Between: cannot tell.
+/// Also where a whole order of the speed lies so close before the cut (1.5 over the time before it) that the two are
+/// one line, or is half as strong and within the window's lobe (two-pole motors). Limits: common practice, simulated.
+///
+/// Refused: `no-power-cut` (the speed does not fall in this part, or less than two windows before or after it),
+/// `no-tacho` (neither a curve nor a speed, or the 1x line cannot be followed). Throws `Error` (usage) for a channel
+/// that is not there and a frequency above 0.4 of the rate.
+base::Answer<PowerCut> power_cut(const recording::Reader& reader, const PowerCutOptions& options,
+                                 const SpeedCurve* curve, const base::Context& context);
+
+}  // namespace stillmass::rotation
