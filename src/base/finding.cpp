@@ -103,9 +103,22 @@ constexpr auto codes = std::to_array<CodeText>({
      "flow at the wrong point, clearance at the cutwater", "check flow against the best point, then the clearance"},
     {Code::electrical_force, "electrical-force", "a strong line at twice the line frequency",
      "an uneven air gap or a soft foot", "check for soft foot; see whether it vanishes when the supply is cut"},
+    {Code::misalignment, "misalignment", "twice the running speed, or axial motion at running speed, at a coupling",
+     "shafts that do not line up at the coupling, warm and under load",
+     "compare phases across the coupling, then check the alignment at working temperature"},
+    {Code::looseness, "looseness", "many multiples of the running speed, or halves of it",
+     "a loose bolt, a worn fit or a cracked foot", "compare the motion of foot, frame and base at each joint"},
+    {Code::bent_shaft, "bent-shaft", "axial motion at running speed, opposite at the two ends of one rotor",
+     "a bent shaft, or a coupling or bearing seated askew", "turn it slowly and measure the run-out"},
+    {Code::bearing_damage, "bearing-damage", "shocks in the rhythm of a rolling-element bearing",
+     "a flaw on a ring, an element or the cage", "measure it again soon and follow the trend; plan the change"},
+    {Code::cavitation_like, "cavitation-like", "broad-band noise in short bursts",
+     "cavitation or recirculation in the pump", "compare suction pressure and flow with the pump's curve"},
+    {Code::soft_foot, "soft-foot", "motion at running speed along one direction, with an electrical line",
+     "a foot that does not rest flat, or a frame under strain", "measure the motion of each foot"},
 });
 
-static_assert(codes.size() == static_cast<std::size_t>(Code::electrical_force) + 1);
+static_assert(codes.size() == static_cast<std::size_t>(Code::soft_foot) + 1);
 
 }  // namespace
 

@@ -59,6 +59,12 @@ enum class Code {
   resonance,
   vane_pass_force,
   electrical_force,
+  misalignment,
+  looseness,
+  bent_shaft,
+  bearing_damage,
+  cavitation_like,
+  soft_foot,
 };
 
 /// What a code stands for, in words for people.
@@ -86,6 +92,8 @@ struct Finding {
   std::optional<double> to_s{};
   Strength strength = Strength::strong;
   std::vector<std::string> evidence{};
+  std::vector<std::string> confirm{};  ///< what to measure or try that would confirm it
+  std::vector<std::string> refute{};   ///< what would refute it
 };
 
 }  // namespace stillmass::base
