@@ -1,7 +1,9 @@
 #include "stillmass/numeric/statistics.hpp"
 
 #include <algorithm>
+#include <array>
 #include <cmath>
+#include <cstddef>
 
 #include "stillmass/base/error.hpp"
 
@@ -49,7 +51,43 @@ void RunningMoments::add(double x) {
 }
 
 void RunningMoments::add(std::span<const double> values) {
-  for (const double x : values) add(x);
+  // About the mean of so many values at a time, which stay in the cache, in independent sums, which the compiler turns
+  // into vector code: no division a value, and more exact than value by value.
+  constexpr std::size_t at_once = 1024;
+  constexpr std::size_t lanes = 4;
+  for (std::size_t from = 0; from < values.size(); from += at_once) {
+    const auto part = values.subspan(from, std::min(at_once, values.size() - from));
+    const std::size_t whole = part.size() / lanes * lanes;
+    std::array<double, lanes> sum{};
+    for (std::size_t i = 0; i < whole; i += lanes) {
+      for (std::size_t k = 0; k < lanes; ++k) sum[k] += part[i + k] - part[0];
+    }
+    double total = 0.0;  // above the first, so that equal values have exactly their mean
+    for (std::size_t i = whole; i < part.size(); ++i) total += part[i] - part[0];
+    for (const double each : sum) total += each;
+
+    RunningMoments fresh;
+    fresh.count_ = part.size();
+    fresh.mean_ = part[0] + total / static_cast<double>(part.size());
+    std::array<double, lanes> second{}, third{}, fourth{};
+    const auto add_power = [&](std::size_t k, double x) {
+      const double d = x - fresh.mean_;
+      const double square = d * d;
+      second[k] += square;
+      third[k] += square * d;
+      fourth[k] += square * square;
+    };
+    for (std::size_t i = 0; i < whole; i += lanes) {
+      for (std::size_t k = 0; k < lanes; ++k) add_power(k, part[i + k]);
+    }
+    for (std::size_t i = whole; i < part.size(); ++i) add_power(0, part[i]);
+    for (std::size_t k = 0; k < lanes; ++k) {
+      fresh.m2_ += second[k];
+      fresh.m3_ += third[k];
+      fresh.m4_ += fourth[k];
+    }
+    merge(fresh);
+  }
 }
 
 void RunningMoments::merge(const RunningMoments& other) {
