@@ -6,7 +6,6 @@
 #include <cstddef>
 #include <limits>
 #include <span>
-#include <utility>
 
 #include "stillmass/numeric/statistics.hpp"
 
@@ -15,30 +14,8 @@
 namespace stillmass::recording {
 namespace {
 
-constexpr std::size_t at_once = 1024;  // samples whose moments are taken about their own mean; they stay in the cache
-constexpr std::size_t lanes = 8;       // independent extremes, which the compiler turns into vector code
+constexpr std::size_t at_once = 1024;  // samples looked at together; they stay in the cache
 constexpr double limit_steps = 1.5;    // so close to full scale a sample counts as at the end of the range
-
-// Least and greatest; not of an empty span.
-std::pair<double, double> extremes(std::span<const double> samples) {
-  std::array<double, lanes> low;
-  std::array<double, lanes> high;
-  low.fill(samples[0]);
-  high.fill(samples[0]);
-  std::size_t i = 0;
-  for (; i + lanes <= samples.size(); i += lanes) {
-    for (std::size_t k = 0; k < lanes; ++k) {
-      const double x = samples[i + k];
-      low[k] = x < low[k] ? x : low[k];
-      high[k] = x > high[k] ? x : high[k];
-    }
-  }
-  for (; i < samples.size(); ++i) {
-    low[0] = std::min(low[0], samples[i]);
-    high[0] = std::max(high[0], samples[i]);
-  }
-  return {*std::min_element(low.begin(), low.end()), *std::max_element(high.begin(), high.end())};
-}
 
 // What is gathered of one channel over a range of frames.
 class Features {
@@ -95,7 +72,7 @@ class Features {
  private:
   void take_part(std::span<const double> part, std::int64_t first_frame, std::size_t segment) {
     const bool adjacent = moments_.count() > 0 && first_frame == end_ && segment == last_segment_;
-    const auto [least, greatest] = extremes(part);
+    const auto [least, greatest] = numeric::extremes(part);
     extend(top_, part, 1.0, greatest, adjacent);
     extend(bottom_, part, -1.0, -least, adjacent);
     if (std::max(greatest - offset_, offset_ - least) >= limit_) {
