@@ -5,6 +5,8 @@
 #include <span>
 #include <vector>
 
+#include "stillmass/base/interval.hpp"
+
 namespace stillmass::numeric {
 
 /// Linear between the order statistics (Hyndman & Fan 1996, type 7; SciPy's and NumPy's default). probability 0 to 1;
@@ -13,6 +15,9 @@ double quantile(std::vector<double> values, double probability);
 double median(std::vector<double> values);
 /// Median of |x - median|, times 1.4826: the standard deviation, where the values are normal.
 double mad_scale(std::vector<double> values);
+
+/// Least and greatest value; values not empty, else `Error` (internal).
+base::Interval extremes(std::span<const double> values);
 
 /// Mean and moments in one pass, mergeable: the result does not depend on the order beyond rounding.
 /// Source: Welford 1962; merging after Chan, Golub & LeVeque 1983 and Pebay 2008 (third and fourth moment; from

@@ -34,10 +34,10 @@ struct ChannelFeatures {
   bool is_cut() const { return flat_top >= 3 || at_full_scale.value_or(0) > 0; }
 };
 
-/// The features as a cheap consumer, so that they can share the pass of the spectra. Moments are taken about the mean
-/// of 1024 samples at a time and merged (Chan, Golub & LeVeque 1983; Pebay 2008; from memory), so an offset of a
-/// million times the signal costs no more digits than it costs the samples. However the pass is cut the counts are the
-/// same and the other numbers agree to rounding; the number of threads changes no bit.
+/// The features as a cheap consumer, so that they can share the pass of the spectra. Moments are taken of
+/// 1024 samples at a time about one of them and merged (Chan, Golub & LeVeque 1983; Pebay 2008; from memory), so an
+/// offset of a million times the signal costs no more digits than it costs the samples. However the pass is cut the
+/// counts are the same and the other numbers agree to rounding; the number of threads changes no bit.
 class TimeFeatures final : public Consumer {
  public:
   /// The recording must outlive the consumer.
