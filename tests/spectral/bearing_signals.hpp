@@ -36,7 +36,8 @@ inline void add_blows(std::vector<double>& x, double rate_hz, const Blows& blows
     const auto end = std::min(x.size(), static_cast<std::size_t>((at + length_s) * rate_hz));
     for (std::size_t n = first; n < end; ++n) {
       const double t = static_cast<double>(n) / rate_hz - at;
-      x[n] += strength * std::exp(-blows.damping * omega * t) * std::sin(omega * std::sqrt(1.0 - blows.damping * blows.damping) * t);
+      x[n] += strength * std::exp(-blows.damping * omega * t) *
+              std::sin(omega * std::sqrt(1.0 - blows.damping * blows.damping) * t);
     }
     at += (1.0 + blows.slip * random.normal(77, i)) / blows.per_second;
   }
