@@ -20,10 +20,10 @@
 namespace stillmass::spectral {
 
 struct EnvelopeOptions {
-  SpectrumOptions spectrum;                 ///< window, overlap and lines of the envelope spectrum; averaging: mean
+  SpectrumOptions spectrum{};               ///< window, overlap and lines of the envelope spectrum; averaging: mean
   double highest_hz = 1000.0;               ///< of the envelope spectrum; no more than the width of the band
   std::optional<base::Interval> band_hz{};  ///< without it the most impulsive band of each channel is taken
-  BandSearchOptions search;
+  BandSearchOptions search{};
 };
 
 /// The envelope of what a channel does in a band, |x + i Hilbert(x)|, and its averaged spectrum. It is the plain

@@ -32,8 +32,9 @@ struct BandSearchOptions {
 /// Process. 20 (2006) 282.
 struct BandKurtosis {
   base::Interval band_hz;
-  double kurtosis = 0.0;   ///< lower median over the stretches: one thump does not lift it
-  double strongest = 0.0;  ///< greatest of a single stretch
+  double kurtosis = 0.0;        ///< lower median over the stretches: one thump does not lift it
+  double strongest = 0.0;       ///< greatest of a single stretch
+  double strongest_at_s = 0.0;  ///< middle of that stretch, from the start of the recording
   double limit = 0.0;  ///< what Gaussian noise of the same spectrum and length exceeds with the chance of the search
                        ///< shared among its bands
 };
