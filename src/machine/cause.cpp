@@ -1,3 +1,5 @@
+#include "stillmass/machine/cause.hpp"
+
 #include <algorithm>
 #include <cmath>
 
@@ -8,28 +10,49 @@
 namespace stillmass::machine {
 namespace {
 
-constexpr double loose = 0.01;  // 3 u above this share of the frequency: a loose fit
+constexpr double loose = 0.01;     // 3 u above this share of the frequency: a loose fit
+constexpr double furthest = 0.02;  // share of the frequency beyond which nothing fits
+constexpr double far_lines = 3.0;  // nor beyond so many lines, where that is more
+
+double tight_reach(double frequency, double resolution_hz) { return std::max(resolution_hz, loose * frequency); }
 
 struct Fit {
   std::size_t forcing = 0;
   double distance = 0.0;
-  double spread = 0.0;  // 3 u
+  double u = 0.0;
+  bool tight = true;
+  int rank = 0;
 };
 
-// The forcing frequencies that the peak may be; loose ones only where no tight one is there.
+// The forcing frequencies that the peak may be, nearest first.
 std::vector<Fit> fits(const base::Estimate& peak, double resolution_hz, std::span<const Forcing> forcing) {
-  const double tight = std::max(resolution_hz, loose * peak.value);
   const double peak_u = peak.u.value_or(resolution_hz / std::sqrt(12.0));
+  const double bound = std::max(furthest * peak.value, far_lines * resolution_hz);
   std::vector<Fit> out;
   for (std::size_t i = 0; i < forcing.size(); ++i) {
-    Fit fit{i, std::abs(peak.value - forcing[i].frequency.value),
-            3.0 * std::hypot(peak_u, forcing[i].frequency.u.value_or(0.0))};
-    if (fit.distance <= std::max(resolution_hz, fit.spread)) out.push_back(fit);
+    const double u = std::hypot(peak_u, forcing[i].frequency.u.value_or(0.0));
+    const double distance = std::abs(peak.value - forcing[i].frequency.value);
+    if (distance > std::min(std::max(resolution_hz, 3.0 * u), bound)) continue;
+    out.push_back({i, distance, u, 3.0 * u <= tight_reach(peak.value, resolution_hz), forcing[i].rank});
   }
-  const bool any_tight = std::any_of(out.begin(), out.end(), [&](const Fit& fit) { return fit.spread <= tight; });
-  if (any_tight) std::erase_if(out, [&](const Fit& fit) { return fit.spread > tight; });
   std::stable_sort(out.begin(), out.end(), [](const Fit& a, const Fit& b) { return a.distance < b.distance; });
   return out;
+}
+
+// Puts those that count first, in their order, and says how many they are.
+std::size_t put_best_first(std::vector<Fit>& found, double resolution_hz) {
+  auto end = found.end();
+  const auto keep = [&](const auto& counts) { end = std::stable_partition(found.begin(), end, counts); };
+  if (std::any_of(found.begin(), found.end(), [](const Fit& fit) { return fit.tight; })) {
+    keep([](const Fit& fit) { return fit.tight; });
+  }
+  if (end == found.begin()) return 0;
+  const double near = std::max({found.front().distance, found.front().u, 0.25 * resolution_hz});
+  keep([&](const Fit& fit) { return fit.distance <= 3.0 * near; });
+  int rank = found.front().rank;
+  for (auto each = found.begin(); each != end; ++each) rank = std::min(rank, each->rank);
+  keep([&](const Fit& fit) { return fit.rank == rank; });
+  return static_cast<std::size_t>(end - found.begin());
 }
 
 std::optional<std::size_t> mode_at(double frequency, std::span<const modal::Mode> modes) {
@@ -43,33 +66,55 @@ std::optional<std::size_t> mode_at(double frequency, std::span<const modal::Mode
   return nearest;
 }
 
+base::Strength strength_of(const Fit& only) {
+  const int steps = (only.tight ? 0 : 1) + (only.rank > 0 ? 1 : 0);
+  return steps == 0 ? base::Strength::strong : steps == 1 ? base::Strength::fair : base::Strength::weak;
+}
+
+void call_ambiguous(Cause& cause, std::span<const Fit> alike, std::span<const Forcing> forcing, double resolution_hz) {
+  cause.ambiguous = true;
+  for (const Fit& fit : alike) cause.text += (cause.text.empty() ? "" : " or ") + forcing[fit.forcing].name;
+  const double apart = std::abs(forcing[alike[0].forcing].frequency.value - forcing[alike[1].forcing].frequency.value);
+  cause.text += fmt::format(" (not separated: {:.2g} Hz apart, lines {:.2g} Hz)", apart, resolution_hz);
+}
+
 }  // namespace
 
 Cause cause_of_peak(const base::Estimate& frequency, double resolution_hz, std::span<const Forcing> forcing,
-                    std::span<const modal::Mode> modes) {
+                    std::span<const modal::Mode> modes, bool in_background) {
   Cause cause;
   cause.mode = mode_at(frequency.value, modes);
-  const std::vector<Fit> found = fits(frequency, resolution_hz, forcing);
+  std::vector<Fit> found = fits(frequency, resolution_hz, forcing);
+  const std::size_t best = put_best_first(found, resolution_hz);
   for (const Fit& fit : found) cause.candidates.push_back(fit.forcing);
-  if (found.size() > 1) {
-    cause.ambiguous = true;
-    for (const Fit& fit : found) cause.text += (cause.text.empty() ? "" : " or ") + forcing[fit.forcing].name;
-    const double apart =
-        std::abs(forcing[found[0].forcing].frequency.value - forcing[found[1].forcing].frequency.value);
-    cause.text += fmt::format(" (not separated: {:.2g} Hz apart, lines {:.2g} Hz)", apart, resolution_hz);
-  } else if (found.size() == 1) {
+  if (in_background) {
+    cause.text = background;
+    cause.from_background = true;
+    cause.strength = base::Strength::fair;
+  } else if (best > 1) {
+    call_ambiguous(cause, std::span(found).first(best), forcing, resolution_hz);
+  } else if (best == 1) {
     cause.forcing = found[0].forcing;
     cause.text = forcing[found[0].forcing].name;
-    cause.strength = found[0].spread <= std::max(resolution_hz, loose * frequency.value) ? base::Strength::strong
-                                                                                         : base::Strength::fair;
+    cause.strength = strength_of(found[0]);
   } else if (cause.mode) {
     const modal::Mode& mode = modes[*cause.mode];
     cause.text = fmt::format("natural frequency {:.4g} Hz", mode.frequency.value);
     cause.strength = base::Strength::fair;
   } else {
-    cause.text = "unknown";
+    cause.text = unexplained;
   }
   return cause;
+}
+
+bool stands_in_background(const Peak& peak, std::span<const Peak> of_stopped_machine, double resolution_hz,
+                          double share) {
+  const double line_u = resolution_hz / std::sqrt(12.0);
+  return std::any_of(of_stopped_machine.begin(), of_stopped_machine.end(), [&](const Peak& each) {
+    const double u = std::hypot(peak.frequency.u.value_or(line_u), each.frequency.u.value_or(line_u));
+    return each.channel == peak.channel && each.amplitude >= share * peak.amplitude &&
+           std::abs(each.frequency.value - peak.frequency.value) <= std::max(resolution_hz, 3.0 * u);
+  });
 }
 
 }  // namespace stillmass::machine

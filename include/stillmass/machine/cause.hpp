@@ -44,14 +44,14 @@ struct Cause {
 /// is more: an uncertain speed must not let a high harmonic explain everything.
 ///
 /// Which of several counts: a tight fit before a loose one (loose: 3 u passes both a line and 1 % of the frequency);
-/// among the tight ones the lower `rank`; and one that fits within its own u (distance below a line or 2 u) before one
-/// three times as far away. What still stands side by side cannot be told apart at this resolution and is called
+/// then one before those three times as far away (a distance below its u or a quarter of a line counts as that much);
+/// then the lower `rank`. What still stands side by side cannot be told apart at this resolution and is called
 /// ambiguous. `candidates` has them all.
 ///
-/// Strong: one tight fit of rank 0; fair: one tight fit of another rank, one loose fit, or no fit and a natural
-/// frequency there (within half its half-power bandwidth and 2 u), or the background; weak: ambiguous or nothing.
-/// resolution_hz: spacing of the spectrum's lines, > 0. in_background: see `stands_in_background`; such a peak is given
-/// no force, but keeps its candidates.
+/// Strong: one tight fit of rank 0; fair: one tight fit of another rank, one loose fit of rank 0, or no fit and a
+/// natural frequency there (within half its half-power bandwidth and 2 u), or the background; weak: a loose fit of
+/// another rank, ambiguous, or nothing. resolution_hz: spacing of the spectrum's lines, > 0. in_background: see
+/// `stands_in_background`; such a peak is given no force, but keeps its candidates.
 Cause cause_of_peak(const base::Estimate& frequency, double resolution_hz, std::span<const Forcing> forcing,
                     std::span<const modal::Mode> modes = {}, bool in_background = false);
 

@@ -43,7 +43,7 @@ struct Forcing {
   std::string part{};           ///< of a bearing: "6205"; of a shaft's belt or gear: that shaft
   /// Which counts where several fit a peak: 0 before 1 before 2. 0: orders, vane pass, twice line frequency, gear mesh,
   /// bearing and belt frequencies; 1: side bands, harmonics of gear mesh, bearings and belts, line frequency, rotor
-  /// bars; 2: half orders.
+  /// bars; 2: half orders, slip side bands.
   int rank = 0;
 };
 
@@ -78,9 +78,9 @@ struct ClosePair {
 
 /// The two nearest neighbours among the frequencies that a diagnosis must tell apart at about this speed (Hz): orders,
 /// vane pass, twice electrical frequency, line frequency, pole-pass bands; absent where there are no two. Those closer
-/// than `least_hz` coincide for any recording of reasonable length and are passed over, and so are half orders,
-/// bearings, belts and gears (their neighbours are far away or cannot be parted). Under a Hann window lines a quarter
-/// of the distance apart part two tones: its main lobe is 4 lines wide (Harris, Proc. IEEE 66(1), 1978).
+/// than `least_hz` coincide for any recording of reasonable length and are passed over, and so are half orders, slip
+/// bands, bearings, belts and gears (their neighbours are far away or cannot be parted). Under a Hann window lines a
+/// quarter of the distance apart part two tones: its main lobe is 4 lines wide (Harris, Proc. IEEE 66(1), 1978).
 std::optional<ClosePair> smallest_distance(const Machine& machine, double speed_hz, double least_hz = 0.1);
 
 }  // namespace stillmass::machine

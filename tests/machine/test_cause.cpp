@@ -1,0 +1,126 @@
+#include "stillmass/machine/cause.hpp"
+#include "stillmass/machine/forcing.hpp"
+
+#include "support/catch.hpp"
+
+using namespace stillmass;
+using machine::Machine;
+
+namespace {
+
+base::Estimate hertz(double value, std::optional<double> u = {}) {
+  base::Estimate out;
+  out.value = value;
+  out.u = u;
+  out.quantity = base::Quantity::frequency;
+  return out;
+}
+
+Machine two_pole_pump() {
+  Machine out;
+  out.kind = machine::MachineKind::pump;
+  out.speed_hz = base::Interval{2960.0 / 60.0, 2960.0 / 60.0};
+  out.line_frequency_hz = 50.0;
+  out.motor_poles = 2;
+  out.vanes = 6;
+  return out;
+}
+
+modal::Mode mode_at(double frequency, double zeta) {
+  modal::Mode out;
+  out.frequency = hertz(frequency, 0.1);
+  out.damping_ratio.value = zeta;
+  return out;
+}
+
+}  // namespace
+
+TEST_CASE("2x of a two-pole motor and twice line frequency are told apart only where the lines are fine enough") {
+  const auto list = machine::forcing_frequencies(two_pole_pump(), hertz(49.4, 0.01));  // 2x: 98.8 Hz, 1.2 Hz below 100
+  const auto coarse = machine::cause_of_peak(hertz(99.2, 0.1), 1.25, list);
+  CHECK(coarse.ambiguous);
+  CHECK_FALSE(coarse.forcing);
+  CHECK(coarse.candidates.size() == 2);
+  CHECK(coarse.strength == base::Strength::weak);
+  CHECK(coarse.text.find("2x") != std::string::npos);
+  CHECK(coarse.text.find("twice line frequency") != std::string::npos);
+
+  const auto low = machine::cause_of_peak(hertz(98.81, 0.02), 0.25, list);
+  CHECK_FALSE(low.ambiguous);
+  CHECK(low.text == "2x");
+  CHECK(low.strength == base::Strength::strong);
+  const auto high = machine::cause_of_peak(hertz(99.99, 0.02), 0.25, list);
+  CHECK(high.text == "twice line frequency");
+}
+
+TEST_CASE("a tight fit counts before a bearing that could be anywhere near") {
+  Machine machine = two_pole_pump();
+  machine.bearings = {{"wide", 8, 0.010, 0.0405, 0.0, ""}};  // outer ring 3.01 per turn
+  const auto list = machine::forcing_frequencies(machine, hertz(49.4, 0.01));
+  const auto cause = machine::cause_of_peak(hertz(148.2, 0.05), 0.5, list);
+  CHECK(cause.text == "3x");
+  CHECK(cause.candidates.size() == 2);
+  const auto beside = machine::cause_of_peak(hertz(150.9, 0.05), 0.5, list);
+  CHECK(beside.text == "outer ring of bearing wide");
+  CHECK(beside.strength == base::Strength::fair);
+}
+
+TEST_CASE("no bearing explains a peak more than 2 % away from it") {
+  // Cages slip by 1 to 2 % (common practice): 3 % off is another cause.
+  Machine machine = two_pole_pump();
+  machine.bearings = {{"wide", 8, 0.010, 0.0405, 0.0, ""}};
+  const auto list = machine::forcing_frequencies(machine, hertz(49.4, 0.01));
+  const double outer = 4.0 * (1.0 - 0.010 / 0.0405) * 49.4;
+  CHECK(machine::cause_of_peak(hertz(1.018 * outer, 0.05), 0.5, list).text == "outer ring of bearing wide");
+  CHECK(machine::cause_of_peak(hertz(1.024 * outer, 0.05), 0.5, list).text == "unexplained");
+}
+
+TEST_CASE("an uncertain speed does not let a high order explain everything") {
+  const auto list = machine::forcing_frequencies(two_pole_pump(), hertz(49.4, 0.6));  // 12x: 592.8 +- 7.2 Hz
+  const auto far = machine::cause_of_peak(hertz(610.0, 0.05), 0.5, list);             // within 3 u, but 2.9 % away
+  CHECK(far.text == "unexplained");
+}
+
+TEST_CASE("a half order is named where it fits, and never makes 1x ambiguous") {
+  const auto list = machine::forcing_frequencies(two_pole_pump(), hertz(49.4, 0.01));
+  const auto half = machine::cause_of_peak(hertz(24.72, 0.02), 0.25, list);
+  CHECK(half.text == "0.5x");
+  CHECK(half.strength == base::Strength::fair);
+  const auto coarse = machine::cause_of_peak(hertz(60.0, 1.0), 30.0, list);
+  CHECK(coarse.text.find(".5x") == std::string::npos);
+}
+
+TEST_CASE("a pole-pass band one line beside 1x is the band, and the line at 1x is 1x") {
+  Machine motor;
+  motor.line_frequency_hz = 50.0;
+  motor.motor_poles = 4;
+  const auto list = machine::forcing_frequencies(motor, hertz(24.93, 0.002));  // slip 0.07 Hz, pole pass 0.28 Hz
+  CHECK(machine::cause_of_peak(hertz(24.65, 0.01), 0.25, list).text == "1x - pole pass");
+  CHECK(machine::cause_of_peak(hertz(24.93, 0.01), 0.25, list).text == "1x");
+}
+
+TEST_CASE("a peak that no forcing explains is a natural frequency where one is, else unexplained") {
+  const auto list = machine::forcing_frequencies(two_pole_pump(), hertz(49.4, 0.01));
+  const std::vector<modal::Mode> modes = {mode_at(31.0, 0.02)};
+  const auto natural = machine::cause_of_peak(hertz(31.3, 0.05), 0.5, list, modes);
+  CHECK(natural.text == "natural frequency 31 Hz");
+  CHECK(natural.mode == std::size_t{0});
+  CHECK_FALSE(natural.forcing);
+  const auto none = machine::cause_of_peak(hertz(70.0, 0.05), 0.5, list, modes);
+  CHECK(none.text == "unexplained");
+  CHECK(none.candidates.empty());
+}
+
+TEST_CASE("a peak that the stopped machine shows too is the background's, whatever fits") {
+  const auto list = machine::forcing_frequencies(two_pole_pump(), hertz(49.4, 0.01));
+  const machine::Peak peak{hertz(49.41, 0.01), 2.0, 1};
+  const std::vector<machine::Peak> stopped = {{hertz(49.40, 0.01), 1.5, 1}, {hertz(98.8, 0.01), 9.0, 0}};
+  CHECK(machine::stands_in_background(peak, stopped, 0.25));
+  const auto cause = machine::cause_of_peak(peak.frequency, 0.25, list, {}, true);
+  CHECK(cause.text == "background");
+  CHECK(cause.from_background);
+  CHECK_FALSE(cause.forcing);
+  CHECK_FALSE(cause.candidates.empty());
+  CHECK_FALSE(machine::stands_in_background({hertz(49.41, 0.01), 4.0, 1}, stopped, 0.25));  // twice as strong now
+  CHECK_FALSE(machine::stands_in_background({hertz(98.8, 0.01), 2.0, 1}, stopped, 0.25));   // another channel's
+}
