@@ -121,13 +121,17 @@ std::vector<Finding> diagnosis(const Survey& survey, const step::SpectrumResult&
   machine::Facts facts;
   facts.machine = survey.machine;
   facts.forcing = spectra.forcing;
+  facts.speed = spectra.speed;
   facts.modes = modes;
   for (const step::ChannelSpectrum& channel : spectra.channels) {
     if (channel.shown.quantity != Quantity::velocity) continue;
+    machine::ChannelFacts& of = facts.channels.emplace_back();
+    of.name = channel.channel.name;
+    of.velocity = channel.severity_velocity;
+    of.line_hz = channel.shown.line_hz;
     for (const step::SpectralPeak& peak : channel.peaks) {
-      facts.peaks.push_back({channel.channel.name, {peak.tone.frequency, peak.tone.amplitude_rms.value}, peak.cause});
+      of.tones.push_back({peak.tone.frequency, peak.tone.amplitude_rms, peak.cause, false});
     }
-    if (channel.severity_velocity) facts.levels.push_back({channel.channel.name, channel.severity_velocity->value});
   }
   return machine::diagnose(facts, machine::diagnosis_rules());
 }

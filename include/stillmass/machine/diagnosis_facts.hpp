@@ -62,7 +62,7 @@ struct ChannelFacts {
   std::optional<double> smooth_limit;        ///< the limit below which the machine is as good as new (zone A/B), m/s
   std::vector<CausedTone> tones;             ///< any order
   double line_hz = 0.0;                      ///< spacing of the spectrum's lines, Hz; 0: not known
-  std::vector<ToneFamily> families;          ///< optional: harmonics are counted from the tones too
+  std::vector<ToneFamily> families;          ///< those of side bands count; harmonics are counted from the tones
   std::optional<double> noise_velocity;      ///< r.m.s. velocity of what is left of the level without its tones, m/s
   std::optional<double> acceleration;        ///< r.m.s. acceleration over all that was measured, m/s2
   std::optional<double> noise_acceleration;  ///< r.m.s. acceleration above 1 kHz without its tones, m/s2
