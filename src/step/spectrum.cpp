@@ -1,174 +1,234 @@
 #include "stillmass/step/spectrum.hpp"
 
 #include <algorithm>
+#include <array>
 #include <cmath>
 #include <utility>
 
-#include "stillmass/base/number.hpp"
-#include "stillmass/spectral/level.hpp"
+#include <fmt/format.h>
+
 #include "stillmass/spectral/quantity.hpp"
 #include "stillmass/spectral/spectral_quality.hpp"
+#include "stillmass/step/diagnosis.hpp"
+
+#include "step/extras.hpp"
+#include "step/fine_tones.hpp"
+#include "step/levels.hpp"
 
 namespace stillmass::step {
 namespace {
 
+using base::Estimate;
 using base::Interval;
 using base::Quantity;
 
-constexpr Interval severity_band{10.0, 1000.0};      // ISO 10816-1 and its parts
-constexpr Interval slow_severity_band{2.0, 1000.0};  // for speeds up to 600 r/min (from memory)
+constexpr std::size_t most_tones = 60;      // of a channel: for causes and families
+constexpr std::int64_t full_scale_run = 3;  // samples at full scale that make a finding (as `check` has it)
 
-Interval standard_band(const Site& site) {
-  const bool slow = site.machine && site.machine->speed_hz && site.machine->speed_hz->lo <= 10.0;
-  return slow ? slow_severity_band : severity_band;
-}
-
-spectral::Spectrum in_quantity(const spectral::Spectrum& measured, Quantity wanted) {
-  if (!base::is_motion(measured.quantity) || measured.quantity == wanted) return measured;
-  const double low = spectral::slope_end_hz(measured).value_or(0.0);
-  return spectral::as_quantity(measured, wanted, low);
-}
-
-// A level with the uncertainty of the sensor's calibration in its own, where one was made.
-std::optional<base::Estimate> with_calibration(std::optional<base::Estimate> level, const recording::Channel& channel) {
-  if (level && level->u && channel.factor_u) level->u = std::hypot(*level->u, *channel.factor_u * level->value);
-  return level;
-}
-
-// The part of a band that the spectrum holds; nothing where they do not meet.
-std::optional<Interval> held(const spectral::Spectrum& spectrum, Interval band) {
-  if (spectrum.density.empty()) return {};
-  const Interval given{spectrum.frequency(spectrum.first_line), spectrum.rate_hz / 2.0};
-  if (!band.intersects(given) || given.lo >= given.hi) return {};
-  return Interval{std::max(band.lo, given.lo), std::min(band.hi, given.hi)};
-}
-
-// The level in that part.
-std::optional<base::Estimate> level(const spectral::Spectrum& spectrum, Interval band) {
-  const auto part = held(spectrum, band);
-  if (!part) return {};
-  return spectral::band_rms(spectrum, *part);
-}
-
-base::Answer<Severity> severity_of(const ChannelSpectrum& channel, const SpectrumRequest& request,
-                                   const spectral::Spectrum& velocity) {
-  if (!request.site.machine) {
-    return base::Refusal{"limit-unknown", "nothing is said of the machine", "give --survey with [machine] and [limit]"};
-  }
-  const SitePoint* point = request.site.point(channel.channel.point);
-  if (point == nullptr) {
-    return base::Refusal{"limit-unknown", "nothing is said of the measuring point",
-                         "name the channel's point in the survey file"};
-  }
-  machine::SeverityQuestion question;
-  question.standard = request.site.standard;
-  question.category = request.site.category;
-  question.direction = point->direction;
-  question.on_bearing_housing = point->on_bearing_housing;
-  const auto limits = machine::severity_limits(*request.site.machine, question);
-  if (!limits) return limits.refusal();
-  const double top = velocity.rate_hz / 2.0;
-  if (velocity.frequency(velocity.first_line) > limits->band_hz.lo * 1.1 || top < limits->band_hz.hi * 0.4) {
-    return base::Refusal{"limit-unknown",
-                         "the spectrum covers only " + base::rounded(velocity.frequency(velocity.first_line)) + " to " +
-                             base::rounded(top) + " Hz",
-                         "record at 2560 Hz or more, for long enough, with a sensor that reaches " +
-                             base::rounded(limits->band_hz.lo) + " Hz"};
-  }
-  const auto value = level(velocity, limits->band_hz);
-  const auto displacement = level(in_quantity(channel.measured, Quantity::displacement), limits->band_hz);
-  std::optional<double> moved;
-  if (displacement) moved = displacement->value;
-  return Severity{*limits, machine::zone(*limits, value->value, moved), value->value};
-}
-
-std::vector<machine::Peak> peaks_of(const std::vector<spectral::Tone>& tones) {
-  std::vector<machine::Peak> peaks;
-  for (const spectral::Tone& tone : tones) peaks.push_back({tone.frequency, tone.amplitude_rms.value});
-  return peaks;
-}
-
-// The running speed: as said, or from the strongest lines of all channels.
-std::optional<base::Estimate> speed_from(const SpectrumRequest& request,
-                                         const std::vector<std::vector<spectral::Tone>>& tones) {
-  if (!request.site.machine) {
-    if (!request.speed_hz) return {};
-    return base::Estimate{*request.speed_hz, {}, {}, Quantity::speed};
-  }
-  machine::Machine machine = *request.site.machine;
+// What is known of the machine, with the speed of this recording.
+std::optional<machine::Machine> machine_of(const SpectrumRequest& request) {
+  if (!request.site.machine && !request.speed_hz) return {};
+  machine::Machine machine = request.site.machine.value_or(machine::Machine{});
   if (request.speed_hz) machine.speed_hz = Interval{*request.speed_hz, *request.speed_hz};
-  std::optional<base::Estimate> best;
-  double strongest = 0.0;
-  for (const auto& of_channel : tones) {
-    const std::vector<machine::Peak> peaks = peaks_of(of_channel);
-    const auto speed = machine::running_speed(peaks, machine);
-    if (!speed) continue;
-    const auto line = std::find_if(peaks.begin(), peaks.end(),
-                                   [&](const machine::Peak& peak) { return peak.frequency.value == speed->value; });
-    const double amplitude = line == peaks.end() ? 0.0 : line->amplitude;
-    if (best && amplitude <= strongest) continue;
-    best = *speed;
-    strongest = amplitude;
-  }
-  if (!best && request.speed_hz) best = base::Estimate{*request.speed_hz, {}, {}, Quantity::speed};
-  return best;
+  return machine;
 }
+
+// What helps to choose the blocks: the speed, and how close its forcing frequencies lie.
+spectral::SpectrumOptions informed(spectral::SpectrumOptions options, const std::optional<machine::Machine>& machine) {
+  if (!machine || !machine->speed_hz) return options;
+  const double speed = machine->speed_hz->middle();
+  if (!options.speed_hz) options.speed_hz = speed;
+  if (const auto pair = machine::smallest_distance(*machine, speed); pair && !options.separate_hz) {
+    options.separate_hz = pair->distance_hz;
+  }
+  return options;
+}
+
+void measure(SpectrumResult& result, const recording::Reader& reader, const SpectrumRequest& request,
+             const base::Context& context) {
+  spectral::SpectrumConsumer spectra(result.recording, result.range, result.options);
+  recording::TimeFeatures features(result.recording);
+  const std::array<recording::Consumer*, 2> consumers{&spectra, &features};
+  recording::run_pass(reader, result.range, consumers, context, "spectra");
+  const auto all_spectra = spectra.spectra();
+  const auto all_features = features.result();
+  for (std::size_t c = 0; c < all_spectra.size(); ++c) {
+    const recording::Channel& channel = result.recording.channels[c];
+    if (channel.role == recording::Role::tacho) continue;
+    ChannelSpectrum& each = result.channels.emplace_back();
+    each.channel = channel;
+    each.features = all_features[c];
+    each.measured = all_spectra[c];
+    each.shown = in_quantity(all_spectra[c], request.quantity.value_or(Quantity::velocity));
+    if (each.shown.integrations > 0) each.low_limit_hz = each.shown.frequency(each.shown.first_line);
+    each.band_hz = request.band_hz.value_or(standard_band(request.site));
+    if (auto overall = level(each.shown, each.band_hz)) each.overall = with_calibration(*overall, channel);
+    each.band_hz = held(each.shown, each.band_hz).value_or(each.band_hz);  // what was summed, and no more, is stated
+    if (each.measured.density.empty()) {
+      each.findings.push_back({base::Code::missing_values, "no block of valid samples in the part used", channel.name});
+    } else {
+      each.third_octaves =
+          spectral::third_octaves(each.shown, {0.0, request.max_frequency_hz.value_or(0.5 * result.recording.rate_hz)});
+      if (channel.role == recording::Role::vibration) {
+        each.findings = spectral::spectral_findings(
+            each.measured, channel, request.site.machine ? request.site.machine->line_frequency_hz : std::nullopt);
+      }
+    }
+    if (each.features.at_full_scale.value_or(0) >= full_scale_run) {
+      each.findings.push_back(
+          {base::Code::clipped,
+           fmt::format("{} samples stand at the recorder's full scale: levels are too low, lines may be false",
+                       *each.features.at_full_scale),
+           channel.name});
+    }
+  }
+}
+
+// As another quantity of motion at its own frequency.
+spectral::Tone as_velocity(spectral::Tone tone) {
+  const auto n = spectral::integrations_between(tone.amplitude_rms.quantity, Quantity::velocity);
+  const double factor = std::abs(spectral::integration_factor(n.value_or(0), tone.frequency.value));
+  tone.amplitude_rms.value *= factor;
+  if (tone.amplitude_rms.u) *tone.amplitude_rms.u *= factor;
+  tone.amplitude_rms.quantity = Quantity::velocity;
+  tone.floor_density *= factor * factor;
+  return tone;
+}
+
+// The peaks of every channel, with a finer look at those that may be several. Gives the resolution of each.
+void find_peaks(SpectrumResult& result, const recording::Reader& reader, const SpectrumRequest& request,
+                std::vector<std::vector<double>>& resolutions, const base::Context& context) {
+  std::vector<ChannelTones> tones;
+  std::vector<const spectral::Spectrum*> spectra;
+  for (const ChannelSpectrum& each : result.channels) {
+    spectral::ToneOptions options;
+    options.strongest = std::max(most_tones, request.peaks);
+    if (request.max_frequency_hz) options.band_hz = Interval{0.0, *request.max_frequency_hz};
+    std::size_t position = 0;
+    while (result.recording.channels[position].index != each.channel.index) ++position;
+    tones.push_back({position, spectral::tones(each.shown, options)});
+    spectra.push_back(&each.shown);
+  }
+  const auto fine = fine_tones(reader, result.range, tones, spectra, context);
+  for (std::size_t i = 0; i < result.channels.size(); ++i) {
+    ChannelSpectrum& each = result.channels[i];
+    resolutions.emplace_back();
+    for (const FineTone& found : fine[i]) {
+      SpectralPeak peak;
+      peak.tone = found.tone;
+      peak.tone.amplitude_rms = with_calibration(peak.tone.amplitude_rms, each.channel);
+      peak.closeness = found.closeness;
+      peak.note = found.note;
+      each.peaks.push_back(peak);
+      resolutions.back().push_back(found.resolution_hz);
+      if (!base::is_motion(each.shown.quantity)) continue;
+      peak.tone = as_velocity(peak.tone);
+      each.velocity_peaks.push_back(std::move(peak));
+    }
+  }
+}
+
+void find_families(SpectrumResult& result) {
+  std::vector<std::vector<spectral::Tone>> all;
+  for (const ChannelSpectrum& each : result.channels) {
+    if (each.velocity_peaks.empty()) continue;
+    all.emplace_back();
+    for (const SpectralPeak& peak : each.velocity_peaks) {
+      if (!peak.in_background()) all.back().push_back(peak.tone);
+    }
+  }
+  result.tones = spectral::gathered(all, result.choice.line_hz);
+  result.families = spectral::families(result.tones, result.choice.line_hz);
+}
+
+// The running speed: refined from the lines of all channels, else as said.
+void find_speed(SpectrumResult& result, const std::optional<machine::Machine>& machine,
+                const SpectrumRequest& request) {
+  if (!machine) return;
+  std::vector<machine::Peak> peaks;
+  for (std::size_t c = 0; c < result.channels.size(); ++c) {
+    for (const SpectralPeak& peak : result.channels[c].velocity_peaks) {
+      if (peak.in_background()) continue;
+      peaks.push_back({peak.tone.frequency, peak.tone.amplitude_rms.value, c, peak.tone.breadth});
+    }
+  }
+  std::vector<machine::SpeedCandidate> candidates;
+  for (const spectral::HarmonicFamily& family : result.families.harmonics) {
+    candidates.push_back({family.fundamental, static_cast<int>(family.members.size())});
+  }
+  const auto found = machine->speed_hz ? machine::running_speed(peaks, *machine, result.choice.line_hz)
+                                       : machine::running_speed(peaks, *machine, result.choice.line_hz, candidates);
+  if (found) {
+    result.refined_speed = *found;
+    result.speed = found->speed;
+  } else if (request.speed_hz) {
+    result.speed = Estimate{*request.speed_hz, {}, {}, Quantity::speed};
+  } else {
+    result.refusals.push_back(found.refusal());
+  }
+}
+
+void find_causes(SpectrumResult& result, const SpectrumRequest& request,
+                 const std::vector<std::vector<double>>& resolutions) {
+  for (std::size_t c = 0; c < result.channels.size(); ++c) {
+    ChannelSpectrum& each = result.channels[c];
+    for (std::size_t i = 0; i < each.peaks.size(); ++i) {
+      SpectralPeak& peak = each.peaks[i];
+      peak.cause = machine::cause_of_peak(peak.tone.frequency, resolutions[c][i], result.forcing, request.modes,
+                                          peak.in_background());
+      if (i < each.velocity_peaks.size()) each.velocity_peaks[i].cause = peak.cause;
+    }
+  }
+}
+
+void judge(SpectrumResult& result, const SpectrumRequest& request) {
+  std::vector<machine::SeverityVerdict> verdicts;
+  std::vector<std::size_t> whose;
+  for (std::size_t c = 0; c < result.channels.size(); ++c) {
+    ChannelSpectrum& each = result.channels[c];
+    judge_channel(each, request, result.speed);
+    if (each.typical) result.typical_ranges = machine::typical_ranges();
+    if (!each.severity) continue;
+    verdicts.push_back(each.severity->verdict);
+    whose.push_back(c);
+  }
+  if (const auto worst = machine::worst_point(verdicts)) result.worst = whose[*worst];
+}
+
+bool has_bearings(const std::optional<machine::Machine>& machine) { return machine && !machine->bearings.empty(); }
 
 }  // namespace
 
 SpectrumResult spectrum(const recording::Reader& reader, const SpectrumRequest& request, const base::Context& context) {
+  const auto machine = machine_of(request);
   SpectrumResult result;
   result.recording = reader.recording();
   result.range = frames_of(result.recording, request.part);
   result.detector = request.detector;
-  result.options = request.options;
   result.max_frequency_hz = request.max_frequency_hz;
   result.findings = result.recording.findings;
+  result.options = informed(request.options, machine);
+  result.choice = spectral::choose_block(result.recording, result.range, result.options);
+  result.options.block_frames = result.choice.length;
 
-  const std::vector<spectral::Spectrum> spectra =
-      spectral::averaged_spectra(reader, result.range, request.options, context);
-  std::vector<std::vector<spectral::Tone>> tones;
-  for (std::size_t c = 0; c < spectra.size(); ++c) {
-    const recording::Channel& channel = result.recording.channels[c];
-    if (channel.role == recording::Role::tacho) continue;
-    ChannelSpectrum each;
-    each.channel = channel;
-    each.measured = spectra[c];
-    each.shown = in_quantity(spectra[c], request.quantity.value_or(Quantity::velocity));
-    each.band_hz = request.band_hz.value_or(standard_band(request.site));
-    each.overall = with_calibration(level(each.shown, each.band_hz), channel);
-    each.band_hz = held(each.shown, each.band_hz).value_or(each.band_hz);  // what was summed, and no more, is stated
-    if (spectra[c].density.empty()) {
-      each.findings.push_back({base::Code::missing_values, "no block of valid samples in the part used", channel.name});
-    } else if (channel.role == recording::Role::vibration) {
-      each.findings = spectral::spectral_findings(
-          spectra[c], channel, request.site.machine ? request.site.machine->line_frequency_hz : std::nullopt);
-    }
-    spectral::ToneOptions options;
-    options.strongest = request.peaks;
-    if (request.max_frequency_hz) options.band_hz = Interval{0.0, *request.max_frequency_hz};
-    tones.push_back(spectral::tones(each.shown, options));
-    result.channels.push_back(std::move(each));
+  measure(result, reader, request, context);
+  std::vector<std::vector<double>> resolutions;
+  find_peaks(result, reader, request, resolutions, context);
+  if (request.background.reader != nullptr) add_background(result, request.background, request.site, context);
+  find_families(result);
+  find_speed(result, machine, request);
+  if (result.speed) result.forcing = machine::forcing_frequencies(*machine, *result.speed);
+  find_causes(result, request, resolutions);
+  judge(result, request);
+  if (machine || !request.reference.empty()) add_deflections(result, reader, request.reference, context);
+  if (request.envelope || has_bearings(machine)) {
+    add_envelopes(result, reader, request.envelope.value_or(EnvelopeRequest{}), context);
   }
-
-  result.speed = speed_from(request, tones);
-  if (result.speed && request.site.machine) {
-    result.forcing = machine::forcing_frequencies(*request.site.machine, *result.speed);
-  }
-  for (std::size_t i = 0; i < result.channels.size(); ++i) {
-    ChannelSpectrum& each = result.channels[i];
-    for (spectral::Tone tone : tones[i]) {
-      tone.amplitude_rms = *with_calibration(tone.amplitude_rms, each.channel);
-      machine::Cause cause = machine::cause_of_peak(tone.frequency, each.shown.line_hz, result.forcing, request.modes);
-      each.peaks.push_back({tone, std::move(cause)});
-    }
-    if (!base::is_motion(each.measured.quantity) || each.measured.density.empty()) {
-      each.severity = base::Refusal{"limit-unknown", "the channel is not a vibration", ""};
-      continue;
-    }
-    const spectral::Spectrum velocity = in_quantity(each.measured, Quantity::velocity);
-    each.severity_velocity = with_calibration(level(velocity, standard_band(request.site)), each.channel);
-    each.severity = severity_of(each, request, velocity);
+  if (request.zoom_hz) add_zoom(result, reader, *request.zoom_hz, context);
+  if (request.synchronous) add_synchronous(result, reader, *request.synchronous, context);
+  if (request.site.machine) result.causes = diagnosed(result, request.site, request.modes);
+  for (ChannelSpectrum& each : result.channels) {
+    if (each.peaks.size() > request.peaks) each.peaks.resize(request.peaks);
   }
   return result;
 }

@@ -6,6 +6,7 @@
 #include <vector>
 
 #include "stillmass/machine/description.hpp"
+#include "stillmass/machine/verdict.hpp"
 
 namespace stillmass::step {
 
@@ -22,7 +23,7 @@ struct Site {
   std::vector<SitePoint> points;
   std::string standard;  ///< severity; empty: by the kind of machine
   std::string category;
-  std::optional<double> target_m_s;  ///< broad-band r.m.s. velocity that the plant asks for
+  machine::PlantLimits plant;  ///< the plant's own
 
   const SitePoint* point(std::string_view name) const;
 };

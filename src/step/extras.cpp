@@ -1,0 +1,208 @@
+#include "step/extras.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <set>
+
+#include <fmt/format.h>
+
+#include "stillmass/base/number.hpp"
+#include "stillmass/spectral/quantity.hpp"
+
+#include "step/levels.hpp"
+
+namespace stillmass::step {
+namespace {
+
+using base::Interval;
+using base::Quantity;
+
+constexpr std::size_t most_shapes = 8;       // forcing frequencies of which the deflection is given
+constexpr std::size_t most_background = 60;  // tones looked for in the background
+constexpr std::size_t most_envelope = 15;    // lines of an envelope
+
+// The channel of another recording that is the same point, else of the same name.
+std::optional<std::size_t> same_channel(const recording::Recording& recording, const recording::Channel& wanted) {
+  for (std::size_t c = 0; c < recording.channels.size(); ++c) {
+    const recording::Channel& each = recording.channels[c];
+    if (each.role != wanted.role) continue;
+    const bool by_point = !wanted.point.empty() || !each.point.empty();
+    if (by_point ? each.point == wanted.point : each.name == wanted.name) return c;
+  }
+  return {};
+}
+
+std::vector<spectral::Tone> tones_of(const std::vector<SpectralPeak>& peaks) {
+  std::vector<spectral::Tone> out;
+  for (const SpectralPeak& peak : peaks) out.push_back(peak.tone);
+  return out;
+}
+
+void mark(std::vector<SpectralPeak>& peaks, const std::vector<spectral::Tone>& background, double line_hz) {
+  for (const spectral::BackgroundTone& each : spectral::background_tones(tones_of(peaks), background, line_hz)) {
+    peaks[each.running].background = each;
+  }
+}
+
+}  // namespace
+
+void add_background(SpectrumResult& result, const BackgroundRequest& request, const Site& site,
+                    const base::Context& context) {
+  const recording::Recording& recording = request.reader->recording();
+  spectral::SpectrumOptions options = result.options;
+  options.averaging = spectral::Averaging::mean;
+  if (recording.rate_hz != result.recording.rate_hz) {
+    options.block_frames = 0;
+    options.resolution_hz = result.choice.line_hz;
+  }
+  const recording::FrameRange range = frames_of(recording, request.part);
+  const auto spectra = spectral::averaged_spectra(*request.reader, range, options, context);
+  for (ChannelSpectrum& each : result.channels) {
+    if (!base::is_motion(each.measured.quantity) || each.measured.density.empty()) continue;
+    const auto at = same_channel(recording, each.channel);
+    if (!at || spectra[*at].density.empty() || !base::is_motion(spectra[*at].quantity)) continue;
+    const spectral::Spectrum shown = in_quantity(spectra[*at], each.shown.quantity);
+    const double line_hz = std::max(shown.line_hz, each.shown.line_hz);
+    spectral::ToneOptions tone_options;
+    tone_options.strongest = most_background;
+    const auto found = spectral::tones(shown, tone_options);
+    mark(each.peaks, found, line_hz);
+    mark(each.velocity_peaks, spectral::tones(in_quantity(spectra[*at], Quantity::velocity), tone_options), line_hz);
+    if (shown.density.size() == each.shown.density.size()) each.background_density = shown.density;
+    const spectral::Spectrum running = in_quantity(each.measured, Quantity::velocity);
+    const spectral::Spectrum stopped = in_quantity(spectra[*at], Quantity::velocity);
+    const auto band = held(running, standard_band(site));
+    const auto both = band ? held(stopped, *band) : band;
+    if (both && running.averaging == spectral::Averaging::mean) {
+      each.background = spectral::without_background(running, stopped, *both);
+    }
+  }
+}
+
+void add_deflections(SpectrumResult& result, const recording::Reader& reader, const std::string& reference,
+                     const base::Context& context) {
+  std::size_t moving = 0;
+  spectral::DeflectionOptions options;
+  options.window = result.options.window;
+  options.overlap = result.options.overlap;
+  options.block_frames = result.choice.length;
+  for (std::size_t c = 0; c < result.recording.channels.size(); ++c) {
+    const recording::Channel& channel = result.recording.channels[c];
+    if (channel.role != recording::Role::vibration || !base::is_motion(channel.unit.quantity)) continue;
+    ++moving;
+    if (!reference.empty() && (channel.name == reference || channel.point == reference)) options.reference = c;
+  }
+  if (!reference.empty() && !options.reference) {
+    result.refusals.push_back({"no-reference", "no channel of motion is called '" + reference + "'",
+                               "name a point or channel of this recording"});
+    return;
+  }
+  if (moving < 2) {
+    if (!reference.empty()) {
+      result.refusals.push_back({"one-channel", "a deflection needs two channels of motion at least",
+                                 "record the point together with a reference that stays"});
+    }
+    return;
+  }
+
+  // The strongest line of every forcing that was found, largest first; without forcing the strongest lines.
+  std::vector<const SpectralPeak*> strongest;
+  for (const ChannelSpectrum& channel : result.channels) {
+    for (const SpectralPeak& peak : channel.velocity_peaks) {
+      if (peak.in_background() || (!result.forcing.empty() && !peak.cause.forcing)) continue;
+      strongest.push_back(&peak);
+    }
+  }
+  std::stable_sort(strongest.begin(), strongest.end(), [](const SpectralPeak* a, const SpectralPeak* b) {
+    return a->tone.amplitude_rms.value > b->tone.amplitude_rms.value;
+  });
+  std::vector<OperatingDeflection> wanted;
+  std::vector<double> frequencies;
+  for (const SpectralPeak* peak : strongest) {
+    const double frequency = peak->tone.frequency.value;
+    const bool is_near = std::any_of(frequencies.begin(), frequencies.end(), [&](double other) {
+      return std::abs(other - frequency) < 4.0 * result.choice.line_hz;
+    });
+    if (is_near || frequencies.size() == most_shapes) continue;
+    OperatingDeflection each;
+    each.name = peak->cause.forcing ? result.forcing[*peak->cause.forcing].name
+                                    : fmt::format("{} Hz", base::rounded(frequency, 4));
+    if (peak->cause.forcing) each.order = result.forcing[*peak->cause.forcing].order;
+    wanted.push_back(std::move(each));
+    frequencies.push_back(frequency);
+  }
+  if (frequencies.empty()) return;
+  const auto shapes = spectral::deflections(reader, result.range, frequencies, options, context);
+  for (std::size_t i = 0; i < shapes.size(); ++i) {
+    if (!shapes[i]) continue;
+    wanted[i].shape = *shapes[i];
+    result.shapes.push_back(std::move(wanted[i]));
+  }
+}
+
+void add_envelopes(SpectrumResult& result, const recording::Reader& reader, const EnvelopeRequest& request,
+                   const base::Context& context) {
+  std::vector<std::size_t> which;
+  std::vector<ChannelSpectrum*> whose;
+  for (std::size_t c = 0; c < result.recording.channels.size(); ++c) {
+    const recording::Channel& channel = result.recording.channels[c];
+    if (channel.role != recording::Role::vibration || channel.unit.quantity != Quantity::acceleration) continue;
+    const auto at = std::find_if(result.channels.begin(), result.channels.end(),
+                                 [&](const auto& each) { return each.channel.index == channel.index; });
+    which.push_back(c);
+    whose.push_back(&*at);
+  }
+  if (which.empty()) {
+    result.refusals.push_back({"no-acceleration", "no channel is an acceleration",
+                               "say its unit (g or m/s2): the envelope is taken of the acceleration"});
+    return;
+  }
+  spectral::EnvelopeOptions options;
+  options.band_hz = request.band_hz;
+  const auto found = spectral::envelopes(reader, result.range, which, options, context);
+  for (std::size_t i = 0; i < found.size(); ++i) {
+    EnvelopeResult each;
+    each.envelope = found[i].envelope;
+    if (each.envelope) {
+      spectral::ToneOptions tone_options;
+      tone_options.strongest = most_envelope;
+      for (const spectral::Tone& tone : spectral::tones(each.envelope->spectrum, tone_options)) {
+        each.peaks.push_back({tone, spectral::modulation_depth(*each.envelope, tone),
+                              machine::cause_of_peak(tone.frequency, each.envelope->spectrum.line_hz, result.forcing)});
+      }
+    }
+    whose[i]->envelope = std::move(each);
+  }
+}
+
+void add_zoom(SpectrumResult& result, const recording::Reader& reader, Interval band_hz, const base::Context& context) {
+  spectral::ZoomOptions options;
+  options.band_hz = band_hz;
+  options.window = result.options.window;
+  options.overlap = result.options.overlap;
+  const auto zooms = spectral::zoom(reader, result.range, options, context);
+  for (std::size_t c = 0; c < zooms.size(); ++c) {
+    const int index = result.recording.channels[c].index;
+    const auto at = std::find_if(result.channels.begin(), result.channels.end(),
+                                 [&](const auto& each) { return each.channel.index == index; });
+    if (at == result.channels.end() || zooms[c].blocks == 0) continue;
+    at->zoom = base::is_motion(zooms[c].quantity) ? spectral::as_quantity(zooms[c], at->shown.quantity) : zooms[c];
+  }
+}
+
+void add_synchronous(SpectrumResult& result, const recording::Reader& reader,
+                     const rotation::SynchronousSettings& settings, const base::Context& context) {
+  const auto average = rotation::synchronous_average(reader, settings, context);
+  if (!average) {
+    result.refusals.push_back(average.refusal());
+    return;
+  }
+  result.findings.insert(result.findings.end(), average->findings.begin(), average->findings.end());
+  for (const rotation::SynchronousAverage& each : average->channels) {
+    const auto at = std::find_if(result.channels.begin(), result.channels.end(),
+                                 [&](const auto& channel) { return channel.channel.name == each.channel; });
+    if (at != result.channels.end() && each.blocks > 0) at->synchronous = each;
+  }
+}
+
+}  // namespace stillmass::step

@@ -1,0 +1,107 @@
+#include "step/fine_tones.hpp"
+
+#include <algorithm>
+#include <cmath>
+
+#include <fmt/format.h>
+
+#include "stillmass/base/number.hpp"
+
+namespace stillmass::step {
+namespace {
+
+using spectral::Closeness;
+using spectral::Tone;
+using spectral::ToneCluster;
+
+constexpr std::size_t most_suspects = 4;   // of a channel, the strongest
+constexpr double least_prominence = 30.0;  // weaker ones are not worth a second look
+
+struct Suspect {
+  std::size_t of = 0;    // which channel's tones
+  std::size_t tone = 0;  // which of them
+};
+
+std::string note_of(const ToneCluster& cluster) {
+  switch (cluster.closeness) {
+    case Closeness::resolved:
+      return fmt::format("one of {} close lines", cluster.tones.size());
+    case Closeness::unresolved: {
+      std::string text = fmt::format("more than one line within {} Hz", base::rounded(cluster.least_spacing_hz, 2));
+      if (cluster.record_s) text += fmt::format("; record {} s to part them", base::rounded(*cluster.record_s, 2));
+      return text;
+    }
+    case Closeness::unsteady:
+      if (cluster.wander_hz) return fmt::format("wanders by {} Hz r.m.s.", base::rounded(*cluster.wander_hz, 2));
+      return "unsteady";
+    case Closeness::single:
+    case Closeness::none:
+      return "";
+  }
+  return "";
+}
+
+// A tone of a cluster in the place of the peak of the averaged spectrum.
+Tone part_of_peak(const Tone& peak, const spectral::CloseTone& close) {
+  Tone tone = peak;
+  tone.frequency = close.frequency;
+  const auto quantity = peak.amplitude_rms.quantity;
+  tone.amplitude_rms = close.amplitude_rms;
+  tone.amplitude_rms.quantity = quantity;
+  tone.breadth = 1.0;
+  return tone;
+}
+
+}  // namespace
+
+std::vector<std::vector<FineTone>> fine_tones(const recording::Reader& reader, recording::FrameRange range,
+                                              const std::vector<ChannelTones>& all,
+                                              const std::vector<const spectral::Spectrum*>& spectra,
+                                              const base::Context& context) {
+  std::vector<Suspect> suspects;
+  std::vector<spectral::CloseBand> bands;
+  for (std::size_t i = 0; i < all.size(); ++i) {
+    std::size_t found = 0;
+    for (std::size_t t = 0; t < all[i].tones.size() && found < most_suspects; ++t) {
+      const Tone& tone = all[i].tones[t];
+      if (tone.prominence < least_prominence || !spectral::suspect(tone)) continue;
+      suspects.push_back({i, t});
+      bands.push_back({all[i].channel, spectral::band_around(tone, *spectra[i])});
+      ++found;
+    }
+  }
+  std::vector<ToneCluster> clusters;
+  if (!bands.empty()) clusters = spectral::resolve_tones(reader, range, bands, context);
+
+  std::vector<std::vector<FineTone>> out(all.size());
+  for (std::size_t i = 0; i < all.size(); ++i) {
+    for (std::size_t t = 0; t < all[i].tones.size(); ++t) {
+      const Tone& tone = all[i].tones[t];
+      const auto suspect = std::find_if(suspects.begin(), suspects.end(),
+                                        [&](const Suspect& each) { return each.of == i && each.tone == t; });
+      if (suspect == suspects.end()) {
+        out[i].push_back({tone, Closeness::none, {}, spectra[i]->line_hz});
+        continue;
+      }
+      const ToneCluster& measured = clusters[static_cast<std::size_t>(suspect - suspects.begin())];
+      const ToneCluster cluster =
+          base::is_motion(tone.amplitude_rms.quantity)
+              ? spectral::as_quantity(measured, reader.recording().channels[all[i].channel].unit.quantity,
+                                      tone.amplitude_rms.quantity)
+              : measured;
+      if (cluster.closeness == Closeness::resolved) {
+        for (const spectral::CloseTone& close : cluster.tones) {
+          out[i].push_back({part_of_peak(tone, close), cluster.closeness, note_of(cluster), cluster.least_spacing_hz});
+        }
+      } else {
+        out[i].push_back({tone, cluster.closeness, note_of(cluster), spectra[i]->line_hz});
+      }
+    }
+    std::stable_sort(out[i].begin(), out[i].end(), [](const FineTone& a, const FineTone& b) {
+      return a.tone.amplitude_rms.value > b.tone.amplitude_rms.value;
+    });
+  }
+  return out;
+}
+
+}  // namespace stillmass::step

@@ -1,0 +1,30 @@
+#pragma once
+
+#include <vector>
+
+#include "stillmass/step/spectrum.hpp"
+
+namespace stillmass::step {
+
+/// The tones of one channel's spectrum, and which channel of the recording it is.
+struct ChannelTones {
+  std::size_t channel = 0;  ///< of the recording
+  std::vector<spectral::Tone> tones;
+};
+
+/// A tone with what a finer look at it found.
+struct FineTone {
+  spectral::Tone tone;
+  spectral::Closeness closeness = spectral::Closeness::none;
+  std::string note;
+  double resolution_hz = 0.0;  ///< tones closer than this are one
+};
+
+/// Looks at suspect tones (`spectral::suspect`) with the whole length of the recording, all in one pass, and puts the
+/// tones that a peak is made of in its place. `spectra`: those of the tones, of the quantity of the tones.
+std::vector<std::vector<FineTone>> fine_tones(const recording::Reader& reader, recording::FrameRange range,
+                                              const std::vector<ChannelTones>& all,
+                                              const std::vector<const spectral::Spectrum*>& spectra,
+                                              const base::Context& context);
+
+}  // namespace stillmass::step
