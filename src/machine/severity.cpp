@@ -8,6 +8,7 @@
 #include "stillmass/base/error.hpp"
 #include "stillmass/base/tables.hpp"
 #include "stillmass/base/text.hpp"
+#include "stillmass/machine/verdict.hpp"
 
 namespace stillmass::machine {
 namespace {
@@ -21,13 +22,19 @@ constexpr auto keys = std::to_array<base::Key>({
     {"row.support", KeyType::text, "", false, "", "support class; absent: both", "rigid|flexible", {}},
     {"row.power_kw", KeyType::number_or_pair, "kW", true, "", "rated power", "", {0, 1e6}},
     {"row.shaft_height_mm", KeyType::number_or_pair, "mm", false, "", "of electrical machines", "", {0, 1e4}},
-    {"row.limits_mm_s", KeyType::numbers, "mm/s", true, "", "A/B, B/C, C/D", "", {0.01, 1000}},
+    {"row.limits_mm_s", KeyType::numbers, "mm/s", false, "", "A/B, B/C, C/D", "", {0.01, 1000}},
     {"row.limits_um", KeyType::numbers, "um", false, "", "A/B, B/C, C/D", "", {0.1, 10000}},
+    {"row.slow_limits_um", KeyType::numbers, "um", false, "", "peak-to-peak, below 600 r/min", "", {0.1, 10000}},
+    {"row.slow_source", KeyType::text, "", false, "", "where those come from", "", {}},
+    {"row.ranges_mm_s", KeyType::numbers, "mm/s", false, "", "lowest and highest of A/B, B/C, C/D", "", {0.01, 1000}},
     {"row.source", KeyType::text, "", true, "", "where the numbers come from", "", {}},
 });
 
 constexpr const char* pumps = "ISO 10816-7";
 constexpr const char* machines = "ISO 10816-3";
+constexpr const char* ranges = "ISO 20816-1";
+constexpr const char* handed_over =
+    "pumps were handed from ISO 10816-3 to ISO 10816-7 in 2009: groups 3 and 4 are those of the 1998 edition";
 constexpr double slow_hz = 600.0 / 60.0;  // and below: the band begins at 2 Hz (from memory)
 constexpr base::Interval part3_speed_hz{120.0 / 60.0, 15000.0 / 60.0};  // covered by part 3 (from memory)
 
@@ -50,12 +57,25 @@ base::Refusal unknown(std::string seen, std::string measure) {
   return {"limit-unknown", std::move(seen), std::move(measure)};
 }
 
-// Fits the machine's size: the shaft height of a motor where both know it, else the power.
+bool judged_by_height(const Machine& machine) {
+  return machine.kind == MachineKind::motor && machine.shaft_height_m.has_value();
+}
+
+// Fits the machine's size: the shaft height of a motor where both know it, else the power (above lo, up to hi).
 bool fits_size(const SeverityRow& row, const Machine& machine) {
-  if (machine.kind == MachineKind::motor && machine.shaft_height_m && row.shaft_height_m) {
-    return row.shaft_height_m->contains(*machine.shaft_height_m);
+  if (judged_by_height(machine) && row.shaft_height_m) return row.shaft_height_m->contains(*machine.shaft_height_m);
+  return machine.power_w && *machine.power_w > row.power_w.lo && *machine.power_w <= row.power_w.hi;
+}
+
+base::Refusal no_row(const std::string& standard, const Machine& machine, Support support) {
+  std::string seen = "the power of the machine is not known";
+  if (judged_by_height(machine)) {
+    seen = fmt::format("{} has no limits for a shaft height of {:.4g} mm, {}", standard,
+                       *machine.shaft_height_m * 1000.0, name(support));
+  } else if (machine.power_w) {
+    seen = fmt::format("{} has no limits for {:.3g} kW, {}", standard, *machine.power_w / 1000.0, name(support));
   }
-  return machine.power_w && row.power_w.contains(*machine.power_w);
+  return unknown(std::move(seen), "say the power, name another standard, or set a target of your own");
 }
 
 Zone zone_of(const std::array<double, 3>& limits, double value) {
@@ -88,6 +108,7 @@ std::string_view name(Zone zone) {
 std::vector<SeverityRow> severity_table() {
   std::vector<SeverityRow> out;
   for (const base::Settings::Table& row : base::table_rows("severity.toml", keys)) {
+    if (row.has("ranges_mm_s")) continue;
     SeverityRow& line = out.emplace_back();
     line.standard = *row.text("standard");
     line.category = *row.text("category");
@@ -96,7 +117,22 @@ std::vector<SeverityRow> severity_table() {
     if (const auto height = row.interval("shaft_height_mm")) line.shaft_height_m = scaled(*height, 1e-3);
     line.velocity_limits = three(row, "limits_mm_s", 1e-3);
     if (row.has("limits_um")) line.displacement_limits = three(row, "limits_um", 1e-6);
+    if (row.has("slow_limits_um")) line.slow_limits = three(row, "slow_limits_um", 1e-6);
+    line.slow_source = row.text("slow_source").value_or("");
     line.source = *row.text("source");
+  }
+  return out;
+}
+
+TypicalRanges typical_ranges() {
+  TypicalRanges out;
+  for (const base::Settings::Table& row : base::table_rows("severity.toml", keys)) {
+    const std::vector<double> given = row.numbers("ranges_mm_s");
+    if (!row.has("ranges_mm_s")) continue;
+    if (given.size() != 6) row.refuse("ranges_mm_s", "three ranges");
+    out.standard = *row.text("standard");
+    for (std::size_t i = 0; i < 3; ++i) out.boundary[i] = {given[2 * i] * 1e-3, given[2 * i + 1] * 1e-3};
+    out.source = *row.text("source");
   }
   return out;
 }
@@ -104,6 +140,10 @@ std::vector<SeverityRow> severity_table() {
 base::Answer<SeverityLimits> severity_limits(const Machine& machine, const SeverityQuestion& question) {
   const bool pump = machine.kind == MachineKind::pump;
   const std::string standard = question.standard.empty() ? (pump ? pumps : machines) : question.standard;
+  if (standard == ranges) {
+    return unknown(standard + " gives typical ranges of the boundaries, no boundaries",
+                   "name the standard of the machine (ISO 10816-3, ISO 10816-7) or set a target of your own");
+  }
   const std::vector<SeverityRow> rows = rows_of(standard, question.category);
   if (!question.on_bearing_housing) {
     return unknown("the point is not on a bearing housing",
@@ -117,19 +157,21 @@ base::Answer<SeverityLimits> severity_limits(const Machine& machine, const Sever
   if (standard == pumps && question.category.empty()) {
     return unknown(standard + " asks for the category of the pump", "say category I or II in the limit");
   }
+  if (standard == machines && pump && question.category.empty()) {
+    return unknown(standard + " parts pumps by their driver",
+                   "say group 3 (driver of its own) or group 4 (driver built in) in the limit, or take ISO 10816-7");
+  }
   if (!machine.speed_hz) return unknown("the running speed is not known", "say the speed of the machine");
   if (standard == machines && !part3_speed_hz.intersects(*machine.speed_hz)) {
     return unknown(fmt::format("{} covers 120 to 15000 r/min", standard), "set a target of your own");
   }
+  const bool no_pump =
+      standard == machines && question.category.empty();  // groups 3 and 4 are pumps, and have no height
   const auto row = std::find_if(rows.begin(), rows.end(), [&](const SeverityRow& each) {
+    if (no_pump && !each.shaft_height_m) return false;
     return (!each.support || each.support == support) && fits_size(each, machine);
   });
-  if (row == rows.end()) {
-    return unknown(machine.power_w ? fmt::format("{} has no limits for {:.3g} kW, {}", standard,
-                                                 *machine.power_w / 1000.0, name(*support))
-                                   : "the power of the machine is not known",
-                   "say the power, name another standard, or set a target of your own");
-  }
+  if (row == rows.end()) return no_row(standard, machine, *support);
   SeverityLimits limits;
   limits.standard = row->standard;
   limits.category = row->category;
@@ -138,6 +180,11 @@ base::Answer<SeverityLimits> severity_limits(const Machine& machine, const Sever
   limits.displacement = row->displacement_limits;
   limits.source = row->source;
   if (machine.speed_hz->lo <= slow_hz) limits.band_hz.lo = 2.0;
+  if (machine.speed_hz->lo < slow_hz) {
+    limits.displacement_pp = row->slow_limits;
+    if (row->slow_limits) limits.displacement_pp_source = row->slow_source;
+  }
+  if (standard == machines && pump) limits.note = handed_over;
   return limits;
 }
 

@@ -143,6 +143,14 @@ TEST_CASE("of blind families the one whose multiples are there is the speed, not
   CHECK_FALSE(machine::running_speed(peaks, Machine{}, line, {}));
 }
 
+TEST_CASE("1x and 2x alone are not the second and fourth multiple of half the speed") {
+  const std::vector<Peak> peaks = {{hertz(18.2, 0.01), 1.0}, {hertz(36.4, 0.01), 0.5}};
+  const std::vector<machine::SpeedCandidate> candidates = {{hertz(9.1, 0.01), 2}, {hertz(18.2, 0.01), 2}};
+  const auto speed = machine::running_speed(peaks, Machine{}, line, candidates);
+  REQUIRE(speed);
+  CHECK(speed->speed.value == Approx(18.2).margin(0.005));
+}
+
 TEST_CASE("two families alike are refused, unless a motor on the line can only be one of them") {
   std::vector<Peak> peaks;
   for (const double k : {1.0, 2.0, 3.0}) {

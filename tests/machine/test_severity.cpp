@@ -52,12 +52,75 @@ TEST_CASE("part 3 gives the limits of the machine's size and support (ISO 10816-
   CHECK(limits(300, Support::rigid)->category == "group 2");
 }
 
+TEST_CASE("every line of ISO 10816-3:1998 stands in the table (from memory, CHECKS 4a)") {
+  struct Line {
+    const char* category;
+    Support support;
+    double mm_s[3];
+    double um[3];
+  };
+  const Line line = GENERATE(Line{"group 1", Support::rigid, {2.3, 4.5, 7.1}, {29, 57, 90}},
+                             Line{"group 1", Support::flexible, {3.5, 7.1, 11.0}, {45, 90, 140}},
+                             Line{"group 2", Support::rigid, {1.4, 2.8, 4.5}, {22, 45, 71}},
+                             Line{"group 2", Support::flexible, {2.3, 4.5, 7.1}, {37, 71, 113}},
+                             Line{"group 3", Support::rigid, {2.3, 4.5, 7.1}, {18, 36, 56}},
+                             Line{"group 3", Support::flexible, {3.5, 7.1, 11.0}, {28, 56, 90}},
+                             Line{"group 4", Support::rigid, {1.4, 2.8, 4.5}, {11, 22, 36}},
+                             Line{"group 4", Support::flexible, {2.3, 4.5, 7.1}, {18, 36, 56}});
+  const bool pump = line.category[6] > '2';
+  const double kw = line.category[6] == '1' ? 500 : 55;
+  const auto machine = machine_of(pump ? MachineKind::pump : MachineKind::fan, kw, 1480, line.support);
+  const auto limits = machine::severity_limits(machine, housing("ISO 10816-3", line.category));
+  check_limits(limits, line.mm_s[0], line.mm_s[1], line.mm_s[2]);
+  REQUIRE(limits->displacement);
+  for (int i = 0; i < 3; ++i) CHECK((*limits->displacement)[i] * 1e6 == Approx(line.um[i]));
+  CHECK(limits->source.find("from memory") != std::string::npos);
+  CHECK_FALSE(limits->displacement_pp);
+  CHECK((limits->note.find("2009") != std::string::npos) == pump);  // pumps were handed to part 7
+}
+
+TEST_CASE("part 3 begins above 15 kW, and asks a pump for its driver") {
+  CHECK_FALSE(machine::severity_limits(machine_of(MachineKind::fan, 15, 1480, Support::rigid), housing()));
+  CHECK(machine::severity_limits(machine_of(MachineKind::fan, 15.1, 1480, Support::rigid), housing()));
+  const auto pump =
+      machine::severity_limits(machine_of(MachineKind::pump, 55, 1480, Support::rigid), housing("ISO 10816-3"));
+  REQUIRE_FALSE(pump);
+  CHECK(pump.refusal().measure.find("group 3") != std::string::npos);
+}
+
+TEST_CASE("a pump below 600 r/min is limited in displacement too (S4, from memory, low confidence)") {
+  const auto limits = [](double rpm, const char* category) {
+    return machine::severity_limits(machine_of(MachineKind::pump, GENERATE(30.0, 250.0), rpm, Support::flexible),
+                                    housing({}, category));
+  };
+  const auto one = limits(590, "I");
+  REQUIRE(one->displacement_pp);
+  CHECK((*one->displacement_pp)[0] * 1e6 == Approx(50));
+  CHECK((*one->displacement_pp)[1] * 1e6 == Approx(80));
+  CHECK((*one->displacement_pp)[2] * 1e6 == Approx(130));
+  CHECK(one->displacement_pp_source.find("from memory, low confidence") != std::string::npos);
+  const auto two = limits(590, "II");
+  CHECK((*two->displacement_pp)[0] * 1e6 == Approx(65));
+  CHECK((*two->displacement_pp)[1] * 1e6 == Approx(100));
+  CHECK((*two->displacement_pp)[2] * 1e6 == Approx(160));
+  CHECK_FALSE(limits(600, "I")->displacement_pp);
+}
+
+TEST_CASE("ISO 20816-1 gives ranges, so there are no limits to be had from it") {
+  const auto answer =
+      machine::severity_limits(machine_of(MachineKind::fan, 55, 1480, Support::rigid), housing("ISO 20816-1"));
+  REQUIRE_FALSE(answer);
+  CHECK(answer.refusal().seen.find("ranges") != std::string::npos);
+}
+
 TEST_CASE("a motor's shaft height decides in place of its power") {
   auto motor = machine_of(MachineKind::motor, 200, 1480, Support::rigid);
   motor.shaft_height_m = 0.355;
   CHECK(machine::severity_limits(motor, housing())->category == "group 1");
   motor.shaft_height_m = 0.280;
   CHECK(machine::severity_limits(motor, housing())->category == "group 2");
+  motor.shaft_height_m = 0.132;  // below 160 mm part 3 has nothing, whatever the power
+  CHECK(machine::severity_limits(motor, housing()).refusal().seen.find("132 mm") != std::string::npos);
 }
 
 TEST_CASE("the limits of displacement and velocity of part 3 meet at 12.5, 10 and 20 Hz (CHECKS 4a)") {
@@ -135,6 +198,24 @@ TEST_CASE("a direction can have a support class of its own, declared or measured
   measured.support = machine::support_class(31.0, 24.7);  // 1.255 times: rigid
   check_limits(machine::severity_limits(fan, measured), 1.4, 2.8, 4.5);
   CHECK(machine::support_class(30.0, 24.7) == Support::flexible);
+}
+
+TEST_CASE("a measured support class is refused where 1.25 lies within its uncertainty") {
+  const auto of = [](double natural, std::optional<double> u) {
+    base::Estimate lowest;
+    lowest.value = natural;
+    lowest.u = u;
+    base::Estimate forcing;
+    forcing.value = 24.0;
+    forcing.u = 0.01;
+    return machine::support_class(lowest, forcing);
+  };
+  CHECK(*of(31.0, 0.2) == Support::rigid);     // 1.292 +- 0.017
+  CHECK(*of(29.0, 0.2) == Support::flexible);  // 1.208 +- 0.017
+  CHECK(of(30.3, 0.2).refusal().code == "support-unknown");
+  CHECK(of(29.6, 0.25).refusal().code == "support-unknown");
+  CHECK_FALSE(of(31.0, {}));  // 3 % away, no uncertainty given
+  CHECK(*of(32.0, {}) == Support::rigid);
 }
 
 TEST_CASE("a value on a boundary belongs to the better zone, and the worse of two quantities counts") {

@@ -47,7 +47,7 @@ struct SeverityVerdict {
   std::vector<JudgedLevel> levels;  ///< velocity first
   std::size_t rules = 0;            ///< which of the levels gives the zone
   double share = 0.0;               ///< its value over the boundary C/D, to put points in order
-  /// Absent where the level has no uncertainty: then `could_be` has the zone of the value alone, and nothing is sure.
+  /// False where a level has none: then `could_be` takes its value alone, and nothing is sure.
   bool has_uncertainty = true;
 };
 
@@ -55,9 +55,10 @@ struct SeverityVerdict {
 std::string text(const SeverityVerdict& verdict);
 
 /// The zone of a point. Velocity is judged always, displacement where the standard limits it and it was measured; the
-/// worse zone rules, the greater share among equals. Refused (`limit-unknown`): unusable channel, unit assumed, band
-/// not held (from 1.1 times its lower end at most, to 0.4 of its upper end at least; common practice: what shakes a
-/// machine lies below 400 Hz), displacement peak-to-peak asked for by the standard and not measured.
+/// worse zone rules, the greater share among equals. 2 u: widened for few degrees of freedom. Refused
+/// (`limit-unknown`): unusable channel, unit assumed, band not held (from 1.1 times its lower end at most, to 0.4 of
+/// its upper end at least; common practice: what shakes a machine lies below 400 Hz), a displacement that the standard
+/// limits and that was not measured, of a machine at 600 r/min or below (there it rules).
 base::Answer<SeverityVerdict> judge(const SeverityLimits& limits, const SeverityLevels& levels);
 
 /// Typical ranges of the zone boundaries that ISO 20816-1:2016 (ISO 10816-1 Amd 1:2009) quotes for any machine: they
