@@ -85,7 +85,9 @@ base::Answer<Severity> severity_of(const ChannelSpectrum& channel, const Spectru
     levels.displacement_pp = peak_to_peak(channel, levels.displacement);
   }
   levels.unit_known = channel.channel.unit_known;
-  levels.usable = channel.features.at_full_scale.value_or(0) < cut_samples;
+  const bool judged_unusable =
+      std::find(request.unusable.begin(), request.unusable.end(), channel.channel.name) != request.unusable.end();
+  levels.usable = !judged_unusable && channel.features.at_full_scale.value_or(0) < cut_samples;
   const auto verdict = machine::judge(*limits, levels);
   if (!verdict) return verdict.refusal();
   return Severity{*limits, *verdict, levels.velocity.value};

@@ -7,10 +7,10 @@
 #include <utility>
 
 #include "stillmass/base/number.hpp"
-#include "stillmass/machine/diagnosis.hpp"
 #include "stillmass/modal/shape.hpp"
 #include "stillmass/modal/state.hpp"
 
+#include "survey/duty.hpp"
 #include "survey/stages.hpp"
 
 namespace stillmass::survey {
@@ -27,8 +27,6 @@ constexpr double line_speed_spread = 0.002;
 // An absorber is for a mode whose natural frequency lies this near the forcing line (common practice).
 constexpr double governs_within = 0.25;
 
-using Readers = std::vector<std::unique_ptr<recording::Reader>>;
-
 // Progress of one step out of many.
 base::Context part_of(const base::Context& context, std::size_t step, std::size_t steps) {
   base::Context part = context;
@@ -38,11 +36,6 @@ base::Context part_of(const base::Context& context, std::size_t step, std::size_
     };
   }
   return part;
-}
-
-step::Part part_of(const SurveyRecording& recording) {
-  if (!recording.part_s) return {};
-  return {recording.part_s->lo, recording.part_s->hi};
 }
 
 bool is_bump(const SurveyRecording& recording) {
@@ -82,17 +75,6 @@ std::vector<step::BumpResult> all_bumps(const Survey& survey, const Readers& rea
   return results;
 }
 
-step::SpectrumResult steady_spectrum(const Survey& survey, const SurveyRecording& recording,
-                                     const recording::Reader& reader, const std::vector<modal::Mode>& modes,
-                                     const base::Context& context) {
-  step::SpectrumRequest request;
-  request.part = part_of(recording);
-  request.site = site_of(survey);
-  request.speed_hz = recording.speed_hz;
-  request.modes = modes;
-  return step::spectrum(reader, request, context);
-}
-
 step::RunupResult speed_run(const SurveyRecording& recording, const recording::Reader& reader,
                             const std::vector<modal::Mode>& modes, const base::Context& context) {
   step::RunupRequest request;
@@ -101,39 +83,6 @@ step::RunupResult speed_run(const SurveyRecording& recording, const recording::R
   request.falling_edge = recording.falling_edge;
   request.modes = modes;
   return step::runup(reader, request, context);
-}
-
-// The spectra that the diagnosis and the absorber start from: the first steady recording before that tells the speed,
-// else the first one.
-const step::SpectrumResult* duty(const SurveyResult& result) {
-  const step::SpectrumResult* first = nullptr;
-  for (const auto& [index, spectra] : result.spectra) {
-    const SurveyRecording& recording = result.survey.recordings[index];
-    if (recording.stage != Stage::before || !recording.running) continue;
-    if (spectra.speed) return &spectra;
-    if (first == nullptr) first = &spectra;
-  }
-  return first;
-}
-
-std::vector<Finding> diagnosis(const Survey& survey, const step::SpectrumResult& spectra,
-                               const std::vector<modal::Mode>& modes) {
-  machine::Facts facts;
-  facts.machine = survey.machine;
-  facts.forcing = spectra.forcing;
-  facts.speed = spectra.speed;
-  facts.modes = modes;
-  for (const step::ChannelSpectrum& channel : spectra.channels) {
-    if (channel.shown.quantity != Quantity::velocity) continue;
-    machine::ChannelFacts& of = facts.channels.emplace_back();
-    of.name = channel.channel.name;
-    of.velocity = channel.severity_velocity;
-    of.line_hz = channel.shown.line_hz;
-    for (const step::SpectralPeak& peak : channel.peaks) {
-      of.tones.push_back({peak.tone.frequency, peak.tone.amplitude_rms, peak.cause, false});
-    }
-  }
-  return machine::diagnose(facts, machine::diagnosis_rules());
 }
 
 void set_target(SurveyResult& result, const step::SpectrumResult* spectra) {
@@ -289,7 +238,9 @@ step::Site site_of(const Survey& survey) {
       site.standard = limit.standard;
       site.category = limit.category;
     }
-    if (limit.target_m_s) site.target_m_s = limit.target_m_s;
+    if (limit.target_m_s) site.plant.target = limit.target_m_s;
+    if (limit.alarm_m_s) site.plant.alarm = limit.alarm_m_s;
+    if (limit.trip_m_s) site.plant.trip = limit.trip_m_s;
   }
   return site;
 }
@@ -328,7 +279,7 @@ SurveyResult run(const Survey& stated, const base::Context& context) {
     const SurveyRecording& recording = survey.recordings[i];
     const base::Context part = part_of(context, step++, steps);
     if (recording.kind == Kind::steady) {
-      result.spectra.push_back({i, steady_spectrum(survey, recording, *readers[i], result.modes, part)});
+      result.spectra.push_back({i, steady_spectrum(result, i, readers, part)});
     } else if (recording.kind == Kind::runup || recording.kind == Kind::coastdown) {
       result.runups.push_back({i, speed_run(recording, *readers[i], result.modes, part)});
       if (result.runups.back().result.refusal) result.refusals.push_back(*result.runups.back().result.refusal);
@@ -336,7 +287,9 @@ SurveyResult run(const Survey& stated, const base::Context& context) {
   }
 
   const step::SpectrumResult* spectra = duty(result);
-  if (spectra != nullptr) result.findings = diagnosis(survey, *spectra, result.modes);
+  result.power_cuts = power_cuts(result, readers, part_of(context, step, steps));
+  result.shapes = shapes(result);
+  if (spectra != nullptr) result.findings = diagnosis(result, *spectra);
   result.findings.insert(result.findings.end(), result.calibrations.findings.begin(),
                          result.calibrations.findings.end());
   set_target(result, spectra);

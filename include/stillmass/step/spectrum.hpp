@@ -55,6 +55,7 @@ struct SpectrumRequest {
   BackgroundRequest background;
   std::optional<EnvelopeRequest> envelope;  ///< absent: where the machine has bearings of known geometry
   std::optional<base::Interval> zoom_hz;    ///< a band with the finest lines that the recording allows
+  std::vector<std::string> unusable;        ///< names of channels that `check` calls so: no severity is given there
   std::string reference;                    ///< point or channel of the operating deflection; empty: chosen
   std::optional<rotation::SynchronousSettings> synchronous;  ///< average over turns of the tacho too
 };

@@ -11,6 +11,7 @@
 #include "stillmass/step/absorber.hpp"
 #include "stillmass/step/bump.hpp"
 #include "stillmass/step/check.hpp"
+#include "stillmass/step/diagnosis.hpp"
 #include "stillmass/step/runup.hpp"
 #include "stillmass/step/spectrum.hpp"
 #include "stillmass/survey/calibrations.hpp"
@@ -56,6 +57,8 @@ struct SurveyResult {
   std::vector<step::BumpResult> bumps;
   std::vector<modal::Mode> modes;
   std::vector<Of<step::RunupResult>> runups;
+  std::vector<Of<step::OtherTests::Cut>> power_cuts;  ///< of the coast-downs, one a vibration channel
+  std::vector<step::OperatingDeflection> shapes;      ///< of several recordings as one: roved sensors
   std::optional<double> target_m_s;  ///< asked for, or the limit B/C of the standard
   bool target_from_standard = false;
   std::vector<base::Finding> findings;  ///< of the machine and of the chain, strongest first

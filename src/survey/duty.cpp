@@ -1,0 +1,211 @@
+#include "survey/duty.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <iterator>
+#include <map>
+#include <utility>
+
+namespace stillmass::survey {
+namespace {
+
+bool is_duty(const SurveyRecording& recording) {
+  return recording.kind == Kind::steady && recording.stage == Stage::before && recording.running;
+}
+
+std::optional<rotation::SynchronousSettings> synchronous_settings(const SurveyRecording& recording,
+                                                                  const recording::Reader& reader) {
+  const auto& channels = reader.recording().channels;
+  if (std::none_of(channels.begin(), channels.end(),
+                   [](const auto& each) { return each.role == recording::Role::tacho; })) {
+    return {};
+  }
+  rotation::SynchronousSettings settings;
+  settings.tacho.pulses_per_turn = recording.pulses_per_turn;
+  settings.tacho.edge = recording.falling_edge ? rotation::Edge::falling : rotation::Edge::rising;
+  if (recording.part_s) settings.time_s = recording.part_s;
+  return settings;
+}
+
+std::vector<std::string> points_of(const SurveyRecording& recording) {
+  std::vector<std::string> points;
+  for (const recording::ChannelSetting& channel : recording.open.channels) {
+    if (channel.role.value_or(recording::Role::vibration) != recording::Role::vibration || channel.point.empty())
+      continue;
+    points.push_back(channel.point);
+  }
+  std::sort(points.begin(), points.end());
+  return points;
+}
+
+// The point that stayed while sensors were moved: the one that all steady recordings with more than one share, where
+// they do not all have the same points. Empty: there is none.
+std::string common_reference(const Survey& survey) {
+  std::vector<std::string> common;
+  bool is_first = true;
+  bool differ = false;
+  for (const SurveyRecording& recording : survey.recordings) {
+    if (!is_duty(recording)) continue;
+    const std::vector<std::string> points = points_of(recording);
+    if (points.size() < 2) continue;
+    if (is_first) {
+      common = points;
+    } else {
+      std::vector<std::string> both;
+      std::set_intersection(common.begin(), common.end(), points.begin(), points.end(), std::back_inserter(both));
+      differ = differ || both.size() < points.size();
+      common = both;
+    }
+    is_first = false;
+  }
+  return differ && !common.empty() ? common.front() : std::string();
+}
+
+// The single channels of several recordings at one order of the speed.
+std::vector<step::OperatingDeflection> roved_without_reference(
+    const std::vector<const step::SpectrumResult*>& recordings) {
+  std::map<double, std::pair<std::string, std::vector<spectral::RovedLevel>>> by_order;
+  for (const step::SpectrumResult* spectra : recordings) {
+    for (const step::ChannelSpectrum& channel : spectra->channels) {
+      if (!base::is_motion(channel.measured.quantity)) continue;
+      std::map<double, bool> taken;
+      for (const step::SpectralPeak& peak : channel.velocity_peaks) {
+        if (!peak.cause.forcing || peak.in_background()) continue;
+        const machine::Forcing& forcing = spectra->forcing[*peak.cause.forcing];
+        if (!forcing.order || std::exchange(taken[*forcing.order], true)) continue;
+        auto& [name, levels] = by_order[*forcing.order];
+        name = forcing.name;
+        const std::string& point = channel.channel.point.empty() ? channel.channel.name : channel.channel.point;
+        levels.push_back({point, peak.tone.amplitude_rms, peak.tone.frequency});
+      }
+    }
+  }
+  std::vector<step::OperatingDeflection> out;
+  for (const auto& [order, named] : by_order) {
+    if (named.second.size() < 2) continue;
+    const auto shape = spectral::magnitudes_only(named.second);
+    if (shape) out.push_back({named.first, order, *shape});
+  }
+  return out;
+}
+
+std::vector<step::OperatingDeflection> roved_with_reference(
+    const std::vector<const step::SpectrumResult*>& recordings) {
+  std::map<double, std::pair<std::string, std::vector<spectral::DeflectionShape>>> by_order;
+  for (const step::SpectrumResult* spectra : recordings) {
+    for (const step::OperatingDeflection& each : spectra->shapes) {
+      if (!each.order) continue;
+      auto& [name, of_order] = by_order[*each.order];
+      name = each.name;
+      of_order.push_back(each.shape);
+    }
+  }
+  std::vector<step::OperatingDeflection> out;
+  for (const auto& [order, named] : by_order) {
+    if (named.second.size() < 2) continue;
+    const auto shape = spectral::joined(named.second);
+    if (shape) out.push_back({named.first, order, *shape});
+  }
+  return out;
+}
+
+}  // namespace
+
+step::Part part_of(const SurveyRecording& recording) {
+  if (!recording.part_s) return {};
+  return {recording.part_s->lo, recording.part_s->hi};
+}
+
+const SurveyRecording* background_of(const Survey& survey, Stage stage) {
+  const auto at = std::find_if(survey.recordings.begin(), survey.recordings.end(), [&](const SurveyRecording& each) {
+    return each.kind == Kind::background && each.stage == stage;
+  });
+  return at == survey.recordings.end() ? nullptr : &*at;
+}
+
+step::SpectrumResult steady_spectrum(const SurveyResult& result, std::size_t recording, const Readers& readers,
+                                     const base::Context& context) {
+  const Survey& survey = result.survey;
+  const SurveyRecording& which = survey.recordings[recording];
+  step::SpectrumRequest request;
+  request.part = part_of(which);
+  request.site = site_of(survey);
+  request.speed_hz = which.speed_hz;
+  request.modes = result.modes;
+  request.synchronous = synchronous_settings(which, *readers[recording]);
+  request.reference = common_reference(survey);
+  if (const SurveyRecording* stopped = background_of(survey, which.stage)) {
+    const auto position = static_cast<std::size_t>(stopped - survey.recordings.data());
+    request.background = {readers[position].get(), part_of(*stopped)};
+  }
+  for (const auto& [index, check] : result.quality) {
+    if (index != recording) continue;
+    for (const step::ChannelCheck& channel : check.channels) {
+      if (channel.verdict == step::Verdict::unusable) request.unusable.push_back(channel.channel.name);
+    }
+  }
+  return step::spectrum(*readers[recording], request, context);
+}
+
+const step::SpectrumResult* duty(const SurveyResult& result) {
+  const step::SpectrumResult* first = nullptr;
+  for (const auto& [index, spectra] : result.spectra) {
+    if (!is_duty(result.survey.recordings[index])) continue;
+    if (spectra.speed) return &spectra;
+    if (first == nullptr) first = &spectra;
+  }
+  return first;
+}
+
+std::vector<Of<step::OtherTests::Cut>> power_cuts(const SurveyResult& result, const Readers& readers,
+                                                  const base::Context& context) {
+  std::vector<Of<step::OtherTests::Cut>> out;
+  const machine::Machine& machine = result.survey.machine;
+  if (machine.supply != machine::Supply::line || !machine.line_frequency_hz) return out;
+  for (std::size_t i = 0; i < readers.size(); ++i) {
+    const SurveyRecording& recording = result.survey.recordings[i];
+    if (recording.kind != Kind::coastdown || recording.stage != Stage::before) continue;
+    const auto run =
+        std::find_if(result.runups.begin(), result.runups.end(), [&](const auto& each) { return each.recording == i; });
+    const rotation::SpeedCurve* curve =
+        run != result.runups.end() && run->result.runup ? &run->result.runup->speed : nullptr;
+    const auto& channels = readers[i]->recording().channels;
+    for (std::size_t c = 0; c < channels.size(); ++c) {
+      if (channels[c].role != recording::Role::vibration) continue;
+      rotation::PowerCutOptions options;
+      options.channel = c;
+      options.electrical_hz = 2.0 * *machine.line_frequency_hz;
+      options.time_s = recording.part_s;
+      if (const step::SpectrumResult* spectra = duty(result); spectra != nullptr && spectra->speed) {
+        options.speed_hz = spectra->speed->value;
+      }
+      if (options.electrical_hz > 0.4 * readers[i]->recording().rate_hz) continue;
+      auto cut = rotation::power_cut(*readers[i], options, curve, context);
+      if (cut) out.push_back({i, {channels[c].name, std::move(*cut)}});
+    }
+  }
+  return out;
+}
+
+std::vector<step::OperatingDeflection> shapes(const SurveyResult& result) {
+  std::vector<const step::SpectrumResult*> with_shapes;
+  std::vector<const step::SpectrumResult*> alone;
+  for (const auto& [index, spectra] : result.spectra) {
+    if (!is_duty(result.survey.recordings[index])) continue;
+    (spectra.shapes.empty() ? alone : with_shapes).push_back(&spectra);
+  }
+  if (with_shapes.size() > 1) return roved_with_reference(with_shapes);
+  if (with_shapes.empty() && alone.size() > 1) return roved_without_reference(alone);
+  return {};
+}
+
+std::vector<base::Finding> diagnosis(const SurveyResult& result, const step::SpectrumResult& spectra) {
+  step::OtherTests others;
+  for (const auto& [index, run] : result.runups) {
+    if (result.survey.recordings[index].stage == Stage::before && run.runup && others.run == nullptr) others.run = &run;
+  }
+  for (const auto& [index, cut] : result.power_cuts) others.power_cuts.push_back(cut);
+  return step::diagnosed(spectra, site_of(result.survey), result.modes, others);
+}
+
+}  // namespace stillmass::survey
