@@ -53,6 +53,7 @@ class LowRateStream {
   void take(const recording::Chunk& chunk);
   std::int64_t lookahead() const { return 2 * band_->half_length; }
   const BaseBand& band() const { return *band_; }
+  recording::FrameRange part(std::size_t segment) const { return (*parts_)[segment]; }
   const std::vector<std::size_t>& channels() const { return channels_; }
   /// What was made of the chunks, in order.
   std::vector<LowRateRun> runs;

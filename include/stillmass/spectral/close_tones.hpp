@@ -40,11 +40,12 @@ enum class Closeness {
 };
 std::string_view name(Closeness closeness);
 
-/// A steady tone of a cluster.
+/// A tone of a cluster.
 struct CloseTone {
   base::Estimate frequency;      ///< Hz
   base::Estimate amplitude_rms;  ///< SI unit of the channel's quantity
-  base::Estimate phase;          ///< rad, -pi to pi, of the cosine at the middle of the stretch
+  /// rad, -pi to pi, of the cosine at the middle of the stretch; absent where the tone wanders.
+  std::optional<base::Estimate> phase;
 };
 
 /// The tones of one band.
@@ -53,15 +54,19 @@ struct ToneCluster {
   std::string channel_name;
   base::Interval band_hz;
   Closeness closeness = Closeness::none;
-  std::vector<CloseTone> tones;    ///< ascending frequency: one (`single`, `unsteady`: mean frequency and r.m.s. value;
-                                   ///< `unresolved`: what one tone fits), two or three (`resolved`)
+  /// Ascending frequency. One of `single`; two or three of `resolved`; of `unresolved` what one tone fits; of
+  /// `unsteady` mean frequency (its u the wander) and r.m.s. value.
+  std::vector<CloseTone> tones;
   double stretch_s = 0.0;          ///< length of the gap-free stretch that was looked at
+  double middle_s = 0.0;           ///< its middle, from the start of the recording
   double least_spacing_hz = 0.0;   ///< 1 / stretch: tones closer than one beat in the stretch are not told apart
   std::optional<double> record_s;  ///< `unresolved`: a length of recording that would part them (two beats)
-  std::optional<double> wander_hz;  ///< `unsteady`: r.m.s. deviation of the frequency within the stretch
+  /// r.m.s. deviation of the frequency within the stretch: of the one (`unsteady`; a steady drift is found 10 to 15 %
+  /// too small), or of the most wandering one (`resolved`; absent where all are steady).
+  std::optional<double> wander_hz;
   std::optional<double> variation;  ///< `unsteady`: r.m.s. deviation of the amplitude over its mean
   double noise_density = 0.0;       ///< of the noise beside the tones, SI unit squared per Hz, one-sided
-  double evidence = 0.0;  ///< by how much the criterion prefers the answer over one steady tone (greater is clearer;
+  double evidence = 0.0;  ///< by how much the criterion is lower than that of one steady tone (greater is clearer;
                           ///< > 10 is very strong: Kass & Raftery 1995); 0 for `single`
 };
 
@@ -70,12 +75,16 @@ struct ToneCluster {
 /// Each band is mixed down and decimated as in `zoom`, from the longest gap-free stretch in the range without an
 /// invalid sample (at most 4096 complex samples), in one pass for all bands. Its Fourier lines within the band are
 /// fitted by least squares with one, two and three steady tones (frequency, amplitude, phase each) and a parabola for
-/// what tones outside leak in. How many: the Bayesian information criterion for sinusoids, 2 L ln(residual) + 5 L' with
-/// L' = ln L a tone, L the number of lines. Source: Djuric, IEEE Trans. SP 44 (1996) 1744; Stoica & Selen, IEEE SP
-/// Magazine 21 (2004) 36 (from memory).
-/// Two tones count as resolved where they are more than 1 / stretch apart (Rayleigh) and their sum explains the peak
-/// down to the noise, or leaves at most a tenth of the weaker one. A beating pair varies in amplitude and phase alike;
-/// a peak whose phase wanders by four times as much as its amplitude, or the other way round, is unsteady.
+/// what tones outside leak in. How many: the Bayesian information criterion for sinusoids, 2 L ln(residual) + 5 m ln L
+/// for m tones on L lines. Source: Djuric, IEEE Trans. SP 44 (1996) 1744; Stoica & Selen, IEEE SP Magazine 21 (2004) 36
+/// (from memory).
+///
+/// Tones count as resolved where they are more than 1 / stretch apart (Rayleigh) and their sum explains the peak down
+/// to the noise, or leaves at most a tenth of the weakest. A beating pair varies in amplitude and phase alike (as r /
+/// sqrt 2 each, for a weak companion of ratio r); a peak whose phase varies by four times as much as its amplitude, or
+/// the other way round, is one unsteady tone. Where the lines hold two or three humps apart, the strongest of steady
+/// amplitude, and their sum beats once the wander of the strongest is taken off, they are tones that wander: resolved,
+/// with the wander as u of their frequencies.
 ///
 /// u: from the residual of the fit. One cluster a band, in their order. Throws `Error` (usage) for a band or channel
 /// that is not there, and what the reader throws.
