@@ -25,7 +25,7 @@ struct Deflection {
   base::Estimate magnitude;             ///< |point over reference|, both as the same quantity, ratio
   std::optional<base::Estimate> phase;  ///< rad, -pi to pi, e^{+i omega t}: positive where the point leads; absent
                                         ///< where it cannot be known (one roved sensor and no reference)
-  std::optional<double> coherence;  ///< absent for a single block
+  std::optional<double> coherence;      ///< absent for a single block
 
   /// Point over reference; nothing without a phase.
   std::optional<std::complex<double>> ratio() const;
@@ -42,21 +42,22 @@ struct PointRefusal {
 struct DeflectionShape {
   double asked_hz = 0.0;
   base::Estimate frequency;  ///< where the line is, Hz; u: how far it may lie off (its breadth over the recording)
-  std::string reference;     ///< point of the reference; it has magnitude 1 and phase 0 among `points`
+  std::string reference;     ///< point of the reference; it has magnitude 1 and phase 0 among `points`, by
+                             ///< definition
   std::vector<Deflection> points;
   std::vector<PointRefusal> not_given;
-  bool sign_known = true;    ///< false: magnitudes only
-  bool levels_agree = true;  ///< false: taken one after the other without a reference, so that a change of level
-                             ///< between the recordings is in the ratios and not in their u
-  std::size_t recordings = 1;            ///< joined
+  bool sign_known = true;      ///< false: magnitudes only
+  bool levels_agree = true;    ///< false: taken one after the other without a reference, so that a change of level
+                               ///< between the recordings is in the ratios and not in their u
+  std::size_t recordings = 1;  ///< joined
   std::vector<std::string> disagreeing;  ///< points that two recordings give more than three u apart
 };
 
 struct DeflectionOptions {
   Window window = Window::hann;
   double overlap = 0.5;
-  double resolution_hz = 0.0;              ///< line spacing; 0: chosen (block_plan)
-  std::size_t block_frames = 0;            ///< exact block length; 0: from `resolution_hz`
+  double resolution_hz = 0.0;    ///< line spacing; 0: chosen (block_plan), at most a sixteenth of the lowest frequency
+  std::size_t block_frames = 0;  ///< exact block length; 0: from `resolution_hz`
   std::optional<std::size_t> reference{};  ///< channel counted from 0; without it the one that stands out of its own
                                            ///< noise the most, for each frequency anew
   double wander = 5e-4;                    ///< the frequency stays within this share of itself
@@ -94,7 +95,7 @@ class DeflectionConsumer final : public BlockConsumer {
 
   std::shared_ptr<const Setup> setup_;
   BlockTransform transform_;
-  std::vector<Sums> sums_;  ///< one a frequency
+  std::unique_ptr<Sums> sums_;
 };
 
 /// The same over a whole recording.
