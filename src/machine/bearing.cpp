@@ -6,6 +6,7 @@
 
 #include "stillmass/base/error.hpp"
 #include "stillmass/base/tables.hpp"
+#include "stillmass/base/text.hpp"
 
 namespace stillmass::machine {
 namespace {
@@ -64,6 +65,13 @@ std::optional<Bearing> bearing_named(std::string_view name) {
     if (bearing.name == name) return std::move(bearing);
   }
   return {};
+}
+
+std::string nearest_bearing(std::string_view name) {
+  const std::vector<Bearing> table = bearing_table();
+  std::vector<std::string_view> names;
+  for (const Bearing& bearing : table) names.emplace_back(bearing.name);
+  return std::string(base::nearest_name(name, names));
 }
 
 }  // namespace stillmass::machine

@@ -1,12 +1,14 @@
 #include "stillmass/survey/survey_file.hpp"
 
 #include <algorithm>
+#include <cmath>
 #include <numbers>
 #include <set>
 #include <utility>
 
 #include "stillmass/base/error.hpp"
 #include "stillmass/base/text.hpp"
+#include "stillmass/machine/bearing.hpp"
 
 namespace stillmass::survey {
 namespace {
@@ -41,6 +43,84 @@ void read_foundation(const Table& table, machine::Machine& machine) {
   }
 }
 
+void go_together(const Table& row, const char* first, const char* second) {
+  if (row.has(first) == row.has(second)) return;
+  row.refuse(row.has(first) ? first : second, std::string("'") + first + "' and '" + second + "' go together");
+}
+
+double shaft_ratio(const Table& row, const machine::Machine& machine, const std::string& named) {
+  const auto ratio = machine.shaft_ratio(named);
+  if (!ratio) row.refuse("driven_by", "there is no [[machine.shaft]] named '" + named + "' before this one");
+  return *ratio;
+}
+
+machine::Shaft read_shaft(const Table& row, const machine::Machine& machine) {
+  machine::Shaft shaft;
+  shaft.name = *row.text("name");
+  shaft.driven_by = row.text("driven_by").value_or("");
+  shaft.teeth = row.integer("teeth");
+  shaft.vanes = row.integer("vanes");
+  go_together(row, "sheave_mm", "driver_sheave_mm");
+  const auto sheave = scaled(row.number("sheave_mm"), 1e-3);
+  const auto driver_sheave = scaled(row.number("driver_sheave_mm"), 1e-3);
+  if (row.has("driver_teeth") && !shaft.teeth) go_together(row, "teeth", "driver_teeth");
+  if (sheave) {
+    shaft.belt = machine::Belt{*driver_sheave, *sheave, scaled(row.number("belt_length_mm"), 1e-3)};
+    if (const auto centre = scaled(row.number("centre_mm"), 1e-3); centre && !shaft.belt->length_m) {
+      if (*centre <= 0.5 * (*sheave + *driver_sheave)) row.refuse("centre_mm", "the sheaves would touch");
+      shaft.belt->length_m = machine::belt_length(*driver_sheave, *sheave, *centre);
+    }
+  }
+  const double driver = shaft_ratio(row, machine, shaft.driven_by);
+  const double driver_u = machine.shaft_ratio_u(shaft.driven_by);
+  if (const auto ratio = row.number("ratio")) {
+    shaft.ratio = *ratio;
+  } else if (const auto driver_teeth = row.integer("driver_teeth")) {
+    shaft.ratio = driver * *driver_teeth / *shaft.teeth;
+    shaft.ratio_u = driver_u;
+  } else if (sheave) {
+    shaft.ratio = driver * *driver_sheave / *sheave;
+    shaft.ratio_u = std::hypot(driver_u, machine::belt_slip_u);
+  } else {
+    row.refuse("", "[[machine.shaft]] '" + shaft.name + "' needs 'ratio'",
+               "or 'teeth' and 'driver_teeth', or 'sheave_mm' and 'driver_sheave_mm'");
+  }
+  return shaft;
+}
+
+machine::Bearing read_bearing(const Table& row, const machine::Machine& machine) {
+  machine::Bearing bearing;
+  const std::string name = *row.text("name");
+  const auto elements = row.integer("rolling_elements");
+  const auto ball = row.number("ball_mm");
+  const auto pitch = row.number("pitch_mm");
+  if (elements && ball && pitch) {
+    bearing.elements = *elements;
+    bearing.ball_diameter_m = *ball * 1e-3;
+    bearing.pitch_diameter_m = *pitch * 1e-3;
+    bearing.contact_angle_rad = row.number("contact_angle_deg").value_or(0.0) * std::numbers::pi / 180.0;
+    if (*ball >= *pitch) row.refuse("ball_mm", "'ball_mm' must be smaller than 'pitch_mm'");
+  } else if (elements || ball || pitch) {
+    row.refuse(elements ? "rolling_elements"
+               : ball   ? "ball_mm"
+                        : "pitch_mm",
+               "'rolling_elements', 'ball_mm' and 'pitch_mm' go together");
+  } else if (const auto known = machine::bearing_named(name)) {
+    bearing = *known;
+  } else {
+    const std::string meant = machine::nearest_bearing(name);
+    row.refuse("name", "the bearing '" + name + "' is not in the program's table",
+               (meant.empty() ? std::string() : "did you mean '" + meant + "'? Else ") +
+                   "give rolling_elements, ball_mm and pitch_mm");
+  }
+  bearing.name = name;
+  bearing.shaft = row.text("shaft").value_or("");
+  if (!machine.shaft_ratio(bearing.shaft)) {
+    row.refuse("shaft", "there is no [[machine.shaft]] named '" + bearing.shaft + "'");
+  }
+  return bearing;
+}
+
 machine::Machine read_machine(const Table& table) {
   machine::Machine machine;
   machine.name = *table.text("name");
@@ -61,21 +141,10 @@ machine::Machine read_machine(const Table& table) {
     machine.stopped_shift_frequency = shift->number("frequency").value_or(machine.stopped_shift_frequency);
     machine.stopped_shift_damping = shift->number("damping").value_or(machine.stopped_shift_damping);
   }
-  for (const Table& shaft : table.tables("shaft")) {
-    machine.shafts.push_back({*shaft.text("name"), *shaft.number("ratio"), {}});
-  }
-  for (const Table& row : table.tables("bearing")) {
-    machine::Bearing bearing;
-    bearing.name = *row.text("name");
-    bearing.elements = *row.integer("rolling_elements");
-    bearing.ball_diameter_m = *row.number("ball_mm") * 1e-3;
-    bearing.pitch_diameter_m = *row.number("pitch_mm") * 1e-3;
-    bearing.contact_angle_rad = row.number("contact_angle_deg").value_or(0.0) * std::numbers::pi / 180.0;
-    bearing.shaft = row.text("shaft").value_or("");
-    if (!machine.shaft_ratio(bearing.shaft))
-      row.refuse("shaft", "there is no [[machine.shaft]] named '" + bearing.shaft + "'");
-    machine.bearings.push_back(std::move(bearing));
-  }
+  machine.rotor_bars = table.integer("rotor_bars");
+  machine.drive_switching_hz = table.number("drive_switching_hz");
+  for (const Table& row : table.tables("shaft")) machine.shafts.push_back(read_shaft(row, machine));
+  for (const Table& row : table.tables("bearing")) machine.bearings.push_back(read_bearing(row, machine));
   return machine;
 }
 
@@ -216,9 +285,23 @@ SurveyRecording read_recording(const Table& row, const Survey& survey) {
 }
 
 Limit read_limit(const Table& row) {
-  Limit limit{row.text("standard").value_or(""), row.text("category").value_or(""),
-              scaled(row.number("shaft_height_mm"), 1e-3), scaled(row.number("target_mm_s"), 1e-3)};
-  if (limit.standard.empty() && !limit.target_m_s) row.refuse("", "[[limit]] needs 'standard' or 'target_mm_s'");
+  Limit limit;
+  limit.standard = row.text("standard").value_or("");
+  limit.category = row.text("category").value_or("");
+  limit.shaft_height_m = scaled(row.number("shaft_height_mm"), 1e-3);
+  limit.target_m_s = scaled(row.number("target_mm_s"), 1e-3);
+  limit.alarm_m_s = scaled(row.number("alarm_mm_s"), 1e-3);
+  limit.trip_m_s = scaled(row.number("trip_mm_s"), 1e-3);
+  if (limit.standard.empty() && !limit.target_m_s && !limit.alarm_m_s && !limit.trip_m_s) {
+    row.refuse("", "[[limit]] needs 'standard' or 'target_mm_s'");
+  }
+  const auto ascend = [&](const auto& lower, const auto& upper, const char* key, const char* than) {
+    if (lower && upper && *upper < *lower)
+      row.refuse(key, std::string("'") + key + "' must not be below '" + than + "'");
+  };
+  ascend(limit.target_m_s, limit.alarm_m_s, "alarm_mm_s", "target_mm_s");
+  ascend(limit.alarm_m_s, limit.trip_m_s, "trip_mm_s", "alarm_mm_s");
+  ascend(limit.target_m_s, limit.trip_m_s, "trip_mm_s", "target_mm_s");
   return limit;
 }
 
