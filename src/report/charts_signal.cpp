@@ -45,6 +45,13 @@ Series density_series(const std::string& name, const spectral::Spectrum& spectru
   return series_of(name, x, y);
 }
 
+// The background in the place of the channel's density.
+spectral::Spectrum stopped(const step::ChannelSpectrum& channel) {
+  spectral::Spectrum out = channel.shown;
+  out.density = channel.background_density;
+  return out;
+}
+
 double highest_of_interest(const step::SpectrumResult& result, const spectral::Spectrum& spectrum) {
   const double half_rate = spectrum.rate_hz / 2.0;
   if (result.max_frequency_hz) return std::min(*result.max_frequency_hz, half_rate);
@@ -131,9 +138,18 @@ Chart spectrum_chart(const step::SpectrumResult& result, const step::ChannelSpec
   Panel panel;
   if (density) {
     panel.y = {plain_name(spectrum.quantity) + " density", "(" + std::string(unit.name) + ")\xC2\xB2/Hz"};
+    if (!channel.background_density.empty()) {
+      panel.series.push_back(density_series("machine stopped", stopped(channel), unit.to_si, top));
+      panel.series.back().quiet = true;
+    }
     panel.series.push_back(density_series(channel.channel.name, spectrum, unit.to_si, top));
   } else {
     panel.y = {plain_name(spectrum.quantity), std::string(unit.name) + " " + std::string(base::name(result.detector))};
+    if (!channel.background_density.empty()) {
+      panel.series.push_back(
+          amplitude_series("machine stopped", stopped(channel), base::from_rms(result.detector) / unit.to_si, top));
+      panel.series.back().quiet = true;
+    }
     panel.series.push_back(
         amplitude_series(channel.channel.name, spectrum, base::from_rms(result.detector) / unit.to_si, top));
   }
@@ -147,7 +163,7 @@ Chart spectrum_chart(const step::SpectrumResult& result, const step::ChannelSpec
         density ? spectrum.density[std::min(peak.tone.line, spectrum.density.size() - 1)] / (unit.to_si * unit.to_si)
                 : rms * base::from_rms(result.detector) / unit.to_si;
     const std::string cause =
-        peak.cause.text == "unknown" ? base::rounded(peak.tone.frequency.value, 4) + " Hz" : peak.cause.text;
+        peak.cause.text == machine::unexplained ? base::rounded(peak.tone.frequency.value, 4) + " Hz" : peak.cause.text;
     panel.callouts.push_back({peak.tone.frequency.value, y, cause});
   }
   chart.panels.push_back(std::move(panel));

@@ -38,6 +38,19 @@ Json findings(const std::vector<base::Finding>& all) {
   return out;
 }
 
+Json machine_findings(const std::vector<base::Finding>& all) {
+  Json out = Json::array();
+  for (const base::Finding& each : all) {
+    Json row = finding(each);
+    row["strength"] = base::name(each.strength);
+    row["evidence"] = each.evidence;
+    row["confirm"] = each.confirm;
+    row["refute"] = each.refute;
+    out.push_back(row);
+  }
+  return out;
+}
+
 Json refusal(const base::Refusal& each) {
   return {{"code", each.code}, {"seen", each.seen}, {"measure", each.measure}};
 }

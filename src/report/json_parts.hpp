@@ -38,6 +38,8 @@ Shown shown(base::Quantity quantity, base::Detector detector);
 
 Json finding(const base::Finding& each);
 Json findings(const std::vector<base::Finding>& all);
+/// With strength, evidence, and what would confirm or refute.
+Json machine_findings(const std::vector<base::Finding>& all);
 Json refusal(const base::Refusal& each);
 Json mode(const modal::Mode& each);
 Json modes(const std::vector<modal::Mode>& all);

@@ -2,10 +2,12 @@
 
 #include <complex>
 #include <filesystem>
+#include <numbers>
 #include <optional>
 
 #include "stillmass/base/number.hpp"
 #include "stillmass/base/text.hpp"
+#include "stillmass/spectral/noise_interval.hpp"
 
 namespace stillmass::report {
 namespace {
@@ -57,6 +59,71 @@ void put_modes(std::vector<NamedText>& files, const std::vector<modal::Mode>& mo
   files.push_back({"modes.csv", text});
 }
 
+void put_bands(std::vector<NamedText>& files, const step::ChannelSpectrum& channel) {
+  if (channel.third_octaves.bands.empty()) return;
+  const std::string unit = unit_of(channel.shown);
+  std::string text = row(std::string("nominal [Hz]"), std::string("from [Hz]"), std::string("to [Hz]"),
+                         "r.m.s. [" + unit + "]", "u [" + unit + "]");
+  for (const spectral::BandLevel& each : channel.third_octaves.bands) {
+    text += row(each.nominal_hz, each.band_hz.lo, each.band_hz.hi, each.rms.value, each.rms.u);
+  }
+  files.push_back({file_name("third-octaves", channel.channel.name), text});
+}
+
+void put_zoom(std::vector<NamedText>& files, const step::ChannelSpectrum& channel) {
+  if (!channel.zoom) return;
+  const std::string unit(base::si_unit(channel.zoom->quantity).name);
+  std::string text =
+      row(std::string("frequency [Hz]"), "r.m.s. amplitude [" + unit + "]", "density [(" + unit + ")^2/Hz]");
+  for (std::size_t k = 0; k < channel.zoom->density.size(); ++k) {
+    text += row(channel.zoom->frequency(k), channel.zoom->amplitude_rms(k), channel.zoom->density[k]);
+  }
+  files.push_back({file_name("zoom", channel.channel.name), text});
+}
+
+void put_envelope(std::vector<NamedText>& files, const step::ChannelSpectrum& channel) {
+  if (!channel.envelope || !channel.envelope->envelope) return;
+  const spectral::Spectrum& spectrum = channel.envelope->envelope->spectrum;
+  std::string text = row(std::string("frequency [Hz]"), "r.m.s. amplitude [" + unit_of(spectrum) + "]");
+  for (std::size_t k = spectrum.first_line; k < spectrum.density.size(); ++k) {
+    text += row(spectrum.frequency(k), spectrum.amplitude_rms(k));
+  }
+  files.push_back({file_name("envelope", channel.channel.name), text});
+}
+
+void put_waveform(std::vector<NamedText>& files, const step::ChannelSpectrum& channel) {
+  if (!channel.synchronous) return;
+  const rotation::SynchronousAverage& average = *channel.synchronous;
+  const std::string unit(base::si_unit(average.quantity).name);
+  std::string text = row(std::string("turns [1]"), "mean [" + unit + "]", "standard error [" + unit + "]");
+  for (std::size_t i = 0; i < average.waveform.size(); ++i) {
+    text += row(static_cast<double>(i) / static_cast<double>(average.samples_per_turn), average.waveform[i],
+                average.standard_error(i));
+  }
+  files.push_back({file_name("synchronous", channel.channel.name), text});
+}
+
+void put_deflections(std::vector<NamedText>& files, const std::vector<step::OperatingDeflection>& shapes) {
+  if (shapes.empty()) return;
+  constexpr double to_deg = 180.0 / std::numbers::pi;
+  std::string text = row(std::string("forcing"), std::string("frequency [Hz]"), std::string("reference"),
+                         std::string("point"), std::string("ratio [1]"), std::string("u [1]"),
+                         std::string("phase lead [deg]"), std::string("u [deg]"), std::string("coherence [1]"));
+  for (const step::OperatingDeflection& each : shapes) {
+    for (const spectral::Deflection& point : each.shape.points) {
+      std::optional<double> phase;
+      std::optional<double> phase_u;
+      if (point.phase) {
+        phase = point.phase->value * to_deg;
+        if (point.phase->u) phase_u = *point.phase->u * to_deg;
+      }
+      text += row(each.name, each.shape.frequency.value, each.shape.reference, point.point, point.magnitude.value,
+                  point.magnitude.u, phase, phase_u, point.coherence);
+    }
+  }
+  files.push_back({"deflections.csv", text});
+}
+
 void with_prefix(std::vector<NamedText>& all, const std::string& recording, std::vector<NamedText> files) {
   const std::string stem = std::filesystem::path(recording).stem().string();
   for (NamedText& file : files) all.push_back({base::safe_file_name(stem) + "-" + file.name, std::move(file.text)});
@@ -87,10 +154,14 @@ std::vector<NamedText> csv(const step::SpectrumResult& result) {
   for (const step::ChannelSpectrum& each : result.channels) {
     const spectral::Spectrum& shown = each.shown;
     const std::string unit = unit_of(shown);
-    std::string text =
-        row(std::string("frequency [Hz]"), "r.m.s. amplitude [" + unit + "]", "density [(" + unit + ")^2/Hz]");
+    const std::string density_unit = "[(" + unit + ")^2/Hz]";
+    std::string text = row(std::string("frequency [Hz]"), "r.m.s. amplitude [" + unit + "]", "density " + density_unit,
+                           "95 % from " + density_unit, "95 % to " + density_unit);
     for (std::size_t k = shown.first_line; k < shown.density.size(); ++k) {
-      text += row(shown.frequency(k), shown.amplitude_rms(k), shown.density[k]);
+      const auto interval = spectral::density_interval(shown, k);
+      text += row(shown.frequency(k), shown.amplitude_rms(k), shown.density[k],
+                  interval ? std::optional(interval->lo) : std::nullopt,
+                  interval ? std::optional(interval->hi) : std::nullopt);
     }
     files.push_back({file_name("spectrum", each.channel.name), text});
     std::string peaks = row(std::string("frequency [Hz]"), std::string("u [Hz]"), "r.m.s. amplitude [" + unit + "]",
@@ -100,7 +171,12 @@ std::vector<NamedText> csv(const step::SpectrumResult& result) {
                    peak.tone.amplitude_rms.u, peak.cause.text);
     }
     files.push_back({file_name("peaks", each.channel.name), peaks});
+    put_bands(files, each);
+    put_zoom(files, each);
+    put_envelope(files, each);
+    put_waveform(files, each);
   }
+  put_deflections(files, result.shapes);
   return files;
 }
 
@@ -168,6 +244,7 @@ std::vector<NamedText> csv(const survey::SurveyResult& result) {
   }
   for (const auto& [index, spectra] : result.spectra)
     with_prefix(files, result.survey.recordings[index].written, csv(spectra));
+  put_deflections(files, result.shapes);
   for (const auto& [index, runup] : result.runups)
     with_prefix(files, result.survey.recordings[index].written, csv(runup));
   for (const survey::AbsorberAim& aim : result.absorbers)

@@ -9,6 +9,7 @@
 #include "stillmass/report/sentences.hpp"
 
 #include "report/json_parts.hpp"
+#include "report/spectrum_json.hpp"
 
 namespace stillmass::report {
 namespace {
@@ -75,54 +76,6 @@ Json check(const step::CheckResult& result) {
                         {"findings", findings(each.findings)}});
   }
   return channels;
-}
-
-Json severity(const step::ChannelSpectrum& channel) {
-  if (!channel.severity) return nullptr;
-  const step::Severity& found = *channel.severity;
-  Json limits = Json::array();
-  for (const double limit : found.limits.velocity) limits.push_back(number(limit * to_mm_s));
-  return {{"standard", found.limits.standard},
-          {"category", found.limits.category},
-          {"zone", machine::name(found.zone)},
-          {"value_mm_s", number(found.velocity * to_mm_s)},
-          {"limits_mm_s", limits},
-          {"source", found.limits.source}};
-}
-
-Json spectrum(const step::SpectrumResult& result) {
-  Json channels = Json::array();
-  for (const step::ChannelSpectrum& each : result.channels) {
-    const Shown unit = shown(each.shown.quantity, result.detector);
-    Json overall = nullptr;
-    if (each.overall) {
-      overall = {{"quantity", base::name(each.shown.quantity)},
-                 {"detector", base::name(result.detector)},
-                 {"band_hz", {number(each.band_hz.lo), number(each.band_hz.hi)}},
-                 {"unit", unit.unit},
-                 {"value", number(each.overall->value * unit.factor)},
-                 {"u", number(each.overall->u, unit.factor)}};
-    }
-    Json peaks = Json::array();
-    for (const step::SpectralPeak& peak : each.peaks) {
-      peaks.push_back({{"frequency", estimate(peak.tone.frequency)},
-                       {"amplitude", estimate(peak.tone.amplitude_rms, unit.factor, unit.unit)},
-                       {"quantity", base::name(each.shown.quantity)},
-                       {"detector", base::name(result.detector)},
-                       {"cause", peak.cause.text}});
-    }
-    Json out = {{"name", each.channel.name}, {"point", each.channel.point}, {"overall", overall}, {"peaks", peaks}};
-    out["severity"] = severity(each);
-    if (!each.severity) out["severity_refused"] = refusal(each.severity.refusal());
-    out["findings"] = findings(each.findings);
-    channels.push_back(out);
-  }
-  Json out;
-  out["channels"] = channels;
-  out["speed"] = result.speed ? estimate(*result.speed, to_rpm, "rpm") : Json(nullptr);
-  out["resolution_hz"] = result.channels.empty() ? Json(nullptr) : number(result.channels.front().measured.line_hz);
-  out["blocks"] = result.channels.empty() ? Json(nullptr) : Json(result.channels.front().measured.blocks);
-  return out;
 }
 
 Json bump(const step::BumpResult& result) {
@@ -311,17 +264,6 @@ Json after_point(const survey::AfterPoint& each) {
           {"meets_target", each.meets_target ? Json(*each.meets_target) : Json(nullptr)}};
 }
 
-Json machine_findings(const std::vector<base::Finding>& all) {
-  Json out = Json::array();
-  for (const base::Finding& each : all) {
-    Json row = finding(each);
-    row["strength"] = base::name(each.strength);
-    row["evidence"] = each.evidence;
-    out.push_back(row);
-  }
-  return out;
-}
-
 }  // namespace
 
 std::string json(const Envelope& envelope, const std::vector<step::CheckResult>& results) {
@@ -380,6 +322,16 @@ std::string json(const Envelope& envelope, const survey::SurveyResult& result) {
     row.update(runup(each));
     out["runups"].push_back(row);
   }
+  out["power_cuts"] = Json::array();
+  for (const auto& [index, each] : result.power_cuts) {
+    out["power_cuts"].push_back({{"file", file(index)},
+                                 {"channel", each.channel},
+                                 {"verdict", rotation::name(each.result.verdict)},
+                                 {"text", each.result.reason},
+                                 {"cut_s", estimate(each.result.cut_s)},
+                                 {"frequency", estimate(each.result.frequency)}});
+  }
+  out["deflections"] = deflections(result.shapes);
   out["findings"] = machine_findings(result.findings);
   out["refusals"] = Json::array();
   for (const base::Refusal& each : result.refusals) out["refusals"].push_back(refusal(each));

@@ -27,6 +27,12 @@ void add(Page& page, const std::string& heading, std::vector<Block> blocks) {
   page.sections.push_back({heading, std::move(blocks)});
 }
 
+// Findings that are no cause of vibration: what is assumed on the way.
+std::vector<base::Finding> without_causes(std::vector<base::Finding> findings) {
+  std::erase_if(findings, [](const base::Finding& each) { return !each.evidence.empty(); });
+  return findings;
+}
+
 std::string first_file(const Envelope& envelope) {
   return envelope.inputs.empty() ? "" : envelope.inputs.front().file.filename().string();
 }
@@ -52,7 +58,7 @@ Page page(const Envelope& envelope, const std::vector<step::CheckResult>& result
   return out;
 }
 
-Page page(const Envelope& envelope, const step::SpectrumResult& result, bool density) {
+Page page(const Envelope& envelope, const step::SpectrumResult& result, const SpectrumView& view) {
   Page out = started(envelope, first_file(envelope), "Averaged spectra");
   const step::ChannelSpectrum* strongest = nullptr;
   for (const step::ChannelSpectrum& each : result.channels) {
@@ -63,19 +69,24 @@ Page page(const Envelope& envelope, const step::SpectrumResult& result, bool den
     out.verdict =
         fmt::format("{} r.m.s. at {}", velocity_text(strongest->severity_velocity->value), strongest->channel.name);
     if (strongest->severity) {
-      out.verdict += fmt::format(": zone {} of {}", machine::name(strongest->severity->zone),
-                                 strongest->severity->limits.standard);
+      out.verdict +=
+          fmt::format(": {} of {}", machine::text(strongest->severity->verdict), strongest->severity->limits.standard);
     }
     if (!strongest->peaks.empty()) {
       out.lines.push_back({"Strongest line", fmt::format("{}: {}", with_u(strongest->peaks.front().tone.frequency),
                                                          strongest->peaks.front().cause.text)});
+      if (!result.causes.empty()) {
+        out.lines.push_back({"Cause", result.causes.front().text, Tone::neutral});
+      }
     }
   }
   if (result.speed) out.lines.push_back({"Speed", with_u(*result.speed, 60.0, "rpm")});
   std::vector<Block> level;
   if (auto chart = severity_chart(result, nullptr, {})) level.emplace_back(std::move(*chart));
   add(out, "Levels", std::move(level));
-  add(out, "Spectra", spectrum_blocks(result, density));
+  add(out, "What drives it", cause_blocks(result.causes));
+  add(out, "How it moves", deflection_blocks(result.shapes));
+  add(out, "Spectra", spectrum_blocks(result, view));
   out.sections.push_back(inputs_section(envelope));
   return out;
 }
@@ -163,7 +174,16 @@ Page page(const Envelope& envelope, const survey::SurveyResult& result) {
   }
   add(out, "How bad it is", std::move(severity));
 
-  add(out, "What was found", finding_blocks(result.findings));
+  add(out, "What drives it", cause_blocks(result.findings));
+  if (before != nullptr) add(out, "How it moves", deflection_blocks(before->shapes));
+  add(out, "How it moves, several recordings joined", deflection_blocks(result.shapes));
+  std::vector<Block> cuts;
+  for (const auto& [index, cut] : result.power_cuts) {
+    cuts.emplace_back(Paragraph{fmt::format("{}, {}: {} ({}).", result.survey.recordings[index].written, cut.channel,
+                                            cut.result.reason, rotation::name(cut.result.verdict))});
+  }
+  add(out, "When the power was cut", std::move(cuts));
+  add(out, "What is assumed", finding_blocks(without_causes(result.findings)));
   if (before != nullptr && after != nullptr) {
     std::vector<Block> pairs;
     for (const step::ChannelSpectrum& now : before->channels) {
@@ -181,7 +201,7 @@ Page page(const Envelope& envelope, const survey::SurveyResult& result) {
     add(out,
         fmt::format("Spectra: {} ({})", result.survey.recordings[index].written,
                     survey::name(result.survey.recordings[index].stage)),
-        spectrum_blocks(spectra, false));
+        spectrum_blocks(spectra, {}));
   }
   for (const auto& [index, runup] : result.runups) {
     add(out, fmt::format("Run-up: {}", result.survey.recordings[index].written), runup_blocks(runup));

@@ -217,39 +217,6 @@ std::vector<Block> check_blocks(const step::CheckResult& result) {
   return blocks;
 }
 
-std::vector<Block> spectrum_blocks(const step::SpectrumResult& result, bool density) {
-  std::vector<Block> blocks;
-  for (const step::ChannelSpectrum& each : result.channels) {
-    if (each.shown.density.empty()) continue;
-    const base::Unit unit = base::trade_unit(each.shown.quantity);
-    const double factor = base::from_rms(result.detector) / unit.to_si;
-    blocks.emplace_back(spectrum_chart(result, each, density));
-    Table table;
-    table.caption = each.channel.name;
-    if (each.overall) {
-      table.caption +=
-          fmt::format(": {} {} from {} to {} Hz", with_u(*each.overall, factor, unit.name), base::name(result.detector),
-                      base::plain(each.band_hz.lo, 4), base::plain(each.band_hz.hi, 4));
-    }
-    table.header = {"frequency", "amplitude (" + std::string(base::name(result.detector)) + ")", "cause"};
-    for (const step::SpectralPeak& peak : each.peaks) {
-      table.rows.push_back(
-          {with_u(peak.tone.frequency), with_u(peak.tone.amplitude_rms, factor, unit.name), peak.cause.text});
-    }
-    table.notes.push_back(uncertainty_note(result));
-    if (each.severity) {
-      table.notes.push_back(fmt::format("Zone {} of {}, {} (source of the limits: {}).",
-                                        machine::name(each.severity->zone), each.severity->limits.standard,
-                                        each.severity->limits.category, each.severity->limits.source));
-    } else {
-      table.notes.push_back("No severity zone: " + sentence(each.severity.refusal()) + ".");
-    }
-    blocks.emplace_back(std::move(table));
-    for (Block& block : finding_blocks(each.findings)) blocks.push_back(std::move(block));
-  }
-  return blocks;
-}
-
 std::vector<Block> bump_blocks(const step::BumpResult& result) {
   std::vector<Block> blocks;
   if (result.refusal) {

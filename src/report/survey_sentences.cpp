@@ -77,13 +77,17 @@ Line severity_line(const survey::SurveyResult& result) {
   Tone tone = Tone::neutral;
   if (channel.severity) {
     const step::Severity& severity = *channel.severity;
-    text += fmt::format(": zone {} of {}, {}", machine::name(severity.zone), severity.limits.standard,
+    text += fmt::format(": {} of {}, {}", machine::text(severity.verdict), severity.limits.standard,
                         severity.limits.category);
-    tone = severity.zone == machine::Zone::d   ? Tone::bad
-           : severity.zone == machine::Zone::c ? Tone::caution
-                                               : Tone::good;
+    tone = severity.verdict.zone == machine::Zone::d   ? Tone::bad
+           : severity.verdict.zone == machine::Zone::c ? Tone::caution
+                                                       : Tone::good;
   } else {
     text += "; no zone: " + channel.severity.refusal().seen;
+    if (channel.typical) text += "; typical ranges of ISO 20816-1: " + channel.typical->text;
+  }
+  if (channel.background && channel.background->is_doubtful) {
+    text += fmt::format("; doubtful: the background is {:.0f} % of it", 100.0 * channel.background->share.value);
   }
   if (result.target_m_s) {
     text += fmt::format("; {} {}", result.target_from_standard ? "limit B/C taken as target," : "target",
@@ -95,10 +99,7 @@ Line severity_line(const survey::SurveyResult& result) {
 
 Line cause_line(const survey::SurveyResult& result) {
   for (const base::Finding& finding : result.findings) {
-    if (finding.code != base::Code::resonance && finding.code != base::Code::unbalance &&
-        finding.code != base::Code::vane_pass_force && finding.code != base::Code::electrical_force) {
-      continue;
-    }
+    if (finding.evidence.empty()) continue;  // what is assumed on the way
     return {"Cause", fmt::format("{} ({})", finding.text, base::name(finding.strength)), Tone::neutral};
   }
   return {"Cause", "no cause stands out of these recordings", Tone::caution};

@@ -9,12 +9,12 @@
 #include "stillmass/base/text.hpp"
 #include "stillmass/report/sentences.hpp"
 
+#include "report/terminal_parts.hpp"
+
 namespace stillmass::report {
 namespace {
 
 using base::rounded;
-
-constexpr std::size_t screen = 100;
 
 std::string in_unit(std::optional<double> si, const base::Unit& unit) {
   return si ? rounded(*si / unit.to_si) + " " + std::string(unit.name) : "-";
@@ -22,32 +22,6 @@ std::string in_unit(std::optional<double> si, const base::Unit& unit) {
 
 std::string in_trade_unit(std::optional<double> si, base::Quantity quantity) {
   return in_unit(si, base::trade_unit(quantity));
-}
-
-std::string heading(const recording::Recording& recording) {
-  return fmt::format("{}\n  {}; {} channel{}, {} Hz, {} s{}\n", base::printable(recording.file.string()),
-                     base::printable(recording.format), recording.channels.size(),
-                     recording.channels.size() == 1 ? "" : "s", base::plain(recording.rate_hz),
-                     base::plain(recording.duration_s(), 4),
-                     recording.segments.size() > 1 ? fmt::format(" in {} parts", recording.segments.size()) : "");
-}
-
-std::string bullet(const std::string& text) { return "  - " + wrapped(text, screen - 4, 4) + "\n"; }
-
-// An assumption has no likely cause.
-std::string finding_lines(const std::vector<base::Finding>& findings, bool with_cause = true) {
-  std::string out;
-  const Shortened few = shortened(findings);
-  for (const base::Finding& each : few.findings) {
-    const base::CodeText& code = base::text(each.code);
-    const std::string whose = each.channel.empty() ? "" : each.channel + ": ";
-    const std::string cause = with_cause ? "likely " + std::string(code.likely_cause) + "; " : "";
-    const std::string seen = each.text.empty() ? std::string(code.seen) : each.text;
-    out += bullet(
-        base::printable(fmt::format("{}{}{} [{}]; {}{}", whose, seen, when(each), code.name, cause, code.next_step)));
-  }
-  for (const std::string& more : few.more) out += bullet("and " + more);
-  return out;
 }
 
 std::string mode_table(const std::vector<modal::Mode>& modes) {
@@ -76,55 +50,6 @@ std::string text(const step::CheckResult& result) {
     all.insert(all.end(), each.findings.begin(), each.findings.end());
   }
   return out + finding_lines(all);
-}
-
-std::string text(const step::SpectrumResult& result, bool density) {
-  std::string out = heading(result.recording);
-  if (!result.channels.empty()) {
-    const spectral::Spectrum& first = result.channels.front().measured;
-    out += fmt::format("  {} window, lines {} Hz apart, {} blocks\n", spectral::name(first.window),
-                       base::plain(first.line_hz, 3), first.blocks);
-  }
-  if (result.speed) out += fmt::format("  running speed {}\n", with_u(*result.speed, 60.0, "rpm"));
-  std::vector<base::Finding> all = result.findings;
-  for (const step::ChannelSpectrum& each : result.channels) {
-    const base::Unit unit = base::trade_unit(each.shown.quantity);
-    const double factor = base::from_rms(result.detector) / unit.to_si;
-    out += "\n" + base::printable(each.channel.name);
-    if (each.overall) {
-      out += fmt::format(": {} {} from {} to {} Hz", with_u(*each.overall, factor, unit.name),
-                         base::name(result.detector), base::plain(each.band_hz.lo, 4), base::plain(each.band_hz.hi, 4));
-    }
-    out += "\n";
-    if (each.severity) {
-      const step::Severity& severity = *each.severity;
-      out += fmt::format("  zone {} of {}, {}: {} r.m.s. (limits {}, {}, {})\n", machine::name(severity.zone),
-                         severity.limits.standard, severity.limits.category, velocity_text(severity.velocity),
-                         velocity_text(severity.limits.velocity[0]), velocity_text(severity.limits.velocity[1]),
-                         velocity_text(severity.limits.velocity[2]));
-    }
-    std::vector<std::vector<std::string>> rows;
-    for (const step::SpectralPeak& peak : each.peaks) {
-      std::vector<std::string> row = {with_u(peak.tone.frequency), with_u(peak.tone.amplitude_rms, factor, unit.name)};
-      if (density) {
-        const double value = each.shown.density[std::min(peak.tone.line, each.shown.density.size() - 1)];
-        row.push_back(fmt::format("{} ({})\xC2\xB2/Hz", rounded(value / (unit.to_si * unit.to_si)), unit.name));
-      }
-      row.push_back(base::printable(peak.cause.text));
-      rows.push_back(row);
-    }
-    const std::string amplitude = "amplitude (" + std::string(base::name(result.detector)) + ")";
-    if (rows.empty()) {
-      out += "  no line stands out of the noise\n";
-    } else if (density) {
-      out += aligned({"frequency", amplitude, "density", "cause"}, rows);
-    } else {
-      out += aligned({"frequency", amplitude, "cause"}, rows);
-    }
-    all.insert(all.end(), each.findings.begin(), each.findings.end());
-  }
-  out += "\n" + wrapped(uncertainty_note(result), screen, 0) + "\n";
-  return out + (all.empty() ? "" : "\n" + finding_lines(all));
 }
 
 std::string text(const step::BumpResult& result) {
@@ -250,6 +175,11 @@ std::string text(const survey::SurveyResult& result) {
     out += "\nCalibrated:\n";
     for (const survey::ChannelCalibration& each : result.calibrations.channels) out += bullet(each.text);
   }
+  std::vector<base::Finding> causes;
+  for (const base::Finding& each : result.findings) {
+    if (!each.evidence.empty() && causes.size() < 3) causes.push_back(each);
+  }
+  if (!causes.empty()) out += "\nWhat drives it:\n" + cause_lines(causes);
   std::vector<base::Finding> assumed;
   const auto pick = [&](const std::vector<base::Finding>& findings) {
     for (const base::Finding& each : findings) {

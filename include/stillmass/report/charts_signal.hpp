@@ -15,6 +15,13 @@ Chart overview_chart(const step::CheckResult& result);
 /// frequencies, peaks and their causes.
 Chart spectrum_chart(const step::SpectrumResult& result, const step::ChannelSpectrum& channel, bool density = false);
 
+/// The zoomed band of a channel; the waveform over a turn with its standard error; the spectrum of its envelope; its
+/// third-octave bands. The channel has them.
+Chart zoom_chart(const step::SpectrumResult& result, const step::ChannelSpectrum& channel);
+Chart waveform_chart(const step::ChannelSpectrum& channel);
+Chart envelope_chart(const step::SpectrumResult& result, const step::ChannelSpectrum& channel);
+Chart third_octave_chart(const step::SpectrumResult& result, const step::ChannelSpectrum& channel);
+
 /// Broad-band r.m.s. velocity of every point against the zones and the target, mm/s. `after` may be null. Nothing where
 /// no channel has a velocity.
 std::optional<Chart> severity_chart(const step::SpectrumResult& before, const step::SpectrumResult* after,

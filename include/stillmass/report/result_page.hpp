@@ -4,6 +4,7 @@
 
 #include "stillmass/report/envelope.hpp"
 #include "stillmass/report/page.hpp"
+#include "stillmass/report/terminal.hpp"
 #include "stillmass/step/absorber.hpp"
 #include "stillmass/step/bump.hpp"
 #include "stillmass/step/check.hpp"
@@ -15,7 +16,7 @@ namespace stillmass::report {
 
 /// The result of a command as a page: what it says first, then pictures, tables, what is assumed, inputs.
 Page page(const Envelope& envelope, const std::vector<step::CheckResult>& results);
-Page page(const Envelope& envelope, const step::SpectrumResult& result, bool density = false);
+Page page(const Envelope& envelope, const step::SpectrumResult& result, const SpectrumView& view = {});
 Page page(const Envelope& envelope, const step::BumpResult& result);
 Page page(const Envelope& envelope, const step::RunupResult& result);
 Page page(const Envelope& envelope, const step::AbsorberResult& result);

@@ -14,7 +14,12 @@ namespace stillmass::report {
 
 /// Results as plain text for a terminal of 80 columns or more: UTF-8, every line ended.
 std::string text(const step::CheckResult& result);
-std::string text(const step::SpectrumResult& result, bool density = false);
+/// What of a spectrum is shown beside levels and peaks.
+struct SpectrumView {
+  bool density = false;        ///< spectral densities instead of amplitudes
+  bool third_octaves = false;  ///< levels of the third-octave bands
+};
+std::string text(const step::SpectrumResult& result, const SpectrumView& view = {});
 std::string text(const step::BumpResult& result);
 std::string text(const step::RunupResult& result);
 std::string text(const step::AbsorberResult& result);
