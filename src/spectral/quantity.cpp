@@ -8,6 +8,8 @@
 
 #include "stillmass/base/error.hpp"
 
+#include "spectral/strong_lines.hpp"
+
 namespace stillmass::spectral {
 
 namespace {
@@ -64,6 +66,8 @@ Spectrum as_quantity(const Spectrum& spectrum, Quantity to, double low_limit_hz)
   Spectrum result = spectrum;
   result.quantity = to;
   result.integrations += n;
+  if (spectrum.integrations == 0) result.strong_lines = strong_lines(spectrum);
+  if (result.integrations == 0) result.strong_lines.clear();
   if (result.integrations > 0) {
     const double limit = std::max(low_limit_hz, least_low_limit_hz(spectrum));
     const auto line = static_cast<std::size_t>(std::ceil(limit / spectrum.line_hz - 1e-9));

@@ -19,7 +19,8 @@ namespace stillmass::spectral {
 /// with its whole power at its own frequency. A tone counts whole within the closed band, less and less within half a
 /// line outside it, so that a tone on the edge is not a matter of chance. It is lost where it stands below
 /// `least_low_limit_hz` (quantity.hpp): what lies there cannot be told from the sensor's offset.
-/// With a window that has high side lobes (rectangle) the skirts of strong tones remain, up to several percent.
+/// Within 0.5 % of the true velocity for steady tones from that limit on and for noise even over a lobe; the rectangle
+/// from 2.5 lines on, below which a tone runs into its own mirror image.
 ///
 /// u: from the scatter of the blocks (`spread`) with the correlation of neighbouring lines, as for independent blocks,
 /// of integrated spectra also from the frequencies of the strong lines and from lobes that no single tone explains;

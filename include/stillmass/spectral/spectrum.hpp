@@ -47,6 +47,8 @@ struct StrongLine {
   double frequency_hz = 0.0;
   double u_hz = 0.0;         ///< of the frequency
   double mean_square = 0.0;  ///< of the measured signal (before integration)
+  double relative_u = 0.0;   ///< of the mean square
+  double correlation = 0.0;  ///< of mean square and frequency, which one fit gives
   double mismatch = 0.0;     ///< power by which the lobe differs from a tone's, over its power: 0 for a steady tone
 };
 

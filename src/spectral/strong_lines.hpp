@@ -1,0 +1,28 @@
+#pragma once
+
+#include <cstddef>
+#include <span>
+#include <vector>
+
+#include "stillmass/spectral/spectrum.hpp"
+
+namespace stillmass::spectral {
+
+/// The lobes of a measured spectrum that stand out of what is around them and matter to a level of it that was
+/// integrated: by how their power, weighed line by line, misses what a tone has. Frequency and power from the lines of
+/// the lobe that are free of the sensor's offset, by least squares over the window's own lobe, those of the others
+/// taken off. At most 32, in order of frequency. Empty for peak hold, no blocks.
+std::vector<StrongLine> strong_lines(const Spectrum& measured);
+
+/// More power than this beside the fitted lobe, relative to it: no tone, its power is left on its lines.
+inline constexpr double tone_mismatch = 0.3;
+
+/// True for windows that end in a step: their side lobes fall by 6 dB an octave only.
+bool has_far_skirts(Window window);
+
+/// What a tone of mean square 1, so many lines from 0, puts on the lines first, first + 1, ... of a density that is
+/// summed over the lines: all of them add up to 1. Its mirror image beyond 0 is left out.
+void lobe_shares(Window window, double noise_bandwidth_bins, double tone_lines, std::size_t first,
+                 std::span<double> shares);
+
+}  // namespace stillmass::spectral
