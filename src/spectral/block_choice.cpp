@@ -80,7 +80,9 @@ std::string_view name(BlockReason reason) {
   return std::find_if(reasons.begin(), reasons.end(), [=](const Named& n) { return n.reason == reason; })->name;
 }
 
-double separating_line_hz(Window window, double distance_hz) { return distance_hz / (lobe_bins(window) + 1.0); }
+double separating_line_hz(Window window, double distance_hz) {
+  return distance_hz / std::max(lobe_bins(window) + 1.0, 3.0);
+}
 
 std::string BlockChoice::text() const {
   const double told_apart = separate_hz.value_or(0.0);

@@ -41,8 +41,9 @@ struct BlockChoice {
   std::string text() const;
 };
 
-/// Spacing of lines at which two equal tones that far apart have a valley of 10 dB or more between them, wherever they
-/// stand: their distance over (half the window's lobe in lines + 1). Checked by simulation in the tests.
+/// Spacing of lines at which two equal tones that far apart have a valley of 6 dB or more between them, wherever they
+/// stand: their distance over (half the window's lobe in lines + 1), for the rectangle over 3. Checked by simulation in
+/// the tests.
 double separating_line_hz(Window window, double distance_hz);
 
 /// The block length for a recording and what was asked of it: `block_frames`, else `lines`, else `resolution_hz`, else
