@@ -178,14 +178,20 @@ class Judge {
   /// Tones that wander, each in a hump of its own and steady in amplitude; beside the strongest, the sum beats.
   bool be_wandering_apart(CloseJudgement& result, const Humps& humps, double noise) const {
     constexpr double steady_amplitude = 0.25;
-    constexpr double skirt = 3.0;  // lines
+    constexpr double skirt = 3.0;   // lines
+    constexpr double valley = 8.0;  // lines: wander leaves gaps narrower than that in one tone's own lines
     const auto& all = humps.all();
     if (all.size() < 2 || all.size() > most_tones) return false;
+    for (std::size_t j = 1; j < all.size(); ++j) {
+      if (all[j].from - all[j - 1].to < valley) return false;
+    }
     const Hump& strongest =
         *std::max_element(all.begin(), all.end(), [](const Hump& a, const Hump& b) { return a.power < b.power; });
-    if (steadiness(lines_, strongest.from - skirt, strongest.to + skirt, noise).amplitude > steady_amplitude) {
-      return false;
-    }
+    // A tone that dwells here and then there makes humps too, each of which comes and goes.
+    const bool come_and_go = std::any_of(all.begin(), all.end(), [&](const Hump& hump) {
+      return steadiness(lines_, hump.from - skirt, hump.to + skirt, noise).amplitude > steady_amplitude;
+    });
+    if (come_and_go) return false;
     const Steadiness sum = steadiness_beside(lines_, all.front().from - skirt, all.back().to + skirt, strongest, noise);
     if (is_modulated(sum)) return false;
     result.closeness = Closeness::resolved;
