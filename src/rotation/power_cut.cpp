@@ -3,7 +3,6 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
-#include <complex>
 #include <numbers>
 #include <span>
 
@@ -11,13 +10,14 @@
 
 #include "stillmass/base/error.hpp"
 
+#include "rotation/base_band.hpp"
+#include "rotation/coast_knee.hpp"
 #include "rotation/line_speed.hpp"
 #include "rotation/stream_windows.hpp"
 
 namespace stillmass::rotation {
 namespace {
 
-using Complex = std::complex<double>;
 using base::Interval;
 using recording::FrameRange;
 using recording::Recording;
@@ -30,63 +30,7 @@ constexpr double went_on = 0.5;     // of before
 constexpr double before_most_s = 10.0;
 constexpr double after_most_s = 5.0;
 constexpr double aside_lobes = 1.5;    // where the noise is read: so many widths of the lobe away
-constexpr double knee_from = 0.99;     // of the speed before: between these two the coast-down is taken as a
-constexpr double knee_to = 0.97;       // straight line back to where it began
 constexpr double step_search_s = 1.0;  // around that
-
-// r.m.s. with phase of a window at frequency f, phase counted from time 0.
-struct Reading {
-  double time_s = 0.0;  // middle of the window
-  Complex at;           // the electrical frequency
-  double beside = 0.0;  // the lesser of both sides
-};
-
-class Window {
- public:
-  Window(std::size_t length, double rate_hz) : rate_hz_(rate_hz) {
-    double sum = 0.0;
-    for (std::size_t i = 0; i < length; ++i) {
-      const double part = (static_cast<double>(i) + 0.5) / static_cast<double>(length);
-      taps_.push_back(0.5 - 0.5 * std::cos(2.0 * pi * part));
-      sum += taps_.back();
-    }
-    for (double& tap : taps_) tap *= std::numbers::sqrt2 / sum;
-  }
-
-  Complex at(std::span<const double> samples, double frequency_hz, double first_s) const {
-    const Complex step = std::polar(1.0, -2.0 * pi * frequency_hz / rate_hz_);
-    Complex turn = std::polar(1.0, -2.0 * pi * std::fmod(frequency_hz * first_s, 1.0));
-    Complex sum = 0.0;
-    for (std::size_t i = 0; i < samples.size(); ++i) {
-      sum += taps_[i] * samples[i] * turn;
-      turn *= step;
-    }
-    return sum;
-  }
-
-  // Along an angle: the order times the turns at each sample.
-  Complex along(std::span<const double> samples, const SpeedCurve& curve, double order, double first_s) const {
-    Complex sum = 0.0;
-    for (std::size_t i = 0; i < samples.size(); ++i) {
-      const double angle = order * curve.turn_at(first_s + static_cast<double>(i) / rate_hz_);
-      sum += taps_[i] * samples[i] * std::polar(1.0, -2.0 * pi * std::fmod(angle, 1.0));
-    }
-    return sum;
-  }
-
-  double lobe_hz() const { return 2.0 * rate_hz_ / static_cast<double>(taps_.size()); }
-
- private:
-  double rate_hz_;
-  std::vector<double> taps_;
-};
-
-double median(std::vector<double> values) {
-  if (values.empty()) return 0.0;
-  const auto middle = values.begin() + static_cast<std::ptrdiff_t>(values.size() / 2);
-  std::nth_element(values.begin(), middle, values.end());
-  return *middle;
-}
 
 base::Estimate estimate(double value, std::optional<double> u, base::Quantity quantity) {
   base::Estimate out;
@@ -107,85 +51,6 @@ FrameRange part_of(const Recording& recording, const std::optional<Interval>& ti
     if (part.size() > best.size()) best = part;
   }
   return best;
-}
-
-// When the coast-down began and from which speed.
-struct Knee {
-  double time_s = 0.0;
-  double speed_hz = 0.0;
-};
-
-double turn_speed(const SpeedCurve& curve, double turn) {
-  const Interval all = curve.turns();
-  const double from = std::clamp(turn - 0.5, all.lo, std::max(all.lo, all.hi - 1.0));
-  return curve.mean_speed(from, std::min(all.hi, from + 1.0)).value;
-}
-
-std::optional<Knee> knee_of(const SpeedCurve& curve, Interval time_s) {
-  const double from = std::ceil(curve.turn_at(std::clamp(time_s.lo, curve.time_s().lo, curve.time_s().hi)));
-  const double to = std::floor(curve.turn_at(std::clamp(time_s.hi, curve.time_s().lo, curve.time_s().hi)));
-  double fastest = 0.0;
-  for (double turn = from; turn <= to; turn += 1.0) fastest = std::max(fastest, turn_speed(curve, turn));
-  std::vector<double> steady;
-  for (double turn = from; turn <= to; turn += 1.0) {
-    const double speed = turn_speed(curve, turn);
-    if (speed >= knee_from * fastest) steady.push_back(speed);
-  }
-  const double before = median(std::move(steady));
-  const auto last_above = [&](double share) {
-    for (double turn = to; turn >= from; turn -= 1.0) {
-      const double speed = turn_speed(curve, turn);
-      if (speed < share * before) continue;
-      if (turn == to) return std::optional<double>{};
-      const double next = turn_speed(curve, turn + 1.0);
-      const double part = (speed - share * before) / std::max(1e-12, speed - next);
-      return std::optional(curve.time_at(turn) + part * (curve.time_at(turn + 1.0) - curve.time_at(turn)));
-    }
-    return std::optional<double>{};
-  };
-  const auto first = last_above(knee_from);
-  const auto second = last_above(knee_to);
-  if (!first || !second) return {};
-  const double back = (1.0 - knee_from) / (knee_from - knee_to);
-  return Knee{*first - back * (*second - *first), before};
-}
-
-// The line before the cut, from readings joined to one long Hann window.
-struct Steady {
-  double frequency_hz = 0.0;
-  double rms = 0.0;
-  double resolution_hz = 0.0;  // 1 / time
-};
-
-double long_rms(std::span<const Reading> readings, double off_hz, double lobe_hz) {
-  Complex sum = 0.0;
-  double weights = 0.0;
-  for (std::size_t i = 0; i < readings.size(); ++i) {
-    const double part = (static_cast<double>(i) + 0.5) / static_cast<double>(readings.size());
-    const double hann = 0.5 - 0.5 * std::cos(2.0 * pi * part);
-    sum += hann * readings[i].at * std::polar(1.0, -2.0 * pi * off_hz * readings[i].time_s);
-    weights += hann;
-  }
-  // What the short window lets through so far from its middle: sinc(x) / (1 - x^2), x in lines of the window.
-  const double x = 2.0 * std::abs(off_hz) / lobe_hz;
-  const double passes = x < 1e-9 ? 1.0 : std::sin(pi * x) / (pi * x * (1.0 - x * x));
-  return std::abs(sum) / weights / passes;
-}
-
-template <class Skip>
-Steady strongest(std::span<const Reading> readings, Interval off_hz, double lobe_hz, const Skip& skip) {
-  Steady out;
-  out.resolution_hz = 1.0 / (readings.back().time_s - readings.front().time_s);
-  const double step = 0.1 * out.resolution_hz;
-  for (double off = off_hz.lo; off <= off_hz.hi; off += step) {
-    if (skip(off)) continue;
-    const double rms = long_rms(readings, off, lobe_hz);
-    if (rms > out.rms) {
-      out.rms = rms;
-      out.frequency_hz = off;
-    }
-  }
-  return out;
 }
 
 // Where two levels describe the amplitudes best: the place of the first of the second level.
@@ -213,6 +78,13 @@ base::Refusal no_cut(std::string seen) {
   return {"no-power-cut", std::move(seen),
           "record from ten seconds before the machine is switched off until it stands still"};
 }
+
+// A line before the cut.
+struct Steady {
+  double frequency_hz = 0.0;
+  double rms = 0.0;
+  double resolution_hz = 0.0;
+};
 
 class Test {
  public:
@@ -243,13 +115,13 @@ class Test {
           fmt::format("the power was cut at {:.2f} s, and there is too little before or after it", knee_.time_s));
     }
     const double grid = search * options_.electrical_hz;
-    line_ = strongest(before, {-grid, grid}, window_.lobe_hz(), [](double) { return false; });
-    line_.frequency_hz += options_.electrical_hz;
+    const SteadyLine line = strongest(before, {-grid, grid}, window_.lobe_hz(), [](double) { return false; });
+    line_ = {options_.electrical_hz + line.off_hz, line.rms, line.resolution_hz};
     order_ = line_.frequency_hz / mean_speed(before);
     neighbour_ = neighbour(before);
     std::vector<double> beside;
     for (const Reading& each : before) beside.push_back(each.beside);
-    noise_before_ = median(std::move(beside));
+    noise_before_ = middle_of(std::move(beside));
     locate();
     read_order();
     describe();
@@ -298,10 +170,9 @@ class Test {
       return {};
     }
     const double own = line_.frequency_hz - options_.electrical_hz;
-    Steady out = strongest(before, {off - reach, off + reach}, lobe,
-                           [&](double each) { return std::abs(each - own) < 2.0 * line_.resolution_hz; });
-    out.frequency_hz = nearest;
-    return out;
+    const SteadyLine out = strongest(before, {off - reach, off + reach}, lobe,
+                                     [&](double each) { return std::abs(each - own) < 2.0 * line_.resolution_hz; });
+    return {nearest, out.rms, out.resolution_hz};
   }
 
   void locate() {
@@ -383,13 +254,13 @@ class Test {
       }
     }
     has_followed_ = !followed.empty();
-    out_.noise_rms = median(beside);
+    out_.noise_rms = middle_of(beside);
     const double noise_u = out_.noise_rms / std::numbers::sqrt2;
     out_.frequency = estimate(line_.frequency_hz, line_.resolution_hz * noise_before_ / std::max(line_.rms, 1e-300),
                               base::Quantity::frequency);
     out_.before_rms = estimate(line_.rms, noise_before_ / std::numbers::sqrt2, quantity_);
-    out_.after_rms = estimate(median(level), noise_u, quantity_);
-    out_.followed_rms = estimate(median(followed), noise_u, quantity_);
+    out_.after_rms = estimate(middle_of(level), noise_u, quantity_);
+    out_.followed_rms = estimate(middle_of(followed), noise_u, quantity_);
     out_.cut_s = estimate(fell_s_, hop_s / std::numbers::sqrt3, base::Quantity::time);
     const double fall = fall_time(line_.rms, std::min(out_.after_rms.value, 0.8 * line_.rms));
     out_.fall_s = estimate(fall, hop_s / std::numbers::sqrt3, base::Quantity::time);
@@ -439,7 +310,7 @@ class Test {
   FrameRange range_;
   const base::Context& context_;
   std::size_t length_;
-  Window window_;
+  HannWindow window_;
   base::Quantity quantity_;
   Knee knee_;
   std::vector<Reading> readings_;

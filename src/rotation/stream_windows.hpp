@@ -22,7 +22,7 @@ void stream_windows(const recording::Reader& reader, std::size_t channel, record
   std::vector<double> held;
   std::int64_t first = range.begin;       // frame of held[0]
   std::int64_t next = range.begin;        // first frame of the next window
-  std::int64_t invalid_to = range.begin;  // windows that start before see an invalid sample
+  std::int64_t clean_from = range.begin;  // after the last invalid sample of the chunks before
   recording::Chunk chunk;
   while (first + static_cast<std::int64_t>(held.size()) < range.end) {
     context.check_stop();
@@ -34,13 +34,17 @@ void stream_windows(const recording::Reader& reader, std::size_t channel, record
       const auto offset = static_cast<std::size_t>(next - first);
       const recording::FrameRange seen{std::max(next, chunk.first_frame), next + static_cast<std::int64_t>(length)};
       const bool valid = seen.size() == 0 || chunk.is_valid(channel, seen);
-      if (!valid) invalid_to = seen.end;
-      if (valid && next >= invalid_to && !take(next, std::span<const double>(held).subspan(offset, length))) return;
+      if (valid && next >= clean_from && !take(next, std::span<const double>(held).subspan(offset, length))) return;
       next += static_cast<std::int64_t>(hop);
     }
-    // What is left belongs to the next windows; invalid samples in it spoil them.
-    const recording::FrameRange tail{std::max(next, chunk.first_frame), chunk.range().end};
-    if (tail.size() > 0 && !chunk.is_valid(channel, tail)) invalid_to = std::max(invalid_to, tail.end);
+    if (!chunk.all_valid()) {
+      const auto& valid = chunk.valid[channel];
+      if (valid.empty() || valid.back().end != chunk.range().end) {
+        clean_from = chunk.range().end;
+      } else if (valid.back().begin > chunk.first_frame) {
+        clean_from = valid.back().begin;
+      }
+    }
     const auto done = std::min(held.size(), static_cast<std::size_t>(next - first));
     held.erase(held.begin(), held.begin() + static_cast<std::ptrdiff_t>(done));
     first += static_cast<std::int64_t>(done);
