@@ -32,7 +32,7 @@ enum class PowerCutVerdict {
 /// "electrical", "mechanical", "cannot tell".
 std::string_view name(PowerCutVerdict verdict);
 
-/// The track behind the verdict, for a picture.
+/// The track behind the verdict, for a picture: from 3 s before the cut to 5 s after it.
 struct PowerCutTrack {
   std::vector<double> time_s;        ///< middle of the window
   std::vector<double> at_frequency;  ///< r.m.s. at the electrical frequency
@@ -58,16 +58,21 @@ struct PowerCut {
 
 /// The line at twice the line frequency through a coast-down: complex base band under a Hann window of `block_s`, at a
 /// fixed frequency, and at the order that this frequency had before the cut (along the speed curve, or the 1x line
-/// followed by its own phase where there is none). Streams; the track grows by 4 / block_s values a second.
+/// followed by its own phase where there is none). Before the cut up to 10 s of windows are joined to one long one, so
+/// that orders beside the line are told from it. The cut: where the speed curve leaves its level (a straight line back
+/// through 99 and 97 % of it), and within 1 s of that the best step of the line's amplitude. Streams; holds 15 s of
+/// readings.
 ///
-/// Electrical: before the cut at least 4 times the noise beside it, afterwards at its order less than a quarter of
-/// before or under twice the noise. Mechanical: at its order more than half of before goes on. Between: cannot tell.
-/// Also where a whole order of the speed lies so close before the cut (1.5 over the time before it) that the two are
-/// one line, or is half as strong and within the window's lobe (two-pole motors). Limits: common practice, simulated.
+/// Electrical: before the cut at least 4 times the noise beside it, and of that less than a quarter (or twice the
+/// noise) goes on at its order in the first window after the cut. Mechanical: more than half goes on, the square of the
+/// slowing allowed for (unbalance). Between: cannot tell. Nor where a whole order of the speed stands apart from the
+/// line inside the window's lobe, half as strong or more (2x of a two-pole motor): after the cut it cannot be told from
+/// the line. A whole order on the line itself is no hindrance: what is mechanical of it goes on. Limits: common
+/// practice, held against simulated coast-downs both ways.
 ///
-/// Refused: `no-power-cut` (the speed does not fall in this part, or less than two windows before or after it),
-/// `no-tacho` (neither a curve nor a speed, or the 1x line cannot be followed). Throws `Error` (usage) for a channel
-/// that is not there and a frequency above 0.4 of the rate.
+/// Refused: `no-power-cut` (the speed does not fall by 3 % in this part, or less than two windows before or four after
+/// the cut), `no-tacho` (neither a curve nor a speed, or the 1x line cannot be followed). Throws `Error` (usage) for a
+/// channel that is not there and a frequency above 0.4 of the rate.
 base::Answer<PowerCut> power_cut(const recording::Reader& reader, const PowerCutOptions& options,
                                  const SpeedCurve* curve, const base::Context& context);
 
