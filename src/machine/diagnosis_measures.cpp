@@ -39,6 +39,23 @@ Result excess(const Question& question, const Measure& measure) {
   return Observed{line.amplitude() / smooth_limit(*question.channel, *question.rules), sentence(line), {}};
 }
 
+// The channel's level over its limit of smooth running.
+Result level_excess(const Question& question, const Measure&) {
+  const auto& level = question.channel->velocity;
+  if (!level) return {};
+  return Observed{level->value / smooth_limit(*question.channel, *question.rules), {}, {}};
+}
+
+// Of the line's largest amplitude anywhere on the machine.
+Result of_largest(const Question& question, const Measure& measure) {
+  double most = 0.0;
+  for (const ChannelFacts& each : question.facts->channels) {
+    most = std::max(most, seen_line(measure.arguments[0], each, question).amplitude());
+  }
+  const SeenLine line = line_at(question, measure.arguments[0]);
+  return Observed{most > 0.0 ? line.amplitude() / most : 0.0, sentence(line), {}};
+}
+
 Result ratio(const Question& question, const Measure& measure) {
   const SeenLine a = line_at(question, measure.arguments[0]);
   const SeenLine b = line_at(question, measure.arguments[1]);
@@ -120,6 +137,13 @@ Result phase(const Question& question, const Measure& measure) {
     most = moves;
     out = Observed{*apart, sentence(a), pair.first->name + " and " + pair.second->name};
   }
+  return out;
+}
+
+// Degrees from 90: 0 where the motion turns, 90 where it goes along a line.
+Result phase_off_90(const Question& question, const Measure& measure) {
+  Result out = phase(question, measure);
+  if (out) out->value = std::abs(out->value - 90.0);
   return out;
 }
 
@@ -246,6 +270,8 @@ Result is_pump(const Question& question, const Measure&) {
 constexpr auto words = std::to_array<MeasureWord>({
     {"share", "line", "", share},
     {"excess", "line", "", excess},
+    {"level_excess", "", "", level_excess},
+    {"of_largest", "line", "", of_largest},
     {"ratio", "line", "line", ratio},
     {"axial_ratio", "line", "", axial_ratio},
     {"radial_ratio", "line", "", radial_ratio},
@@ -253,6 +279,7 @@ constexpr auto words = std::to_array<MeasureWord>({
     {"half_orders", "", "", half_orders},
     {"side_bands", "line", "spacing", side_bands},
     {"phase", "pair", "line", phase},
+    {"phase_off_90", "pair", "line", phase_off_90},
     {"noise_share", "", "", noise_share},
     {"noise_acceleration", "", "", noise_acceleration},
     {"noise_acceleration_share", "", "", noise_acceleration_share},

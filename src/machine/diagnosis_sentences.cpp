@@ -47,6 +47,10 @@ std::string limits(const Observation& observation) {
   return fmt::format("{:g}", observation.at_least ? *observation.at_least : *observation.at_most);
 }
 
+std::string number(double value) {
+  return std::abs(value) >= 20.0 ? fmt::format("{:.0f}", value) : base::plain(value, 2);
+}
+
 std::string line_with_share(const Question& question) {
   const SeenLine line = seen_line("line", *question.channel, question);
   std::string out = sentence(line);
@@ -90,7 +94,7 @@ std::string evidence(std::string_view sentence, const Observed& observed, const 
   return filled(sentence, [&](std::string_view name) -> std::string {
     if (name == "line" && !observed.line.empty()) return observed.line;
     if (name == "where") return observed.where;
-    if (name == "value") return base::plain(observed.value, 3);
+    if (name == "value") return number(observed.value);
     if (name == "percent") return fmt::format("{:.0f} %", 100.0 * observed.value);
     if (name == "limit") return limits(observation);
     return from_question(name, question);

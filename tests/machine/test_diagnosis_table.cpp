@@ -66,7 +66,7 @@ TEST_CASE("a measure that the program does not know is an error with its line") 
 TEST_CASE("a row without a source, a wrong code, placeholder or limit is an error") {
   CHECK(error_of(with("code = \"unbalance\"", "code = \"lopsided\"")).problem.find("lopsided") != std::string::npos);
   CHECK(error_of(with("text = \"{line}\"", "text = \"{colour}\"")).problem.find("{colour}") != std::string::npos);
-  CHECK(error_of(with("points = [0, 1, 4]", "points = [4, 1, 0]")).problem.find("ascending") != std::string::npos);
+  CHECK(error_of(with("points = [0, 2, 4]", "points = [4, 2, 0]")).problem.find("ascending") != std::string::npos);
   CHECK(error_of(with("at_least = 1.0\nrole", "role")).problem.find("without a limit") != std::string::npos);
   CHECK(error_of(with("name = \"smooth-mm-s\"", "name = \"smoth\"")).problem.find("unknown limit") !=
         std::string::npos);

@@ -1,0 +1,185 @@
+#include <algorithm>
+#include <cstdio>
+#include <map>
+#include <string>
+
+#include "stillmass/machine/diagnosis.hpp"
+
+#include "machine/diagnosis_facts.hpp"
+#include "machine/measured_facts.hpp"
+#include "support/catch.hpp"
+
+// How often the diagnosis is right and wrong on simulated machines (simulated_machine.hpp). Limits and seeds are here;
+// `test_machine "[.rates]"` prints the whole table.
+using namespace stillmass;
+using namespace stillmass::test;
+using base::Code;
+using base::Strength;
+
+namespace {
+
+constexpr std::uint64_t first_fault_seed = 1000;
+constexpr std::uint64_t first_pair_seed = 5000;
+constexpr std::uint64_t first_healthy_seed = 9000;
+
+struct Expected {
+  Fault fault;
+  const char* name;
+  Code code;
+  std::vector<double> sizes;  // mm/s r.m.s., of bearing and cavitation m/s2
+};
+
+const std::vector<Expected>& expected() {
+  static const std::vector<Expected> out = {
+      {Fault::unbalance, "unbalance", Code::unbalance, {3, 5, 8}},
+      {Fault::parallel_misalignment, "parallel misalignment", Code::misalignment, {3, 5, 8}},
+      {Fault::angular_misalignment, "angular misalignment", Code::misalignment, {3, 5, 8}},
+      {Fault::looseness, "looseness", Code::looseness, {3, 5, 8}},
+      {Fault::bent_shaft, "bent shaft", Code::bent_shaft, {3, 5, 8}},
+      {Fault::vane_pass, "vane pass", Code::vane_pass_force, {3, 5, 8}},
+      {Fault::electrical, "electrical", Code::electrical_force, {3, 5, 8}},
+      {Fault::bearing, "bearing", Code::bearing_damage, {10, 20, 40}},
+      {Fault::cavitation, "cavitation", Code::cavitation_like, {8, 12, 20}},
+      {Fault::soft_foot, "soft foot", Code::soft_foot, {3, 5, 8}},
+      {Fault::resonance, "resonance", Code::resonance, {3, 5, 8}},
+  };
+  return out;
+}
+
+double in_si(Fault fault, double size) {
+  return fault == Fault::bearing || fault == Fault::cavitation ? size : 1e-3 * size;
+}
+
+// What was found with everything measured, and with spectra alone.
+struct Both {
+  std::vector<base::Finding> all;
+  std::vector<base::Finding> alone;
+};
+Both findings(std::uint64_t seed, const std::vector<FaultSize>& faults) {
+  static const machine::DiagnosisRules rules = machine::diagnosis_rules();
+  const machine::Facts facts = measured_facts(simulated(seed, faults));
+  return {machine::diagnose(facts, rules), machine::diagnose(spectra_alone(facts), rules)};
+}
+
+bool found(const std::vector<base::Finding>& list, Code code, Strength least) {
+  const base::Finding* at = find(list, code);
+  return at != nullptr && at->strength >= least;
+}
+
+// How often each code came out, at least weak, fair, strong.
+struct Counts {
+  int machines = 0;
+  std::map<Code, std::array<int, 3>> of;
+
+  void add(const std::vector<base::Finding>& list) {
+    ++machines;
+    for (std::size_t c = 0; c < base::all_codes().size(); ++c) {
+      const Code code = base::all_codes()[c].code;
+      for (int s = 0; s < 3; ++s) {
+        if (found(list, code, static_cast<Strength>(s))) ++of[code][static_cast<std::size_t>(s)];
+      }
+    }
+  }
+  double rate(Code code, Strength least) const {
+    const auto at = of.find(code);
+    return at == of.end() ? 0.0 : static_cast<double>(at->second[static_cast<std::size_t>(least)]) / machines;
+  }
+  std::string text() const {
+    std::string out;
+    for (const auto& [code, count] : of) {
+      out += "  " + std::string(base::text(code).name) + " " + std::to_string(count[0]) + "/" +
+             std::to_string(count[1]) + "/" + std::to_string(count[2]);
+    }
+    return out;
+  }
+};
+
+struct BothCounts {
+  Counts all;
+  Counts alone;
+
+  void add(const Both& found) {
+    all.add(found.all);
+    alone.add(found.alone);
+  }
+};
+
+BothCounts with_fault(const Expected& fault, int seeds) {
+  BothCounts out;
+  for (int i = 0; i < seeds; ++i) {
+    for (const double size : fault.sizes) {
+      const auto seed =
+          first_fault_seed + 100 * static_cast<std::uint64_t>(fault.fault) + static_cast<std::uint64_t>(i);
+      out.add(findings(seed, {{fault.fault, in_si(fault.fault, size)}}));
+    }
+  }
+  return out;
+}
+
+BothCounts healthy(int machines) {
+  BothCounts out;
+  for (int i = 0; i < machines; ++i) out.add(findings(first_healthy_seed + static_cast<std::uint64_t>(i), {}));
+  return out;
+}
+
+struct FaultPair {
+  Fault first;
+  Fault second;
+};
+constexpr auto fault_pairs = std::to_array<FaultPair>({
+    {Fault::unbalance, Fault::parallel_misalignment},
+    {Fault::unbalance, Fault::vane_pass},
+    {Fault::unbalance, Fault::electrical},
+    {Fault::unbalance, Fault::bearing},
+    {Fault::angular_misalignment, Fault::vane_pass},
+    {Fault::parallel_misalignment, Fault::bearing},
+    {Fault::looseness, Fault::electrical},
+    {Fault::looseness, Fault::vane_pass},
+    {Fault::bent_shaft, Fault::vane_pass},
+    {Fault::bent_shaft, Fault::electrical},
+    {Fault::electrical, Fault::bearing},
+    {Fault::vane_pass, Fault::cavitation},
+    {Fault::bearing, Fault::cavitation},
+    {Fault::resonance, Fault::vane_pass},
+    {Fault::resonance, Fault::electrical},
+    {Fault::unbalance, Fault::looseness},
+});
+
+const Expected& expected(Fault fault) { return expected()[static_cast<std::size_t>(fault)]; }
+
+// Both faults of the middle size.
+BothCounts with_pair(const FaultPair& pair, int seeds) {
+  BothCounts out;
+  const auto middle = [](Fault fault) { return FaultSize{fault, in_si(fault, expected(fault).sizes[1])}; };
+  for (int i = 0; i < seeds; ++i) {
+    const auto seed =
+        first_pair_seed + 100 * static_cast<std::uint64_t>(&pair - fault_pairs.data()) + static_cast<std::uint64_t>(i);
+    out.add(findings(seed, {middle(pair.first), middle(pair.second)}));
+  }
+  return out;
+}
+
+void print(const char* name, const BothCounts& counts) {
+  std::printf("%-22s %3d\n  all measured: %s\n  spectra alone:%s\n", name, counts.all.machines,
+              counts.all.text().c_str(), counts.alone.text().c_str());
+}
+
+}  // namespace
+
+TEST_CASE("rates of every single fault and of the healthy machine, for people", "[.rates]") {
+  std::printf("found of machines: at least weak/fair/strong\n");
+  for (const Expected& fault : expected()) print(fault.name, with_fault(fault, 6));
+  for (const FaultPair& pair : fault_pairs) {
+    const std::string name = std::string(expected(pair.first).name) + " + " + expected(pair.second).name;
+    print(name.c_str(), with_pair(pair, 6));
+  }
+  print("healthy", healthy(200));
+  const auto list = findings(first_fault_seed, {{Fault::unbalance, 5e-3}}).alone;
+  for (const auto& each : list) {
+    std::printf("\n%s (%s) at %s: %s\n", std::string(base::text(each.code).name).c_str(),
+                std::string(base::name(each.strength)).c_str(), each.channel.c_str(), each.text.c_str());
+    for (const auto& line : each.evidence) std::printf("  seen: %s\n", line.c_str());
+    for (const auto& line : each.confirm) std::printf("  confirm: %s\n", line.c_str());
+    for (const auto& line : each.refute) std::printf("  refute: %s\n", line.c_str());
+  }
+}
