@@ -92,10 +92,10 @@ int run_spectrum(Session& session) {
   const auto reader = session.open(file);
   step::SpectrumRequest request = request_from(session, file);
   std::unique_ptr<recording::Reader> background;
-  if (const std::string stopped = background_file(session, file); !stopped.empty()) {
-    background = session.open(stopped);
+  if (const std::string other = background_file(session, file); !other.empty()) {
+    background = session.open(other);
     request.background = {background.get(),
-                          session.arguments().has("--background") ? step::Part{} : session.part(stopped)};
+                          session.arguments().has("--background") ? step::Part{} : session.part(other)};
   }
   const step::SpectrumResult result = step::spectrum(*reader, request, session.context());
   const report::SpectrumView view{session.arguments().has("--density"), session.arguments().has("--third-octaves")};
