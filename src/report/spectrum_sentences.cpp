@@ -141,9 +141,8 @@ std::string features_sentence(const step::ChannelSpectrum& channel) {
 
 std::string cause_text(const step::SpectralPeak& peak) {
   std::string text = peak.cause.text;
-  if (peak.background) {
-    text += fmt::format(" ({}{} % of it with the machine stopped)", peak.in_background() ? "" : "only ",
-                        rounded(peak.background->share.value * 100.0, 2));
+  if (peak.background && peak.background->is_marked) {
+    text += fmt::format(" ({} % of it with the machine stopped)", rounded(peak.background->share.value * 100.0, 2));
   }
   if (!peak.note.empty()) text += "; " + peak.note;
   return text;

@@ -14,7 +14,7 @@ using spectral::Closeness;
 using spectral::Tone;
 using spectral::ToneCluster;
 
-constexpr std::size_t most_suspects = 4;   // of a channel, the strongest
+constexpr std::size_t most_suspects = 6;   // of a channel, the strongest
 constexpr double least_prominence = 30.0;  // weaker ones are not worth a second look
 
 struct Suspect {
@@ -94,7 +94,9 @@ std::vector<std::vector<FineTone>> fine_tones(const recording::Reader& reader, r
           out[i].push_back({part_of_peak(tone, close), cluster.closeness, note_of(cluster), cluster.least_spacing_hz});
         }
       } else {
-        out[i].push_back({tone, cluster.closeness, note_of(cluster), spectra[i]->line_hz});
+        const bool wanders = cluster.closeness == Closeness::unsteady && !cluster.tones.empty();
+        out[i].push_back({wanders ? part_of_peak(tone, cluster.tones.front()) : tone, cluster.closeness,
+                          note_of(cluster), spectra[i]->line_hz});
       }
     }
     std::stable_sort(out[i].begin(), out[i].end(), [](const FineTone& a, const FineTone& b) {

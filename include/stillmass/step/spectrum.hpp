@@ -74,7 +74,8 @@ struct SpectralPeak {
   spectral::Closeness closeness = spectral::Closeness::none;  ///< what a finer look found; `none`: none was needed
   std::string note;                                           ///< of that look, in words; may be empty
 
-  bool in_background() const { return background && background->is_marked; }
+  /// The larger half of it is there with the machine stopped (common practice): the background's, not the machine's.
+  bool in_background() const { return background && background->share.value >= 0.5; }
 };
 
 /// A line of the envelope with its cause.
