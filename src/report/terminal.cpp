@@ -177,9 +177,9 @@ std::string text(const survey::SurveyResult& result) {
   }
   std::vector<base::Finding> causes;
   for (const base::Finding& each : result.findings) {
-    if (!each.evidence.empty() && causes.size() < 3) causes.push_back(each);
+    if (!each.evidence.empty() && each.strength != base::Strength::weak) causes.push_back(each);
   }
-  if (!causes.empty()) out += "\nWhat drives it:\n" + cause_lines(causes);
+  if (!causes.empty()) out += "\nWhat drives it:\n" + cause_lines(causes, false);
   std::vector<base::Finding> assumed;
   const auto pick = [&](const std::vector<base::Finding>& findings) {
     for (const base::Finding& each : findings) {

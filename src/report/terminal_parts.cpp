@@ -34,17 +34,20 @@ std::string finding_lines(const std::vector<base::Finding>& findings, bool with_
   return out;
 }
 
-std::string cause_lines(const std::vector<base::Finding>& findings) {
+std::string cause_lines(const std::vector<base::Finding>& findings, bool with_tests) {
   std::string out;
-  const auto add = [&](const char* label, const std::vector<std::string>& texts) {
-    for (const std::string& each : texts)
-      out += "      " + wrapped(base::printable(label + each), screen - 6, 8) + "\n";
-  };
   for (const base::Finding& each : findings) {
+    const auto add = [&](const char* label, const std::vector<std::string>& texts) {
+      for (const std::string& text : texts) {
+        if (text == each.text) continue;  // the finding's sentence said it
+        out += "      " + wrapped(base::printable(label + text), screen - 6, 8) + "\n";
+      }
+    };
     const std::string whose = each.channel.empty() ? "" : each.channel + ": ";
     out += bullet(base::printable(
         fmt::format("{}{} [{}, {}]", whose, each.text, base::text(each.code).name, base::name(each.strength))));
     add("seen: ", each.evidence);
+    if (!with_tests) continue;
     add("would confirm: ", each.confirm);
     add("would refute: ", each.refute);
   }

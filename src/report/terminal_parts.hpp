@@ -17,7 +17,7 @@ std::string heading(const recording::Recording& recording);
 std::string bullet(const std::string& text);
 /// One bullet a finding; an assumption has no likely cause.
 std::string finding_lines(const std::vector<base::Finding>& findings, bool with_cause = true);
-/// What drives the machine: strength, evidence, what would confirm or refute it.
-std::string cause_lines(const std::vector<base::Finding>& findings);
+/// What drives the machine: strength, evidence and, with its tests, what would confirm or refute it.
+std::string cause_lines(const std::vector<base::Finding>& findings, bool with_tests = true);
 
 }  // namespace stillmass::report

@@ -1,3 +1,5 @@
+#include <algorithm>
+
 #include <fmt/format.h>
 
 #include "stillmass/base/number.hpp"
@@ -52,6 +54,18 @@ std::string channel_text(const step::SpectrumResult& result, const step::Channel
   return out;
 }
 
+// So many columns as fit on the screen, one table below the other.
+std::string deflection_tables(const std::vector<step::OperatingDeflection>& shapes) {
+  constexpr std::size_t columns = 3;
+  std::string out;
+  for (std::size_t i = 0; i < shapes.size(); i += columns) {
+    const auto begin = shapes.begin() + static_cast<std::ptrdiff_t>(i);
+    const auto end = shapes.begin() + static_cast<std::ptrdiff_t>(std::min(i + columns, shapes.size()));
+    out += table(deflection_rows({begin, end}));
+  }
+  return out;
+}
+
 }  // namespace
 
 std::string text(const step::SpectrumResult& result, const SpectrumView& view) {
@@ -72,7 +86,7 @@ std::string text(const step::SpectrumResult& result, const SpectrumView& view) {
     for (const std::string& each : families) out += bullet(base::printable(each));
   }
   if (!result.shapes.empty()) {
-    out += "\nHow it moves (ratio to the reference, phase lead):\n" + table(deflection_rows(result.shapes));
+    out += "\nHow it moves (ratio to the reference, phase lead):\n" + deflection_tables(result.shapes);
     for (const std::string& each : deflection_notes(result.shapes)) out += bullet(base::printable(each));
   }
   if (!result.causes.empty()) out += "\nWhat drives it:\n" + cause_lines(result.causes);

@@ -37,6 +37,13 @@ std::optional<Estimate> peak_to_peak(const ChannelSpectrum& channel, const std::
   return out;
 }
 
+// A level as it is held against limits: a sensor without a calibration of its own counts as known to 2 % (common
+// practice).
+Estimate for_verdict(Estimate level, const recording::Channel& channel) {
+  level.u = std::hypot(level.u.value_or(0.0), channel.factor_u.value_or(0.02) * level.value);
+  return level;
+}
+
 // The support class of a direction: as declared, else from the lowest natural frequency measured in it.
 base::Answer<std::optional<machine::Support>> support_of(const SpectrumRequest& request, const SitePoint& point,
                                                          const std::optional<Estimate>& forcing_1x) {
@@ -78,10 +85,10 @@ base::Answer<Severity> severity_of(const ChannelSpectrum& channel, const Spectru
   const auto held_band = held(velocity, limits->band_hz);
   if (!held_band) return Refusal{"limit-unknown", "the spectrum does not reach the standard's band", "record faster"};
   levels.held_hz = *held_band;
-  levels.velocity = with_calibration(*level(velocity, limits->band_hz), channel.channel);
+  levels.velocity = for_verdict(*level(velocity, limits->band_hz), channel.channel);
   const spectral::Spectrum moved = in_quantity(channel.measured, Quantity::displacement);
   if (auto displacement = level(moved, limits->band_hz)) {
-    levels.displacement = with_calibration(*displacement, channel.channel);
+    levels.displacement = for_verdict(*displacement, channel.channel);
     levels.displacement_pp = peak_to_peak(channel, levels.displacement);
   }
   levels.unit_known = channel.channel.unit_known;
