@@ -22,6 +22,7 @@ struct MemoryChannel {
   recording::Role role = recording::Role::vibration;
   std::optional<double> stored_step{};  ///< of a recorder of so many bits; SI
   std::optional<double> full_scale{};
+  bool unit_known = true;
 };
 
 /// A recording in memory, served as a file would be: chunks never cross a segment, missing samples are held as 0 and
@@ -43,7 +44,8 @@ class MemoryReader final : public recording::Reader {
       c.name = channel.name;
       c.role = channel.role;
       c.unit = base::si_unit(channel.quantity);
-      c.unit_known = true;
+      c.point = channel.name;
+      c.unit_known = channel.unit_known;
       c.stored_step = channel.stored_step;
       c.full_scale = channel.full_scale;
       description->channels.push_back(std::move(c));
