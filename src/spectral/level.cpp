@@ -97,17 +97,14 @@ StrongLines strong_lines_in(const Spectrum& s, const base::Interval& band, std::
     const double at_tone = share_of(given, line.frequency_hz, s.line_hz) *
                            std::norm(integration_factor(s.integrations, line.frequency_hz));
     const double more = line.mean_square * (at_tone - on_lines / s.line_hz);
-    if (line.mismatch < tone_mismatch) {
-      sum.mean_square += more;
-      // What the lines hold has its own scatter; beyond that the frequency counts, and the power that is not on them.
-      const double by_frequency = -2.0 * s.integrations * line.u_hz / line.frequency_hz;
-      const double by_power = std::max(lost, 0.0) * line.relative_u;
-      const double relative =
-          by_frequency * by_frequency + by_power * by_power + 2.0 * line.correlation * by_frequency * by_power;
-      sum.variance += std::pow(line.mean_square * at_tone, 2) * relative + std::pow(line.mismatch * more, 2);
-    } else {
-      sum.variance += more * more;
-    }
+    sum.mean_square += more;
+    // What the lines hold has its own scatter; beyond that the frequency counts, the power that is not on them, and how
+    // far the lobe is that of one tone at all.
+    const double by_frequency = -2.0 * s.integrations * line.u_hz / line.frequency_hz;
+    const double by_power = std::max(lost, 0.0) * line.relative_u;
+    const double relative =
+        by_frequency * by_frequency + by_power * by_power + 2.0 * line.correlation * by_frequency * by_power;
+    sum.variance += std::pow(line.mean_square * at_tone, 2) * relative + std::pow(line.mismatch * more, 2);
   }
   return sum;
 }

@@ -235,7 +235,8 @@ std::optional<double> slope_end_hz(const Spectrum& s) {
 std::vector<Finding> spectral_findings(const Spectrum& spectrum, const recording::Channel& channel,
                                        std::optional<double> line_frequency_hz) {
   std::vector<Finding> findings;
-  const bool is_usable = spectrum.blocks > 0 && spectrum.averaging == Averaging::mean && spectrum.density.size() > 32;
+  const bool is_usable =
+      spectrum.blocks > 0 && spectrum.averaging != Averaging::peak_hold && spectrum.density.size() > 32;
   if (!is_usable || channel.role == recording::Role::tacho) return findings;
   const double all = mean_square_above_zero(spectrum);
   if (!(all > 0.0) || !std::isfinite(all)) return findings;

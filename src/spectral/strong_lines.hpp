@@ -14,9 +14,6 @@ namespace stillmass::spectral {
 /// taken off. At most 32, in order of frequency. Empty for peak hold, no blocks.
 std::vector<StrongLine> strong_lines(const Spectrum& measured);
 
-/// More power than this beside the fitted lobe, relative to it: no tone, its power is left on its lines.
-inline constexpr double tone_mismatch = 0.3;
-
 /// True for windows that end in a step: their side lobes fall by 6 dB an octave only.
 bool has_far_skirts(Window window);
 

@@ -1,4 +1,5 @@
-"""Averaged spectra, cross-spectra and coherence against SciPy on the same samples, to 1e-10 of each line's own size.
+"""Averaged spectra as density and as amplitude, cross-spectra and coherence against SciPy on the same samples, to 1e-10
+of each line's own size; peak hold and exponential averages against SciPy's spectrogram, block by block.
 
 usage: spectra.py SPECTRA_TOOL
 """
@@ -24,14 +25,20 @@ SCIPY_NAME = {
     "flat-top": "flattop",
 }
 
-CASES = [(window, 8192, 0.5) for window in SCIPY_NAME] + [
-    ("hann", 8192, 0.75),
-    ("hann", 8192, 0.0),
-    ("hann", 8191, 0.5),
-    ("flat-top", 3375, 0.8),
-    ("blackman-harris", 51200, 0.66),
-    ("hann", 7, 0.5),
-    ("hamming", 262144, 0.9),
+CASES = [
+    (window, block, overlap, "mean", 0.0)
+    for window in SCIPY_NAME
+    for block in (8192, 4095)  # an even block has a line at rate/2, an odd one has not
+    for overlap in (0.0, 0.5, 0.75)
+] + [
+    ("flat-top", 3375, 0.8, "mean", 0.0),
+    ("blackman-harris", 51200, 0.66, "mean", 0.0),
+    ("hann", 7, 0.5, "mean", 0.0),
+    ("hamming", 262144, 0.9, "mean", 0.0),
+    ("hann", 8192, 0.5, "peak-hold", 0.0),
+    ("hann", 8192, 0.5, "exponential", 16.0),
+    ("flat-top", 4095, 0.75, "exponential", 40.0),
+    ("rectangle", 8192, 0.0, "exponential", 1.0),
 ]
 
 
@@ -45,10 +52,23 @@ def samples():
     return np.stack([first, second, third])
 
 
-def expected(x, block, overlap, window):
+def blockwise(channel, averaging, averages, scaling, settings):
+    """Greatest or exponentially weighted density of the blocks: each weighs 1 - 1/n of the next."""
+    blocks = signal.spectrogram(channel, mode="psd", scaling=scaling, **settings)[2]
+    if averaging == "peak-hold":
+        return blocks.max(axis=1)
+    weights = (1.0 - 1.0 / averages) ** np.arange(blocks.shape[1] - 1, -1, -1)
+    return blocks @ (weights / weights.sum())
+
+
+def expected(x, window, block, overlap, averaging, averages):
     shared = math.floor(overlap * block + 1e-9)
     settings = dict(fs=RATE, window=SCIPY_NAME[window], nperseg=block, noverlap=shared, detrend=False)
+    if averaging != "mean":
+        parts = [blockwise(channel, averaging, averages, "density", settings) for channel in x]
+        return parts + [np.sqrt(blockwise(channel, averaging, averages, "spectrum", settings)) for channel in x]
     parts = [signal.welch(channel, scaling="density", **settings)[1] for channel in x]
+    parts += [np.sqrt(signal.welch(channel, scaling="spectrum", **settings)[1]) for channel in x]
     single = FRAMES - block < block - shared
     for channel in x[1:]:
         parts.append(signal.csd(x[0], channel, scaling="density", **settings)[1].view(float))
@@ -64,13 +84,11 @@ def worst(ours, scipy):
 
 
 def check(tool, folder, x, case):
-    window, block, overlap = case
-    subprocess.run(
-        [tool, folder / "samples", str(RATE), str(len(x)), str(block), str(overlap), window, folder / "result"],
-        check=True,
-    )
+    window, block, overlap, averaging, averages = case
+    settings = [str(RATE), str(len(x)), str(block), str(overlap), window, averaging, str(averages)]
+    subprocess.run([tool, folder / "samples", *settings, folder / "result"], check=True)
     ours = np.fromfile(folder / "result")
-    parts = expected(x, block, overlap, window)
+    parts = expected(x, *case)
     if len(ours) != sum(len(part) for part in parts):
         print(f"{case}: {len(ours)} numbers, {sum(len(part) for part in parts)} expected")
         return False
@@ -84,7 +102,7 @@ def check(tool, folder, x, case):
             differences.append(worst(mine.view(complex), part.view(complex)))
         else:
             differences.append(worst(mine, part))
-    print(f"{window:16} block {block:6} overlap {overlap:4}: worst relative difference {max(differences):.1e}")
+    print(f"{window:16} block {block:6} overlap {overlap:4} {averaging:11}: worst difference {max(differences):.1e}")
     return max(differences) < TOLERANCE  # False for NaN too
 
 

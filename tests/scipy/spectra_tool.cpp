@@ -1,7 +1,8 @@
-// spectra_tool SAMPLES RATE CHANNELS BLOCK OVERLAP WINDOW RESULT
+// spectra_tool SAMPLES RATE CHANNELS BLOCK OVERLAP WINDOW AVERAGING AVERAGES RESULT
 //
-// SAMPLES holds float64, channel after channel. RESULT gets float64: the density of each channel, then for each channel
-// but the first against the first: cross-spectrum (real and imaginary part in turn), coherence.
+// SAMPLES holds float64, channel after channel; AVERAGES is the number of exponential averaging. RESULT gets float64:
+// the density of each channel, then the r.m.s. amplitude of each, then, of the mean, for each channel but the first
+// against the first: cross-spectrum (real and imaginary part in turn), coherence.
 #include <cstdio>
 #include <cstdlib>
 #include <fstream>
@@ -39,6 +40,8 @@ void run(char** arguments) {
   options.block_frames = std::stoul(arguments[4]);
   options.overlap = std::stod(arguments[5]);
   options.window = spectral::window_named(arguments[6]).value();
+  options.averaging = spectral::averaging_named(arguments[7]).value();
+  options.exponential_averages = std::stod(arguments[8]);
 
   std::vector<tests::MemoryChannel> planar;
   const auto frames = static_cast<std::ptrdiff_t>(samples.size() / channels);
@@ -52,14 +55,21 @@ void run(char** arguments) {
   base::Context context;
   context.threads = 2;
 
-  std::ofstream out(arguments[7], std::ios::binary);
-  for (const auto& s : spectral::averaged_spectra(reader, all_frames(reader), options, context)) {
-    write_doubles(out, s.density.data(), s.density.size());
+  std::ofstream out(arguments[9], std::ios::binary);
+  const auto spectra = spectral::averaged_spectra(reader, all_frames(reader), options, context);
+  for (const auto& s : spectra) write_doubles(out, s.density.data(), s.density.size());
+  for (const auto& s : spectra) {
+    for (std::size_t k = 0; k < s.density.size(); ++k) {
+      const double amplitude = s.amplitude_rms(k);
+      write_doubles(out, &amplitude, 1);
+    }
   }
-  for (const auto& s : spectral::cross_spectra(reader, all_frames(reader), which, options, context)) {
-    write_doubles(out, reinterpret_cast<const double*>(s.cross.data()), 2 * s.cross.size());
-    const auto coherence = spectral::frequency_response(s).coherence;
-    write_doubles(out, coherence.data(), coherence.size());
+  if (options.averaging == spectral::Averaging::mean) {
+    for (const auto& s : spectral::cross_spectra(reader, all_frames(reader), which, options, context)) {
+      write_doubles(out, reinterpret_cast<const double*>(s.cross.data()), 2 * s.cross.size());
+      const auto coherence = spectral::frequency_response(s).coherence;
+      write_doubles(out, coherence.data(), coherence.size());
+    }
   }
   if (!out.flush()) throw std::runtime_error("the result cannot be written");
 }
@@ -67,7 +77,7 @@ void run(char** arguments) {
 }  // namespace
 
 int main(int count, char** arguments) try {
-  if (count != 8) throw std::runtime_error("seven arguments wanted");
+  if (count != 10) throw std::runtime_error("nine arguments wanted");
   run(arguments);
   return EXIT_SUCCESS;
 } catch (const std::exception& error) {

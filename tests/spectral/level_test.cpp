@@ -2,6 +2,8 @@
 
 #include <cmath>
 #include <numbers>
+#include <utility>
+#include <vector>
 
 #include "stillmass/base/error.hpp"
 #include "stillmass/spectral/quantity.hpp"
@@ -143,4 +145,58 @@ TEST_CASE("third-octave bands meet at their edges and add up to the band") {
   CHECK(bands.back().centre_hz == Approx(794.33).epsilon(1e-5));
   CHECK(bands.back().band_hz.lo == Approx(707.95).epsilon(1e-5));
   CHECK(bands.back().band_hz.hi == Approx(891.25).epsilon(1e-5));
+}
+
+TEST_CASE("third octaves are called by their nominal frequencies") {
+  // IEC 61260-1, from memory. k counts from 1000 Hz.
+  const std::pair<int, double> rows[] = {
+      {-30, 1.0},  {-27, 2.0},   {-26, 2.5},  {-20, 10.0}, {-19, 12.5},   {-18, 16.0}, {-15, 31.5},  {-14, 40.0},
+      {-13, 50.0}, {-10, 100.0}, {-8, 160.0}, {-5, 315.0}, {-2, 630.0},   {-1, 800.0}, {0, 1000.0},  {1, 1250.0},
+      {3, 2000.0}, {5, 3150.0},  {9, 8000.0}, {10, 1e4},   {13, 20000.0}, {-31, 0.8},  {-35, 0.315}, {-40, 0.1}};
+  for (const auto& [k, nominal] : rows) {
+    CAPTURE(k);
+    CHECK(spectral::nominal_third_octave_hz(k) == nominal);
+    // A nominal frequency lies within 1.3 % of the exact one (8/7.943 and 1.25/1.2589 are as far as any).
+    CHECK(nominal == Approx(1000.0 * std::pow(10.0, 0.1 * k)).epsilon(0.013));
+  }
+}
+
+TEST_CASE("third octaves that the lines do not resolve are counted, not given") {
+  // Lines 2 Hz apart under Hann: 3 Hz noise bandwidth, bands of at least 6 Hz, so from 31.5 Hz on (7.3 Hz wide; that of
+  // 25 Hz is 5.8 Hz). Of 4 to 900 Hz the bands 5 to 25 Hz are counted: 8.
+  const auto s = spectrum(tests::noise(40000, 43));
+  const auto all = spectral::third_octaves(s, {4.0, 900.0});
+  REQUIRE_FALSE(all.bands.empty());
+  CHECK(*all.resolved_from_hz == 31.5);
+  CHECK(all.bands.front().nominal_hz == 31.5);
+  CHECK(all.bands.back().nominal_hz == 800.0);
+  CHECK(all.unresolved == 8);
+  CHECK(all.bands.size() == 15);
+  const auto none = spectral::third_octaves(s, {4.0, 20.0});
+  CHECK(none.bands.empty());
+  CHECK_FALSE(none.resolved_from_hz);
+  CHECK(none.unresolved == 6);
+  CHECK(spectral::third_octaves(s, {0.0, 900.0}).bands.size() == 15);
+  CHECK(spectral::third_octaves(s, {500.0, 400.0}).bands.empty());
+}
+
+TEST_CASE("a tone reads as r.m.s., peak and peak-to-peak, and noise as a density that no window changes") {
+  std::vector<double> x(40000, 0.0);
+  tests::add_tone(x, rate, 100.0, 3.0 / std::numbers::sqrt2);
+  const auto s = spectrum(x);
+  CHECK(s.amplitude_rms(50) * base::from_rms(base::Detector::rms) == Approx(3.0 / std::numbers::sqrt2));
+  CHECK(s.amplitude_rms(50) * base::from_rms(base::Detector::peak) == Approx(3.0));
+  CHECK(s.amplitude_rms(50) * base::from_rms(base::Detector::peak_to_peak) == Approx(6.0));
+  // One-sided density of white noise of unit variance: 2 / rate; its mean over 400 lines is known to 0.5 %, limit four
+  // of them.
+  const auto white = tests::noise(200000, 44);
+  for (const auto window : {spectral::Window::rectangle, spectral::Window::hann, spectral::Window::hamming,
+                            spectral::Window::blackman_harris, spectral::Window::flat_top}) {
+    const auto of_noise =
+        spectral::averaged_spectrum(white, rate, Quantity::acceleration, {.window = window, .block_frames = 1000});
+    double mean = 0.0;
+    for (std::size_t k = 50; k < 450; ++k) mean += of_noise.density[k] / 400.0;
+    CAPTURE(spectral::name(window));
+    CHECK(mean * rate / 2.0 == Approx(1.0).epsilon(0.02));
+  }
 }
