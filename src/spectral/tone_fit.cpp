@@ -78,7 +78,9 @@ double covariance(const LineNoise& noise, const Line& a, const Line& b, double p
   const double level = std::sqrt(a.noise * b.noise);
   if (level == 0.0) return 0.0;
   const double middle = 0.5 * (a.offset + b.offset) - place;
-  const double amplitudes = std::max(a.amplitude, std::sqrt(a.noise)) * std::max(b.amplitude, std::sqrt(b.noise));
+  // The root of a power near 0 that is known to s scatters by about the root of s.
+  const double least = std::sqrt(level) * std::pow(noise.of_power(0), 0.25);
+  const double amplitudes = std::max(a.amplitude, least) * std::max(b.amplitude, least);
   const double in_phase = 0.5 * level * noise.beside_tone(apart, middle);
   const double of_power = 0.25 * level * level / amplitudes * noise.of_power(apart);
   return a.excess * b.excess * (in_phase + of_power);
