@@ -35,6 +35,7 @@ LineNoise::LineNoise(const Spectrum& spectrum) {
 }
 
 double LineNoise::beside_tone(std::size_t apart, double offset) const {
+  if (apart > most_apart) return 0.0;
   double sum = 0.0;
   for (const Term& term : terms_) {
     sum += term.weight * term.correlation[apart] * std::cos(2.0 * std::numbers::pi * offset * term.lag);
@@ -43,6 +44,7 @@ double LineNoise::beside_tone(std::size_t apart, double offset) const {
 }
 
 double LineNoise::of_power(std::size_t apart) const {
+  if (apart > most_apart) return 0.0;
   double sum = 0.0;
   for (const Term& term : terms_) sum += term.weight * term.correlation[apart] * term.correlation[apart];
   return sum;

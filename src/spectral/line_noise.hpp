@@ -19,13 +19,13 @@ class LineNoise {
   explicit LineNoise(const Spectrum& spectrum);
 
   /// Covariance of the averaged in-phase noise on lines k and l next to a tone, over the variance on one line of one
-  /// block. `offset`: (k + l)/2 - x in lines; `apart`: |k - l|, at most 4.
+  /// block. `offset`: (k + l)/2 - x in lines; `apart`: |k - l|; 0 beyond 10.
   double beside_tone(std::size_t apart, double offset) const;
   /// Covariance of the averaged noise power on two lines, over the variance on one line of one block.
   double of_power(std::size_t apart) const;
 
  private:
-  static constexpr std::size_t most_apart = 4;
+  static constexpr std::size_t most_apart = 10;  // the lobe of the widest window, from end to end
   struct Term {
     double lag = 0.0;
     double weight = 0.0;                             ///< share of these pairs among all

@@ -9,6 +9,7 @@
 #include "spectral/line_noise.hpp"
 #include "spectral/measured.hpp"
 #include "spectral/tone_fit.hpp"
+#include "spectral/tone_refine.hpp"
 #include "spectral/window_transform.hpp"
 
 namespace stillmass::spectral {
@@ -48,7 +49,6 @@ std::vector<std::size_t> peaks(const Spectrum& s, std::span<const double> floor,
   for (std::size_t k = std::max(s.first_line, lobe); k + 3 < s.density.size(); ++k) {
     const double here = s.density[k];
     if (!(here >= s.density[k - 1] && here > s.density[k + 1] && here > least * floor[k])) continue;
-    if (options.band_hz && !options.band_hz->contains(s.frequency(k))) continue;
     if (here > reach * saddle(s.density, k, floor_lines(s.window))) found.push_back(k);
   }
   std::stable_sort(found.begin(), found.end(), [&](auto a, auto b) { return s.density[a] > s.density[b]; });
@@ -96,6 +96,8 @@ std::size_t floor_lines(Window window) {
   return std::max<std::size_t>(24, 8 * static_cast<std::size_t>(lobe_bins(window)));
 }
 
+double median_over_mean(double averages) { return std::pow(1.0 - 1.0 / (9.0 * std::max(averages, 1.0)), 3); }
+
 Spectrum as_measured(const Spectrum& spectrum) {
   using base::Quantity;
   if (spectrum.integrations == 0) return spectrum;
@@ -113,8 +115,7 @@ std::vector<double> noise_floor(const Spectrum& spectrum) {
   const std::size_t from = std::max(measured.first_line, static_cast<std::size_t>(lobe_bins(measured.window)));
   std::vector<double> floor(lines, 0.0);
   if (from >= lines) return floor;
-  // The median of a density averaged K times over its mean: Wilson & Hilferty 1931.
-  const double skew = std::pow(1.0 - 1.0 / (9.0 * std::max(measured.effective_averages, 1.0)), 3);
+  const double skew = median_over_mean(measured.effective_averages);
   const std::size_t width = std::min(2 * floor_lines(measured.window) + 1, lines - from);
   const std::span<const double> density(measured.density);
   std::vector<double> around(density.begin() + static_cast<std::ptrdiff_t>(from),
@@ -137,7 +138,12 @@ std::vector<Tone> tones(const Spectrum& spectrum, const ToneOptions& options) {
   for (const std::size_t k : peaks(measured, floor, options)) {
     if (!is_leakage(measured, found, k)) found.push_back(fit_tone(measured, floor, noise, k));
   }
+  refine(measured, noise, found);
   for (Tone& tone : found) tone = converted(std::move(tone), spectrum);
+  if (options.band_hz) {
+    // Tones outside count while those inside are fitted: they leak in.
+    std::erase_if(found, [&](const Tone& tone) { return !options.band_hz->contains(spectrum.frequency(tone.line)); });
+  }
   std::stable_sort(found.begin(), found.end(),
                    [](const Tone& a, const Tone& b) { return a.amplitude_rms.value > b.amplitude_rms.value; });
   if (found.size() > options.strongest) found.resize(options.strongest);

@@ -78,7 +78,9 @@ double covariance(const LineNoise& noise, const Line& a, const Line& b, double p
   const double level = std::sqrt(a.noise * b.noise);
   if (level == 0.0) return 0.0;
   const double middle = 0.5 * (a.offset + b.offset) - place;
-  const double amplitudes = std::max(a.amplitude, std::sqrt(a.noise)) * std::max(b.amplitude, std::sqrt(b.noise));
+  // The root of a power near 0 that is known to s scatters by about the root of s.
+  const double least = std::sqrt(level) * std::pow(noise.of_power(0), 0.25);
+  const double amplitudes = std::max(a.amplitude, least) * std::max(b.amplitude, least);
   const double in_phase = 0.5 * level * noise.beside_tone(apart, middle);
   const double of_power = 0.25 * level * level / amplitudes * noise.of_power(apart);
   return a.excess * b.excess * (in_phase + of_power);
@@ -98,12 +100,14 @@ Tone fit_tone(const Spectrum& s, std::span<const double> floor, const LineNoise&
 
   // Place and amplitude as linear functions of the errors of the three amplitudes.
   constexpr double h = 1e-5;
-  const double ratio = ratio_at(s.window, pair, place);
-  const double ratio_slope = (ratio_at(s.window, pair, place + h) - ratio_at(s.window, pair, place - h)) / (2.0 * h);
-  const double gain_slope = (transform(s.window, place + h) - transform(s.window, place - h)) / (2.0 * h);
-  const double low_amplitude = value * transform(s.window, pair.low - place);
-  const std::array<double, 3> on_place{-ratio / (low_amplitude * ratio_slope), 1.0 / (low_amplitude * ratio_slope),
-                                       0.0};
+  const auto slope_of = [&](int offset) {
+    return (transform(s.window, offset - place - h) - transform(s.window, offset - place + h)) / (2.0 * h);
+  };
+  const double at_low = transform(s.window, pair.low - place);
+  const double at_high = transform(s.window, pair.high - place);
+  const double slope = value * (slope_of(pair.high) * at_low - at_high * slope_of(pair.low));
+  const double gain_slope = slope_of(0);
+  const std::array<double, 3> on_place{-at_high / slope, at_low / slope, 0.0};
   std::array<double, 3> on_value{0.0, 0.0, 1.0 / gain};
   for (std::size_t i = 0; i < 3; ++i) on_value[i] -= value * gain_slope / gain * on_place[i];
   const auto deviation = [&](const std::array<double, 3>& weights) {

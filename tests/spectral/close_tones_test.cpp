@@ -236,7 +236,7 @@ TEST_CASE("an amplitude that swings is unsteady") {
 TEST_CASE("strong tones beside the band leave the pair as it is") {
   auto x = pair(0.6, 0.2, 0.3, 93);
   tests::add_tone(x, rate, 50.0, 20.0, 0.7);
-  tests::add_tone(x, rate, 104.3, 5.0, 2.0);
+  tests::add_tone(x, rate, 102.8, 5.0, 2.0);  // 50 lines beside the band's end
   tests::add_tone(x, rate, 150.2, 10.0, 1.0);
   const auto c = resolved(x);
   REQUIRE(c.closeness == Closeness::resolved);
@@ -244,6 +244,7 @@ TEST_CASE("strong tones beside the band leave the pair as it is") {
   CHECK(c.tones[0].frequency.value == Approx(99.4).margin(2e-4));
   CHECK(c.tones[1].frequency.value == Approx(100.0).margin(3e-4));
   CHECK(c.tones[1].amplitude_rms.value == Approx(0.2).epsilon(0.03));
+  CHECK(c.noise_density == Approx(2.0 * 0.09 / rate).epsilon(0.25));
 }
 
 TEST_CASE("three tones are three") {
