@@ -25,6 +25,8 @@ BandFilter::BandFilter(std::size_t frames, double rate_hz, base::Interval band_h
   const double lowest = std::max(band_hz.lo - 0.5 * flank_hz, line);
   const double highest = std::min(band_hz.hi + 0.5 * flank_hz, 0.5 * rate_hz - line);
   first_ = static_cast<std::size_t>(std::ceil(lowest / line));
+  samples_ = 1;
+  if (!(highest >= lowest)) return;
   const auto last = static_cast<std::size_t>(std::floor(highest / line));
   for (std::size_t k = first_; k <= last; ++k) {
     const double f = static_cast<double>(k) * line;

@@ -18,6 +18,10 @@ namespace {
 BlockPlan plan_for(const recording::Recording& recording, recording::FrameRange range,
                    const std::vector<double>& frequencies_hz, const DeflectionOptions& options) {
   if (frequencies_hz.empty()) throw base::usage_error({}, "deflections at no frequency", "name at least one");
+  if (!(options.wander >= 0.0 && options.wander <= 0.1)) {
+    throw base::usage_error({}, fmt::format("a frequency that wanders by {} of itself", options.wander),
+                            "give a share from 0 to 0.1");
+  }
   std::size_t length = options.block_frames;
   if (length == 0) {
     length = block_length(recording, range, options.resolution_hz, options.overlap);
@@ -133,7 +137,7 @@ DeflectionConsumer::DeflectionConsumer(const recording::Recording& recording, re
   }
   const double line = recording.rate_hz / static_cast<double>(plan().length());
   for (const double f : frequencies_hz) {
-    setup->peaks.push_back(peak_lines(f, line, transform_.lines(), options.window, std::max(options.wander, 0.0)));
+    setup->peaks.push_back(peak_lines(f, line, transform_.lines(), options.window, options.wander));
   }
   setup_ = std::move(setup);
 }

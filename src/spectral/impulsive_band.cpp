@@ -10,6 +10,7 @@
 #include "stillmass/base/error.hpp"
 
 #include "spectral/band_filter.hpp"
+#include "spectral/band_search_limits.hpp"
 #include "spectral/kurtosis_limit.hpp"
 
 namespace stillmass::spectral {
@@ -19,11 +20,8 @@ namespace {
 using recording::FrameRange;
 using recording::Recording;
 
-constexpr double flank_share = 0.125;        // of the width of a band
-constexpr double usable_share = 1.0 / 2.56;  // of the rate
+constexpr double flank_share = 0.125;  // of the width of a band
 constexpr std::size_t most_stretches = 64;
-constexpr std::size_t least_stretches = 3;  // the median of fewer is no guard against one thump
-constexpr double least_stretch_s = 0.5;
 
 void check(const Recording& recording, std::span<const std::size_t> channels, const BandSearchOptions& options) {
   for (const std::size_t channel : channels) {
@@ -40,16 +38,10 @@ void check(const Recording& recording, std::span<const std::size_t> channels, co
   }
 }
 
-base::Interval range_hz(const Recording& recording, const BandSearchOptions& options) {
-  const double usable = recording.rate_hz * usable_share;
-  const double named = options.highest_hz > 0.0 ? options.highest_hz : usable;
-  return {options.lowest_hz, std::min(named, 0.49 * recording.rate_hz)};
-}
-
 /// Divisors 1, 2, 3, 4, 6, 8, 12, ... of the range while the bands are wide enough; nothing for less than an octave.
 std::vector<base::Interval> bands_of(base::Interval range, double least_width) {
   std::vector<base::Interval> bands;
-  if (range.hi < 2.0 * range.lo) return bands;
+  if (!has_room(range, least_width)) return bands;
   for (std::size_t i = 0; i < 40; ++i) {
     const double power = std::pow(2.0, static_cast<double>(i / 2));
     const double parts = i == 0 ? 1.0 : (i % 2 == 1 ? 2.0 * power : 1.5 * power);
@@ -162,7 +154,7 @@ BandSearchConsumer::BandSearchConsumer(const Recording& recording, FrameRange ra
   setup->options = options;
   setup->margin = cut_of(recording, range, options).margin;
   setup->stretches = stretches_of(recording, range, options);
-  setup->bands_hz = bands_of(range_hz(recording, options), options.least_width_hz);
+  setup->bands_hz = bands_of(search_range_hz(recording.rate_hz, options), options.least_width_hz);
   for (const base::Interval& band : setup->bands_hz) {
     setup->filters.emplace_back(plan().length(), recording.rate_hz, band, flank_share * band.width(), 0.0);
   }
@@ -298,45 +290,6 @@ std::vector<BandSearch> BandSearchConsumer::searches() const {
     all.push_back(std::move(search));
   }
   return all;
-}
-
-base::Answer<BandKurtosis> chosen_band(const BandSearch& search) {
-  if (search.chosen) return search.bands[*search.chosen];
-  const double highest =
-      std::min(search.options.highest_hz > 0.0 ? search.options.highest_hz : search.rate_hz * usable_share,
-               0.49 * search.rate_hz);
-  if (highest < 2.0 * search.options.lowest_hz) {
-    return base::Refusal{
-        "rate-too-low",
-        fmt::format("at {:.6g} samples a second the recording is good to {:.0f} Hz: that leaves no band "
-                    "above {:.0f} Hz in which blows of a bearing could ring",
-                    search.rate_hz, highest, search.options.lowest_hz),
-        fmt::format("record with at least {:.0f} samples a second, 25600 if the recorder can, or name a "
-                    "band yourself",
-                    std::ceil(2.0 * search.options.lowest_hz / usable_share))};
-  }
-  if (search.stretches < least_stretches || search.stretch_s < least_stretch_s) {
-    return base::Refusal{"recording-too-short",
-                         fmt::format("the recording gives {} stretches of {:.2g} s; a single thump cannot be told from "
-                                     "blows that repeat",
-                                     search.stretches, search.stretch_s),
-                         "record at least 10 s without a gap"};
-  }
-  const auto by = [](auto member) {
-    return [member](const BandKurtosis& a, const BandKurtosis& b) { return a.*member < b.*member; };
-  };
-  const auto best = *std::max_element(search.bands.begin(), search.bands.end(), by(&BandKurtosis::kurtosis));
-  const auto thump = *std::max_element(search.bands.begin(), search.bands.end(), by(&BandKurtosis::strongest));
-  std::string seen = fmt::format(
-      "no band from {:.0f} to {:.0f} Hz is impulsive: the greatest kurtosis is {:.2g}, and noise "
-      "reaches {:.2g} there",
-      search.options.lowest_hz, highest, best.kurtosis, best.limit);
-  if (thump.strongest > 10.0 * thump.limit && thump.strongest > 1.0) {
-    seen += fmt::format("; the stretch about {:.1f} s alone has {:.2g}, a single thump", thump.strongest_at_s,
-                        thump.strongest);
-  }
-  return base::Refusal{"no-impulsive-band", std::move(seen),
-                       "name a band if you expect a modulation there, or measure closer to the bearing"};
 }
 
 }  // namespace stillmass::spectral

@@ -388,4 +388,5 @@ TEST_CASE("a faulty request for deflections is refused before any sample is read
   CHECK_THROWS_AS(with({24.63}, {.reference = 2}, reader), base::Error);
   CHECK_THROWS_AS(with({24.63}, {.reference = 3}, reader), base::Error);
   CHECK_THROWS_AS(with({24.63}, {}, alone), base::Error);
+  CHECK_THROWS_AS(with({24.63}, {.wander = std::numeric_limits<double>::quiet_NaN()}, reader), base::Error);
 }

@@ -265,4 +265,8 @@ TEST_CASE("a faulty band or averaging is refused before any sample is read") {
   CHECK_THROWS_AS(with(std::numeric_limits<double>::quiet_NaN(), 3000.0), base::Error);
   CHECK_THROWS_AS(with(2000.0, 3000.0, {.averaging = spectral::Averaging::peak_hold}), base::Error);
   CHECK_THROWS_AS(spectral::EnvelopeConsumer(r, {0, 30000}, {{1, {2000.0, 3000.0}}}), base::Error);
+  for (const double highest : {0.0, std::numeric_limits<double>::quiet_NaN()}) {
+    CHECK_THROWS_AS(spectral::EnvelopeConsumer(r, {0, 30000}, {{0, {2000.0, 3000.0}}}, {.highest_hz = highest}),
+                    base::Error);
+  }
 }

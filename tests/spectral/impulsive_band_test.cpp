@@ -160,6 +160,19 @@ TEST_CASE("a rate that leaves less than an octave above 1 kHz is refused, one th
   CHECK(chosen_band(at_5k).refusal().code == "no-impulsive-band");
 }
 
+TEST_CASE("a range narrower than the least width holds no band") {
+  const auto s = search(tests::noise(60000, 8), 6000.0, {.least_width_hz = 2000.0});
+  CHECK(s.bands.empty());
+  CHECK(chosen_band(s).refusal().code == "rate-too-low");
+}
+
+TEST_CASE("a recording of a few samples is refused and nothing worse") {
+  for (const std::size_t frames : {1, 2, 7, 30, 1000}) {
+    const auto s = search(tests::noise(frames, 8), rate);
+    CHECK(chosen_band(s).refusal().code == "recording-too-short");
+  }
+}
+
 TEST_CASE("a recording of less than three stretches is refused") {
   auto x = machine_noise(1.2, 5);
   tests::add_blows(x, rate, {.peak = 10.0}, 9);

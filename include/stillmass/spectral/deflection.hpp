@@ -69,8 +69,8 @@ struct DeflectionOptions {
 /// frequency), not on lines or length. Channels of motion take part; forces, tachos and unknown units are left out.
 class DeflectionConsumer final : public BlockConsumer {
  public:
-  /// Throws `Error` (usage): no frequency, one outside what lines and rate allow, a reference that is no motion, fewer
-  /// than two channels of motion, a resolution that the range cannot give.
+  /// Throws `Error` (usage): no frequency, one outside what lines and rate allow, a wander outside 0 to 0.1, a
+  /// reference that is no motion, fewer than two channels of motion, a resolution that the range cannot give.
   DeflectionConsumer(const recording::Recording& recording, recording::FrameRange range,
                      std::vector<double> frequencies_hz, const DeflectionOptions& options = {});
   ~DeflectionConsumer() override;

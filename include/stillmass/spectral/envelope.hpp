@@ -50,14 +50,14 @@ struct EnvelopeBand {
   base::Interval band_hz;
 };
 
-/// Envelope spectra as a consumer. Each block is transformed, the lines of the band alone are transformed back at the
-/// rate that the band needs (at least four times its width): the complex envelope. The filter is flat in the band but
-/// for the raised-cosine flanks about its edges. The edges of a block, where the circular filter mixes its end with its
-/// start, are taken out by the window; a rectangle keeps them.
+/// Envelope spectra as a consumer. Each block is transformed and the lines of the band alone are transformed back, at
+/// twice the rate that holds the square of the envelope: the complex envelope. The filter is flat in the band with
+/// raised-cosine flanks about its edges, an eighth of its width each. The ends of a block, where the circular filter
+/// mixes one with the other, are taken out by the window; a rectangle keeps them.
 class EnvelopeConsumer final : public BlockConsumer {
  public:
-  /// Throws `Error` (usage): a band that does not lie within 0 to rate/2 or is narrower than eight lines, peak hold, a
-  /// channel that is not there, a resolution that the range cannot give.
+  /// Throws `Error` (usage): a highest frequency that is not positive, a band that does not lie within 0 to rate/2 or
+  /// is narrower than eight lines, peak hold, a channel that is not there, a resolution that the range cannot give.
   EnvelopeConsumer(const recording::Recording& recording, recording::FrameRange range, std::vector<EnvelopeBand> bands,
                    const EnvelopeOptions& options = {});
   ~EnvelopeConsumer() override;

@@ -51,7 +51,8 @@ struct BandSearch {
   std::optional<std::size_t> chosen;  ///< greatest kurtosis among those above their limit
 };
 
-/// The band chosen. Refused: `rate-too-low` (less than an octave between lowest and highest), `recording-too-short`
+/// The band chosen. Refused: `rate-too-low` (less than an octave between lowest and highest, or less than
+/// the least width), `recording-too-short`
 /// (fewer than three stretches of half a second), `no-impulsive-band` (says where a single thump was, if one stretch
 /// alone stands out).
 base::Answer<BandKurtosis> chosen_band(const BandSearch& search);
