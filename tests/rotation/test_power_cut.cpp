@@ -9,6 +9,7 @@
 #include "stillmass/rotation/power_cut.hpp"
 #include "stillmass/rotation/runup.hpp"
 
+#include "rotation/base_band.hpp"
 #include "rotation/signals.hpp"
 #include "rotation/stream_windows.hpp"
 #include "support/catch.hpp"
@@ -187,6 +188,22 @@ TEST_CASE("the verdict holds over many noises, and near the noise it is not give
   }
   CHECK(wrong == 0);
   CHECK(right >= 30);
+}
+
+TEST_CASE("a steady line is found beside the middle of the window, its true height and place") {
+  const double off = GENERATE(0.0, 2.3, 5.0, -7.9);  // 5 Hz: one line of a window of 0.2 s
+  const auto samples = sampled(2000.0, 8.0, [&](double t) { return std::cos(2.0 * pi * (100.0 + off) * t + 0.4); });
+  const MemoryReader reader(2000.0, {{"a", samples}});
+  const rotation::HannWindow window(400, 2000.0);
+  std::vector<rotation::Reading> readings;
+  rotation::stream_windows(reader, 0, all_frames(reader), 400, 100, {}, [&](std::int64_t first, auto x) {
+    const double start = static_cast<double>(first) / 2000.0;
+    readings.push_back({start + 0.1, window.at(x, 100.0, start), 0.0});
+    return true;
+  });
+  const auto line = rotation::strongest(readings, {-8.0, 8.0}, window.lobe_hz(), [](double) { return false; });
+  CHECK(line.off_hz == Approx(off).margin(0.02));
+  CHECK(line.rms == Approx(std::numbers::sqrt2 / 2.0).epsilon(0.01));
 }
 
 TEST_CASE("no window sees a missing sample, and none is left out that does not") {
