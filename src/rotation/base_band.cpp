@@ -21,7 +21,7 @@ double long_rms(std::span<const Reading> readings, double off_hz, double lobe_hz
   }
   // What the short window lets through so far from its middle: sinc(x) / (1 - x^2), x in lines of the window.
   const double x = 2.0 * std::abs(off_hz) / lobe_hz;
-  const double passes = x < 1e-9 ? 1.0 : std::sin(pi * x) / (pi * x * (1.0 - x * x));
+  const double passes = x < 1e-6 ? 1.0 : std::abs(x - 1.0) < 1e-6 ? 0.5 : std::sin(pi * x) / (pi * x * (1.0 - x * x));
   return std::abs(sum) / weights / passes;
 }
 

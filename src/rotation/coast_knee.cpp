@@ -48,7 +48,7 @@ std::optional<Knee> knee_of(const SpeedCurve& curve, Interval time_s) {
   const auto second = last_above(knee_to);
   if (!first || !second) return {};
   const double back = (1.0 - knee_from) / (knee_from - knee_to);
-  return Knee{*first - back * (*second - *first), before};
+  return Knee{*first - back * (*second - *first), before, *first};
 }
 
 }  // namespace stillmass::rotation

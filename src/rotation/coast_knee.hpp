@@ -11,6 +11,7 @@ namespace stillmass::rotation {
 struct Knee {
   double time_s = 0.0;
   double speed_hz = 0.0;
+  double fallen_s = 0.0;  ///< when the speed had fallen by 1 %: seen, not extrapolated
 };
 
 /// Where the speed leaves its level for good: a straight line through 99 and 97 % of it, back to the level. Absent

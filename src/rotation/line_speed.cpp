@@ -15,13 +15,17 @@ using Complex = std::complex<double>;
 using std::numbers::pi;
 
 constexpr double drowned = 3.0;    // times what stands beside the line (common practice)
+constexpr double fastest = 1.03;   // times the speed said: beyond, something else is followed
 constexpr std::size_t least = 10;  // turns
 
 // Follows one line from window to window.
 class LineFollower {
  public:
   LineFollower(double frequency_hz, double rate_hz, std::size_t length, std::size_t hop)
-      : rate_hz_(rate_hz), hop_s_(static_cast<double>(hop) / rate_hz), frequency_hz_(frequency_hz) {
+      : rate_hz_(rate_hz),
+        hop_s_(static_cast<double>(hop) / rate_hz),
+        said_hz_(frequency_hz),
+        frequency_hz_(frequency_hz) {
     for (std::size_t i = 0; i < length; ++i) {
       hann_.push_back(0.5 - 0.5 * std::cos(2.0 * pi * static_cast<double>(i) / static_cast<double>(length)));
     }
@@ -40,7 +44,7 @@ class LineFollower {
     const Complex late = half_at(samples, half, half);
     const double off = std::arg(late * std::conj(early)) / (2.0 * pi * static_cast<double>(half) / rate_hz_);
     const double found = frequency_hz_ + off;
-    if (!(found > 0.0)) return false;
+    if (!(found > 0.0) || found > fastest * said_hz_) return false;
     if (times_.empty()) {
       turns_.push_back(0.0);
     } else {
@@ -94,6 +98,7 @@ class LineFollower {
 
   double rate_hz_;
   double hop_s_;
+  double said_hz_;
   double frequency_hz_;
   double last_hz_ = 0.0;
   double rate_ = 0.0;

@@ -23,14 +23,17 @@ using recording::FrameRange;
 using recording::Recording;
 using std::numbers::pi;
 
-constexpr double search = 0.003;    // of the electrical frequency, either way: a public grid stays well inside
-constexpr double stands_out = 4.0;  // times the noise beside it (common practice)
-constexpr double vanished = 0.25;   // of before
-constexpr double went_on = 0.5;     // of before
+constexpr double search = 0.003;           // of the electrical frequency, either way: a public grid stays well inside
+constexpr double stands_out = 4.0;         // times the noise beside it (common practice)
+constexpr double vanished = 0.25;          // of before
+constexpr double went_on = 0.5;            // of before
+constexpr double swelled = 2.0;            // times before: another order sweeps across, or a resonance is passed
+constexpr double came_down = 0.9;          // of the speed: so far a line without a tacho must be followed
+constexpr std::size_t last_readings = 12;  // before the cut: three windows
 constexpr double before_most_s = 10.0;
 constexpr double after_most_s = 5.0;
-constexpr double aside_lobes = 1.5;    // where the noise is read: so many widths of the lobe away
-constexpr double step_search_s = 1.0;  // around that
+constexpr double aside_lobes = 1.5;  // where the noise is read: so many widths of the lobe away
+constexpr double step_search = 1.5;  // windows around where the speed begins to fall
 
 base::Estimate estimate(double value, std::optional<double> u, base::Quantity quantity) {
   base::Estimate out;
@@ -122,6 +125,9 @@ class Test {
     std::vector<double> beside;
     for (const Reading& each : before) beside.push_back(each.beside);
     noise_before_ = middle_of(std::move(beside));
+    std::vector<double> last;
+    for (const Reading& each : before.last(std::min(before.size(), last_readings))) last.push_back(std::abs(each.at));
+    last_rms_ = middle_of(std::move(last));
     locate();
     read_order();
     describe();
@@ -175,16 +181,24 @@ class Test {
     return {nearest, out.rms, out.resolution_hz};
   }
 
+  // The best step from more than half of the line's height to less, near where the speed begins to fall; without one
+  // (another order may sweep across) where the speed begins to fall.
   void locate() {
+    const double reach = step_search * options_.block_s;
     std::vector<double> near;
     std::size_t first = readings_.size();
     for (std::size_t i = 0; i < readings_.size(); ++i) {
-      if (std::abs(readings_[i].time_s - knee_.time_s) > step_search_s) continue;
+      if (readings_[i].time_s < knee_.time_s - reach || readings_[i].time_s > knee_.fallen_s + reach) continue;
       first = std::min(first, i);
       near.push_back(std::abs(readings_[i].at));
     }
-    const std::size_t step = first + step_in(near);
-    fell_s_ = 0.5 * (readings_[step - 1].time_s + readings_[step].time_s);
+    fell_s_ = knee_.time_s;
+    if (near.size() < 4) return;
+    const std::size_t step = step_in(near);
+    const auto middle = near.begin() + static_cast<std::ptrdiff_t>(step);
+    clean_step_ = middle_of({near.begin(), middle}) > went_on * line_.rms &&
+                  middle_of({middle, near.end()}) < went_on * line_.rms;
+    if (clean_step_) fell_s_ = 0.5 * (readings_[first + step - 1].time_s + readings_[first + step].time_s);
   }
 
   void read_order() {
@@ -212,27 +226,35 @@ class Test {
     return turn_speed(curve_, curve_.turn_at(std::clamp(time_s, curve_.time_s().lo, curve_.time_s().hi)));
   }
 
-  // From 90 % to 10 % of the fall between two levels, by straight lines.
-  double fall_time(double high, double low) const {
-    const auto crossing = [&](double share, bool last) {
+  // From 90 % to 10 % of the fall between two levels, by straight lines, about a clean step; otherwise from where the
+  // speed begins to fall to the first reading that is low, which the fall did not take longer than.
+  base::Estimate fall_time(double high, double low) const {
+    const auto crossing = [&](double share) -> std::optional<double> {
       const double level = low + share * (high - low);
       std::optional<double> found;
       for (std::size_t i = 1; i < readings_.size(); ++i) {
-        if (std::abs(readings_[i].time_s - fell_s_) > step_search_s) continue;
-        const double a = std::abs(readings_[i - 1].at);
-        const double b = std::abs(readings_[i].at);
+        const Reading& from = readings_[i - 1];
+        const Reading& to = readings_[i];
+        if (std::abs(to.time_s - fell_s_) > 2.0 * step_search * options_.block_s) continue;
+        const double a = std::abs(from.at);
+        const double b = std::abs(to.at);
         if (!(a > level && b <= level)) continue;
-        const double time =
-            readings_[i - 1].time_s + (a - level) / (a - b) * (readings_[i].time_s - readings_[i - 1].time_s);
-        if (last && time > fell_s_ && found) continue;  // the first one after the step
-        found = time;
-        if (!last && time > fell_s_) break;
+        const double time = from.time_s + (a - level) / (a - b) * (to.time_s - from.time_s);
+        if (!found || std::abs(time - fell_s_) < std::abs(*found - fell_s_)) found = time;
       }
       return found;
     };
-    const auto begin = crossing(0.9, true);
-    const auto end = crossing(0.1, true);
-    return begin && end && *end > *begin ? *end - *begin : options_.block_s;
+    const auto begin = crossing(0.9);
+    const auto end = crossing(0.1);
+    if (clean_step_ && begin && end && *end > *begin) {
+      return estimate(*end - *begin, 0.25 * options_.block_s / std::numbers::sqrt3, base::Quantity::time);
+    }
+    for (const Reading& each : readings_) {
+      if (each.time_s > fell_s_ && std::abs(each.at) < std::max(vanished * high, 2.0 * out_.noise_rms)) {
+        return estimate(each.time_s - fell_s_, {}, base::Quantity::time);
+      }
+    }
+    return estimate(readings_.back().time_s - fell_s_, {}, base::Quantity::time);
   }
 
   void describe() {
@@ -246,9 +268,10 @@ class Test {
       beside.push_back(each.beside);
     }
     std::vector<double> followed;
+    const double ended = std::max(fell_s_ + 0.75 * options_.block_s, knee_.fallen_s + 0.5 * options_.block_s);
     for (std::size_t i = 0; i < out_.track.time_s.size(); ++i) {
-      const double late = out_.track.time_s[i] - fell_s_;
-      if (late >= 0.5 * options_.block_s && late <= options_.block_s + hop_s) {
+      const double late = out_.track.time_s[i] - ended;
+      if (late >= 0.0 && late <= 0.75 * options_.block_s) {
         followed.push_back(out_.track.at_order[i]);
         followed_speed_hz_ = out_.track.speed_hz[i];
       }
@@ -262,10 +285,9 @@ class Test {
     out_.after_rms = estimate(middle_of(level), noise_u, quantity_);
     out_.followed_rms = estimate(middle_of(followed), noise_u, quantity_);
     out_.cut_s = estimate(fell_s_, hop_s / std::numbers::sqrt3, base::Quantity::time);
-    const double fall = fall_time(line_.rms, std::min(out_.after_rms.value, 0.8 * line_.rms));
-    out_.fall_s = estimate(fall, hop_s / std::numbers::sqrt3, base::Quantity::time);
+    out_.fall_s = fall_time(line_.rms, std::min(out_.after_rms.value, 0.8 * line_.rms));
     out_.speed_before_hz = knee_.speed_hz;
-    out_.speed_after_fall_hz = speed_at(fell_s_ + 0.5 * fall);
+    out_.speed_after_fall_hz = speed_at(fell_s_ + (clean_step_ ? 0.5 : 1.0) * out_.fall_s.value);
   }
 
   void decide() {
@@ -275,17 +297,23 @@ class Test {
     const std::string line = fmt::format("the line at {:.2f} Hz", line_.frequency_hz);
     if (before < stands_out * noise_before_) {
       cannot_tell(fmt::format("no line stands out at {:.2f} Hz before the power was cut", options_.electrical_hz));
+    } else if (last_rms_ < went_on * before) {
+      cannot_tell(line + " had gone before the speed began to fall: the two do not belong together");
     } else if (neighbour_.rms > went_on * before) {
       cannot_tell(fmt::format("{:.0f}x of the speed ({:.2f} Hz) stands beside {} and is {:.2g} times as strong",
                               std::round(order_), neighbour_.frequency_hz, line, neighbour_.rms / before));
     } else if (!has_followed_) {
       cannot_tell("the speed is not known after the power was cut");
-    } else if (followed < std::max(vanished * before, 2.0 * out_.noise_rms) && followed < went_on * before) {
+    } else if (followed < std::max(vanished * before, 2.0 * out_.noise_rms) && followed < went_on * before &&
+               out_.after_rms.value < went_on * before) {
       out_.verdict = PowerCutVerdict::electrical;
       out_.reason = fmt::format(
           "{} fell to {:.0f} % within {:.2f} s, while the speed fell by {:.1f} %; at its order {:.0f} % went on", line,
           100.0 * out_.after_rms.value / before, out_.fall_s.value,
           100.0 * (1.0 - out_.speed_after_fall_hz / knee_.speed_hz), 100.0 * followed / before);
+    } else if (followed > swelled * before) {
+      cannot_tell(fmt::format("{:.1f} times {} stands at its order after the cut: something else sweeps across",
+                              followed / before, line));
     } else if (followed * slower * slower > went_on * before && followed > stands_out * out_.noise_rms) {
       out_.verdict = PowerCutVerdict::mechanical;
       out_.reason =
@@ -318,9 +346,11 @@ class Test {
   Steady neighbour_;
   double order_ = 0.0;
   double noise_before_ = 0.0;
+  double last_rms_ = 0.0;
   double fell_s_ = 0.0;
   double followed_speed_hz_ = 0.0;
   bool has_followed_ = false;
+  bool clean_step_ = false;
   PowerCut out_;
 };
 
@@ -351,6 +381,16 @@ base::Answer<PowerCut> power_cut(const recording::Reader& reader, const PowerCut
   const auto pulses = pulses_of_line(reader, options.channel, range, *options.speed_hz, options.block_s, context);
   if (!pulses) return pulses.refusal();
   const SpeedCurve followed(*pulses);
+  // A structure that rings on near 1x looks like a rotor that keeps its speed: only a line seen to come down counts.
+  const double last = turn_speed(followed, followed.turns().hi);
+  if (last > came_down * *options.speed_hz && last > 0.0) {
+    const bool to_the_end = followed.time_s().hi > recording.time_s(range.end - 1) - 2.0 * options.block_s - 4.0 / last;
+    if (to_the_end) return no_cut("the speed does not fall in this part of the recording");
+    return base::Refusal{"no-tacho",
+                         fmt::format("the line at {:.2f} Hz is lost at {:.2f} Hz, {:.2f} s", *options.speed_hz, last,
+                                     followed.time_s().hi),
+                         "record a tacho"};
+  }
   return Test(reader, options, followed, range, context).answer();
 }
 

@@ -50,7 +50,8 @@ struct PowerCut {
   base::Estimate after_rms;     ///< at the same frequency, from one window after the cut on
   base::Estimate followed_rms;  ///< after the cut at the order the line had: what is mechanical goes on here
   double noise_rms = 0.0;       ///< beside the line, after the cut, in the same window
-  base::Estimate fall_s;        ///< from 90 % to 10 % of the fall; no shorter than the window shows
+  base::Estimate
+      fall_s;  ///< from 90 % to 10 % of the fall; no shorter than half the window. Without u: no longer than that
   double speed_before_hz = 0.0;
   double speed_after_fall_hz = 0.0;  ///< when the line had fallen
   PowerCutTrack track;
@@ -60,18 +61,20 @@ struct PowerCut {
 /// fixed frequency, and at the order that this frequency had before the cut (along the speed curve, or the 1x line
 /// followed by its own phase where there is none). Before the cut up to 10 s of windows are joined to one long one, so
 /// that orders beside the line are told from it. The cut: where the speed curve leaves its level (a straight line back
-/// through 99 and 97 % of it), and within 1 s of that the best step of the line's amplitude. Streams; holds 15 s of
-/// readings.
+/// through 99 and 97 % of it), and about there the best step of the line's amplitude, if that halves it. Streams; holds
+/// 15 s of readings.
 ///
 /// Electrical: before the cut at least 4 times the noise beside it, and of that less than a quarter (or twice the
-/// noise) goes on at its order in the first window after the cut. Mechanical: more than half goes on, the square of the
-/// slowing allowed for (unbalance). Between: cannot tell. Nor where a whole order of the speed stands apart from the
-/// line inside the window's lobe, half as strong or more (2x of a two-pole motor): after the cut it cannot be told from
-/// the line. A whole order on the line itself is no hindrance: what is mechanical of it goes on. Limits: common
+/// noise) goes on at its order from three quarters of a window after the cut on, once the speed has fallen by 1 %.
+/// Mechanical: more than half goes on, the square of the slowing allowed for (unbalance). Between: cannot tell. Nor
+/// where a whole order of the speed stands apart from the line inside the window's lobe, half as strong or more (2x of
+/// a two-pole motor): after the cut it cannot be told from the line. A whole order on the line itself is no hindrance:
+/// what is mechanical of it goes on. Nor where the line is gone before the speed begins to fall. Limits: common
 /// practice, held against simulated coast-downs both ways.
 ///
 /// Refused: `no-power-cut` (the speed does not fall by 3 % in this part, or less than two windows before or four after
-/// the cut), `no-tacho` (neither a curve nor a speed, or the 1x line cannot be followed). Throws `Error` (usage) for a
+/// the cut), `no-tacho` (neither a curve nor a speed, or the 1x line cannot be followed down
+/// to 90 % of the speed: a structure that rings near 1x hides it). Throws `Error` (usage) for a
 /// channel that is not there and a frequency above 0.4 of the rate.
 base::Answer<PowerCut> power_cut(const recording::Reader& reader, const PowerCutOptions& options,
                                  const SpeedCurve* curve, const base::Context& context);
