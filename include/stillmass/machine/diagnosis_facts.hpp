@@ -55,7 +55,7 @@ struct ChannelFacts {
                           ///< channel stands alone. `placed` reads it from the name of a point
   std::string rotor;      ///< machine part with a shaft of its own ("motor", "pump"); empty: not known
   std::string direction;  ///< "horizontal", "vertical", "axial", or a signed axis ("+x", "-z")
-  bool on_bearing_housing = false;
+  bool on_bearing_housing = false;    ///< a channel that is not there, and names no bearing, tells nothing of bearings
   std::vector<std::string> bearings;  ///< names of the machine's bearings it stands at; empty: any of them
 
   std::optional<base::Estimate> velocity;    ///< broad-band level as severity is judged, m/s r.m.s.
