@@ -77,7 +77,8 @@ struct ChannelFacts {
                                                   ///< while the speed had hardly changed; refuted: it stayed
 };
 
-/// How one channel moves against another, or against the tacho, at one order.
+/// How one channel moves against another, or against the tacho, at one order. The best reference is the channel that
+/// moves most at that order: against one that hardly moves the coherence is too low to count.
 struct PhaseFact {
   std::string channel;
   std::string reference;            ///< name of the other channel; empty: the tacho
