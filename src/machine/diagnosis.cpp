@@ -132,6 +132,7 @@ std::vector<Claim> claims(const Rule& rule, const Facts& facts, const DiagnosisR
       case Focus::bearing:
         for (const Bearing& bearing : facts.machine.bearings) {
           const auto& near = channel.bearings;
+          if (near.empty() && !channel.on_bearing_housing) continue;
           if (!near.empty() && std::find(near.begin(), near.end(), bearing.name) == near.end()) continue;
           question.bearing = &bearing;
           ask(question, bearing.name);

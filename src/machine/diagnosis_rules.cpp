@@ -156,11 +156,10 @@ Rule rule(const Table& row) {
 DiagnosisRules diagnosis_rules(std::string_view table, const std::string& name) {
   DiagnosisRules out;
   const base::Settings settings = base::Settings::parse(table, name, keys);
-  const std::array<std::pair<std::string_view, double*>, 4> limits = {{
+  const std::array<std::pair<std::string_view, double*>, 3> limits = {{
       {"smooth-mm-s", &out.smooth},
       {"least-coherence", &out.least_coherence},
       {"harmonic-share", &out.harmonic_share},
-      {"mode-amplification", &out.mode_amplification},
   }};
   for (const Table& row : settings.root().tables("limit")) {
     const auto at =

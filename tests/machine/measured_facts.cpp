@@ -63,42 +63,53 @@ std::vector<machine::EnvelopeTone> envelope(const std::vector<double>& accelerat
   return out;
 }
 
-// Complex amplitudes of an order in blocks of one second.
+// Complex amplitudes of an order in blocks of one second, Hann window.
 std::vector<Complex> order_blocks(const std::vector<double>& samples, double rate_hz, double frequency) {
   const auto length = static_cast<std::size_t>(rate_hz);
+  std::vector<double> window(length);
+  for (std::size_t i = 0; i < length; ++i) {
+    window[i] = 1.0 - std::cos(2.0 * std::numbers::pi * static_cast<double>(i) / static_cast<double>(length));
+  }
   std::vector<Complex> out;
   const Complex step = std::polar(1.0, -2.0 * std::numbers::pi * frequency / rate_hz);
   Complex turn = 1.0;
   for (std::size_t from = 0; from + length <= samples.size(); from += length) {
     Complex sum = 0.0;
     for (std::size_t i = 0; i < length; ++i) {
-      const double window =
-          1.0 - std::cos(2.0 * std::numbers::pi * static_cast<double>(i) / static_cast<double>(length));
-      sum += window * samples[from + i] * turn;
+      sum += window[i] * samples[from + i] * turn;
       turn *= step;
     }
-    out.push_back(sum / static_cast<double>(length));
+    out.push_back(sum);
   }
   return out;
 }
 
+double power(const std::vector<Complex>& blocks) {
+  double sum = 0.0;
+  for (const Complex& each : blocks) sum += std::norm(each);
+  return sum;
+}
+
+// Against the channel that moves most at this order.
 void add_phases(machine::Facts& facts, const SimulatedMachine& from, double order) {
-  const double frequency = order * from.speed_hz;
-  const std::size_t reference = 6;  // pump-de-h
-  const auto against = order_blocks(from.channels[reference].acceleration, from.rate_hz, frequency);
-  for (std::size_t c = 0; c < from.channels.size(); ++c) {
+  std::vector<std::vector<Complex>> blocks;
+  for (const SimulatedChannel& channel : from.channels) {
+    blocks.push_back(order_blocks(channel.acceleration, from.rate_hz, order * from.speed_hz));
+  }
+  const auto reference = static_cast<std::size_t>(
+      std::max_element(blocks.begin(), blocks.end(), [](const auto& a, const auto& b) { return power(a) < power(b); }) -
+      blocks.begin());
+  for (std::size_t c = 0; c < blocks.size(); ++c) {
     if (c == reference) continue;
-    const auto blocks = order_blocks(from.channels[c].acceleration, from.rate_hz, frequency);
     Complex xy = 0.0;
-    double xx = 0.0;
-    double yy = 0.0;
-    for (std::size_t b = 0; b < blocks.size(); ++b) {
-      xy += blocks[b] * std::conj(against[b]);
-      xx += std::norm(against[b]);
-      yy += std::norm(blocks[b]);
-    }
-    facts.phases.push_back(
-        {from.channels[c].point, from.channels[reference].point, order, xy / xx, {}, std::norm(xy) / (xx * yy)});
+    for (std::size_t b = 0; b < blocks[c].size(); ++b) xy += blocks[c][b] * std::conj(blocks[reference][b]);
+    const double xx = power(blocks[reference]);
+    facts.phases.push_back({from.channels[c].point,
+                            from.channels[reference].point,
+                            order,
+                            xy / xx,
+                            {},
+                            std::norm(xy) / (xx * power(blocks[c]))});
   }
 }
 

@@ -126,7 +126,7 @@ class Generator {
   // A force that turns with the shaft: vertical 90 degrees from horizontal.
   void turning(std::size_t place, double k, double velocity, double phase, double spread_deg) {
     order(place, horizontal, k, velocity, phase);
-    order(place, vertical, k, draw_.between(0.6, 1.0) * velocity, phase + turn_ * degrees(90.0, spread_deg));
+    order(place, vertical, k, draw_.between(0.4, 1.0) * velocity, phase + turn_ * degrees(90.0, spread_deg));
   }
 
   // Small lines of every kind: what no machine is without.

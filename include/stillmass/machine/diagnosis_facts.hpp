@@ -55,7 +55,7 @@ struct ChannelFacts {
                           ///< channel stands alone. `placed` reads it from the name of a point
   std::string rotor;      ///< machine part with a shaft of its own ("motor", "pump"); empty: not known
   std::string direction;  ///< "horizontal", "vertical", "axial", or a signed axis ("+x", "-z")
-  bool on_bearing_housing = false;
+  bool on_bearing_housing = false;    ///< a channel that is not there, and names no bearing, tells nothing of bearings
   std::vector<std::string> bearings;  ///< names of the machine's bearings it stands at; empty: any of them
 
   std::optional<base::Estimate> velocity;    ///< broad-band level as severity is judged, m/s r.m.s.
@@ -77,7 +77,8 @@ struct ChannelFacts {
                                                   ///< while the speed had hardly changed; refuted: it stayed
 };
 
-/// How one channel moves against another, or against the tacho, at one order.
+/// How one channel moves against another, or against the tacho, at one order. The best reference is the channel that
+/// moves most at that order: against one that hardly moves the coherence is too low to count.
 struct PhaseFact {
   std::string channel;
   std::string reference;            ///< name of the other channel; empty: the tacho

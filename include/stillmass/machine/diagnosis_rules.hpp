@@ -61,10 +61,9 @@ struct Rule {
 /// The rules and the limits that they share, from data/tables/diagnosis.toml.
 struct DiagnosisRules {
   std::vector<Rule> rules;
-  double smooth = 0.0;            ///< m/s r.m.s.: below it a channel without a limit of its own runs smoothly
-  double least_coherence = 0.0;   ///< of a phase that counts
-  double harmonic_share = 0.0;    ///< of the level, from which a multiple of the running speed counts
-  double mode_amplification = 0;  ///< from which a mode counts as multiplying a line
+  double smooth = 0.0;           ///< m/s r.m.s.: below it a channel without a limit of its own runs smoothly
+  double least_coherence = 0.0;  ///< of a phase that counts
+  double harmonic_share = 0.0;   ///< of the level, from which a multiple of the running speed counts
 };
 
 /// The rules that travel inside the program.
