@@ -113,7 +113,7 @@ struct DeflectionConsumer::Sums {
 };
 
 DeflectionConsumer::DeflectionConsumer(const recording::Recording& recording, recording::FrameRange range,
-                                       std::vector<double> frequencies_hz, const DeflectionOptions& options)
+                                       const std::vector<double>& frequencies_hz, const DeflectionOptions& options)
     : BlockConsumer(plan_for(recording, range, frequencies_hz, options)),
       transform_(samples(options.window, plan().length())),
       sums_(std::make_unique<Sums>()) {

@@ -95,7 +95,7 @@ struct EnvelopeConsumer::Sums {
 };
 
 EnvelopeConsumer::EnvelopeConsumer(const recording::Recording& recording, recording::FrameRange range,
-                                   std::vector<EnvelopeBand> bands, const EnvelopeOptions& options)
+                                   const std::vector<EnvelopeBand>& bands, const EnvelopeOptions& options)
     : BlockConsumer(plan_for(recording, range, options.spectrum)), sums_(bands.size()) {
   if (!(std::isfinite(options.highest_hz) && options.highest_hz > 0.0)) {
     throw base::usage_error({}, fmt::format("an envelope spectrum up to {} Hz", options.highest_hz),

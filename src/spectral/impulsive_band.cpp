@@ -43,11 +43,14 @@ std::vector<base::Interval> bands_of(base::Interval range, double least_width) {
   std::vector<base::Interval> bands;
   if (!has_room(range, least_width)) return bands;
   for (std::size_t i = 0; i < 40; ++i) {
-    const double power = std::pow(2.0, static_cast<double>(i / 2));
-    const double parts = i == 0 ? 1.0 : (i % 2 == 1 ? 2.0 * power : 1.5 * power);
-    const double width = range.width() / parts;
+    const std::size_t power = std::size_t{1} << (i / 2);
+    const std::size_t parts = i == 0 ? 1 : (i % 2 == 1 ? 2 * power : 3 * power / 2);
+    const double width = range.width() / static_cast<double>(parts);
     if (width < least_width) break;
-    for (double p = 0.0; p < parts; ++p) bands.push_back({range.lo + p * width, range.lo + (p + 1.0) * width});
+    for (std::size_t p = 0; p < parts; ++p) {
+      const double lo = range.lo + static_cast<double>(p) * width;
+      bands.push_back({lo, lo + width});
+    }
   }
   return bands;
 }

@@ -72,7 +72,7 @@ class DeflectionConsumer final : public BlockConsumer {
   /// Throws `Error` (usage): no frequency, one outside what lines and rate allow, a wander outside 0 to 0.1, a
   /// reference that is no motion, fewer than two channels of motion, a resolution that the range cannot give.
   DeflectionConsumer(const recording::Recording& recording, recording::FrameRange range,
-                     std::vector<double> frequencies_hz, const DeflectionOptions& options = {});
+                     const std::vector<double>& frequencies_hz, const DeflectionOptions& options = {});
   ~DeflectionConsumer() override;
 
   std::unique_ptr<recording::Consumer> fresh(recording::FrameRange owned) const override;

@@ -58,8 +58,8 @@ class EnvelopeConsumer final : public BlockConsumer {
  public:
   /// Throws `Error` (usage): a highest frequency that is not positive, a band that does not lie within 0 to rate/2 or
   /// is narrower than eight lines, peak hold, a channel that is not there, a resolution that the range cannot give.
-  EnvelopeConsumer(const recording::Recording& recording, recording::FrameRange range, std::vector<EnvelopeBand> bands,
-                   const EnvelopeOptions& options = {});
+  EnvelopeConsumer(const recording::Recording& recording, recording::FrameRange range,
+                   const std::vector<EnvelopeBand>& bands, const EnvelopeOptions& options = {});
   ~EnvelopeConsumer() override;
 
   std::unique_ptr<recording::Consumer> fresh(recording::FrameRange owned) const override;
