@@ -21,6 +21,7 @@ struct Fit {
   double distance = 0.0;
   double u = 0.0;
   bool tight = true;
+  bool alone = true;  // explains a peak by itself
   int rank = 0;
 };
 
@@ -33,7 +34,8 @@ std::vector<Fit> fits(const base::Estimate& peak, double resolution_hz, std::spa
     const double u = std::hypot(peak_u, forcing[i].frequency.u.value_or(0.0));
     const double distance = std::abs(peak.value - forcing[i].frequency.value);
     if (distance > std::min(std::max(resolution_hz, 3.0 * u), bound)) continue;
-    out.push_back({i, distance, u, 3.0 * u <= tight_reach(peak.value, resolution_hz), forcing[i].rank});
+    const bool tight = 3.0 * u <= tight_reach(peak.value, resolution_hz);
+    out.push_back({i, distance, u, tight, tight || forcing[i].of.empty(), forcing[i].rank});
   }
   std::stable_sort(out.begin(), out.end(), [](const Fit& a, const Fit& b) { return a.distance < b.distance; });
   return out;
@@ -45,6 +47,8 @@ std::size_t put_best_first(std::vector<Fit>& found, double resolution_hz) {
   const auto keep = [&](const auto& counts) { end = std::stable_partition(found.begin(), end, counts); };
   if (std::any_of(found.begin(), found.end(), [](const Fit& fit) { return fit.tight; })) {
     keep([](const Fit& fit) { return fit.tight; });
+  } else {
+    keep([](const Fit& fit) { return fit.alone; });
   }
   if (end == found.begin()) return 0;
   const double near = std::max({found.front().distance, found.front().u, 0.25 * resolution_hz});
@@ -78,6 +82,22 @@ void call_ambiguous(Cause& cause, std::span<const Fit> alike, std::span<const Fo
   cause.text += fmt::format(" (not separated: {:.2g} Hz apart, lines {:.2g} Hz)", apart, resolution_hz);
 }
 
+// Whether a peak of the same channel is the fundamental of that harmonic, and stands where the harmonic says.
+bool confirmed(std::span<const Peak> peaks, std::size_t of, std::span<const Cause> causes,
+               std::span<const Forcing> forcing, std::size_t harmonic, double resolution_hz) {
+  const Forcing& wanted = forcing[harmonic];
+  const double line_u = resolution_hz / std::sqrt(12.0);
+  for (std::size_t i = 0; i < peaks.size(); ++i) {
+    const auto& found = causes[i].forcing;
+    if (i == of || peaks[i].channel != peaks[of].channel || !found || forcing[*found].name != wanted.of) continue;
+    const double u =
+        std::hypot(peaks[of].frequency.u.value_or(line_u), wanted.harmonic * peaks[i].frequency.u.value_or(line_u));
+    const double off = std::abs(peaks[of].frequency.value - wanted.harmonic * peaks[i].frequency.value);
+    if (off <= std::max(resolution_hz, 3.0 * u)) return true;
+  }
+  return false;
+}
+
 }  // namespace
 
 Cause cause_of_peak(const base::Estimate& frequency, double resolution_hz, std::span<const Forcing> forcing,
@@ -105,6 +125,26 @@ Cause cause_of_peak(const base::Estimate& frequency, double resolution_hz, std::
     cause.text = unexplained;
   }
   return cause;
+}
+
+std::vector<Cause> causes_of_peaks(std::span<const Peak> peaks, double resolution_hz, std::span<const Forcing> forcing,
+                                   std::span<const modal::Mode> modes, std::span<const Peak> of_stopped_machine) {
+  std::vector<Cause> out;
+  for (const Peak& peak : peaks) {
+    const bool in_background = stands_in_background(peak, of_stopped_machine, resolution_hz);
+    out.push_back(cause_of_peak(peak.frequency, resolution_hz, forcing, modes, in_background));
+  }
+  for (std::size_t i = 0; i < peaks.size(); ++i) {
+    if (out[i].forcing || out[i].ambiguous || out[i].from_background) continue;
+    for (const std::size_t each : out[i].candidates) {
+      if (forcing[each].harmonic < 2 || !confirmed(peaks, i, out, forcing, each, resolution_hz)) continue;
+      out[i].forcing = each;
+      out[i].text = forcing[each].name;
+      out[i].strength = base::Strength::fair;
+      break;
+    }
+  }
+  return out;
 }
 
 bool stands_in_background(const Peak& peak, std::span<const Peak> of_stopped_machine, double resolution_hz,

@@ -1,5 +1,7 @@
+#include "stillmass/machine/bearing.hpp"
 #include "stillmass/machine/cause.hpp"
 #include "stillmass/machine/forcing.hpp"
+#include "stillmass/numeric/random.hpp"
 
 #include "support/catch.hpp"
 
@@ -123,4 +125,49 @@ TEST_CASE("a peak that the stopped machine shows too is the background's, whatev
   CHECK_FALSE(cause.candidates.empty());
   CHECK_FALSE(machine::stands_in_background({hertz(49.41, 0.01), 4.0, 1}, stopped, 0.25));  // twice as strong now
   CHECK_FALSE(machine::stands_in_background({hertz(98.8, 0.01), 2.0, 1}, stopped, 0.25));   // another channel's
+}
+
+TEST_CASE("few lines at random are explained by chance") {
+  // Lines anywhere in 5 to 500 Hz, 0.25 Hz apart. A pump alone, and with two rolling bearings of all harmonics.
+  const bool bearings = GENERATE(false, true);
+  Machine machine = two_pole_pump();
+  if (bearings) machine.bearings = {*machine::bearing_named("6205"), *machine::bearing_named("6203")};
+  const auto list = machine::forcing_frequencies(machine, hertz(49.4, 0.005));
+  const numeric::Random random(5);
+  constexpr int draws = 20000;
+  int strong = 0;
+  int fair = 0;
+  int named = 0;
+  for (std::uint64_t draw = 0; draw < draws; ++draw) {
+    const auto cause = machine::cause_of_peak(hertz(5.0 + 495.0 * random.uniform(draw, 0), 0.02), 0.25, list);
+    strong += cause.strength == base::Strength::strong ? 1 : 0;
+    fair += cause.strength == base::Strength::fair ? 1 : 0;
+    named += cause.text != machine::unexplained ? 1 : 0;
+  }
+  INFO("strong " << strong << ", fair " << fair << ", named at all " << named << " of " << draws);
+  // Ten frequencies of rank 0 below 500 Hz, each half a hertz wide: 1 %.
+  CHECK(strong < 0.012 * draws);
+  CHECK(named < (bearings ? 0.14 : 0.025) * draws);
+  CHECK(fair <
+        (bearings ? 0.13 : 0.015) * draws);  // eight bearing frequencies within 2 %, 1300 Hz together: 52 of 495 Hz
+}
+
+TEST_CASE("harmonics of a bearing count where its fundamental stands, at whole multiples of that") {
+  Machine machine = two_pole_pump();
+  machine.bearings = {*machine::bearing_named("6205")};
+  const auto list = machine::forcing_frequencies(machine, hertz(49.4, 0.005));
+  const double outer = 1.008 * 3.5848 * 49.4;  // it slips: 178.5 Hz
+  std::vector<machine::Peak> peaks = {
+      {hertz(outer, 0.02), 1.0}, {hertz(2.0 * outer + 0.1, 0.02), 0.5}, {hertz(3.0 * outer + 2.0, 0.02), 0.5}};
+  const auto causes = machine::causes_of_peaks(peaks, 0.25, list);
+  REQUIRE(causes.size() == 3);
+  CHECK(causes[0].text == "outer ring of bearing 6205");
+  CHECK(causes[1].text == "2x outer ring of bearing 6205");
+  CHECK(causes[1].strength == base::Strength::fair);
+  CHECK(causes[2].text == "unexplained");  // 2 Hz beside three times: not its harmonic
+  CHECK_FALSE(causes[2].candidates.empty());
+  peaks[0].channel = 1;  // the fundamental at another channel: no proof here
+  CHECK(machine::causes_of_peaks(peaks, 0.25, list)[1].text == "unexplained");
+  const std::vector<machine::Peak> stopped = {{hertz(2.0 * outer, 0.02), 0.4, 0}};
+  CHECK(machine::causes_of_peaks(peaks, 0.25, list, {}, stopped)[1].text == "background");
 }

@@ -123,6 +123,17 @@ TEST_CASE("without a line at 1x two other orders stand in for it") {
   CHECK_FALSE(machine::running_speed(one, pump, line));
 }
 
+TEST_CASE("in a wide range of speeds 2x is not taken for the speed, even where it is the stronger") {
+  Machine driven;
+  driven.supply = machine::Supply::drive;
+  driven.speed_hz = base::Interval{10.0, 25.0};
+  const std::vector<Peak> peaks = {{hertz(12.03, 0.01), 1.0}, {hertz(24.06, 0.01), 2.5}, {hertz(36.09, 0.01), 0.3}};
+  const auto speed = machine::running_speed(peaks, driven, line);
+  REQUIRE(speed);
+  CHECK(speed->speed.value == Approx(12.03).margin(0.005));
+  CHECK(speed->searched_hz == base::Interval{10.0, 25.0});
+}
+
 TEST_CASE("with line frequency and poles alone the speed is looked for within the slip of the motor") {
   Machine motor;
   motor.line_frequency_hz = 50.0;

@@ -45,8 +45,9 @@ struct Cause {
 ///
 /// Which of several counts: a tight fit before a loose one (loose: 3 u passes both a line and 1 % of the frequency);
 /// then one before those three times as far away (a distance below its u or a quarter of a line counts as that much);
-/// then the lower `rank`. What still stands side by side cannot be told apart at this resolution and is called
-/// ambiguous. `candidates` has them all.
+/// then the lower `rank`. A loose fit to a harmonic or a side band is a
+/// candidate, but explains nothing by itself (`causes_of_peaks`). What still stands side by side cannot be told apart
+/// at this resolution and is called ambiguous. `candidates` has them all.
 ///
 /// Strong: one tight fit of rank 0; fair: one tight fit of another rank, one loose fit of rank 0, or no fit and a
 /// natural frequency there (within half its half-power bandwidth and 2 u), or the background; weak: a loose fit of
@@ -54,6 +55,14 @@ struct Cause {
 /// `stands_in_background`; such a peak is given no force, but keeps its candidates.
 Cause cause_of_peak(const base::Estimate& frequency, double resolution_hz, std::span<const Forcing> forcing,
                     std::span<const modal::Mode> modes = {}, bool in_background = false);
+
+/// The causes of all peaks together, in their order. As above for each; a harmonic that fits loosely (of a bearing, a
+/// belt, a shaft whose speed is not well known) counts, fair, where its fundamental is the cause of another peak of the
+/// same channel and the two stand at k to 1 within max(one line, 3 u). of_stopped_machine: peaks of a background
+/// recording, of the same quantity; may be empty.
+std::vector<Cause> causes_of_peaks(std::span<const Peak> peaks, double resolution_hz, std::span<const Forcing> forcing,
+                                   std::span<const modal::Mode> modes = {},
+                                   std::span<const Peak> of_stopped_machine = {});
 
 /// Whether a recording of the stopped machine shows this peak too: a line of the same channel within max(one line, 3 u)
 /// and at least `share` of its amplitude (half: common practice).
