@@ -186,7 +186,7 @@ void print(const char* name, const BothCounts& counts) {
 
 }  // namespace
 
-TEST_CASE("every single fault is found, and is rarely called another") {
+TEST_CASE("every single fault is found, and is rarely called another", "[simulated]") {
   for (const Expected& fault : expected()) {
     CAPTURE(fault.name);
     const BothCounts counts = with_fault(fault, fault_seeds);
@@ -207,7 +207,7 @@ TEST_CASE("every single fault is found, and is rarely called another") {
   }
 }
 
-TEST_CASE("of two faults at once both come out") {
+TEST_CASE("of two faults at once both come out", "[simulated]") {
   for (const FaultPair& pair : fault_pairs) {
     CAPTURE(expected(pair.first).name, expected(pair.second).name);
     const BothCounts counts = with_pair(pair, pair_seeds);
@@ -221,7 +221,7 @@ TEST_CASE("of two faults at once both come out") {
   }
 }
 
-TEST_CASE("of healthy machines at most 2 % get a finding that is fair or strong") {
+TEST_CASE("of healthy machines at most 2 % get a finding that is fair or strong", "[simulated]") {
   const BothCounts counts = healthy(healthy_machines);
   INFO("all measured: " << counts.all.text() << "\nspectra alone: " << counts.alone.text());
   const auto share = [](const Counts& of, Strength least) {
