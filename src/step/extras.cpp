@@ -181,9 +181,12 @@ void add_envelopes(SpectrumResult& result, const recording::Reader& reader, cons
     if (each.envelope) {
       spectral::ToneOptions tone_options;
       tone_options.strongest = most_envelope;
-      for (const spectral::Tone& tone : spectral::tones(each.envelope->spectrum, tone_options)) {
-        each.peaks.push_back({tone, spectral::modulation_depth(*each.envelope, tone),
-                              machine::cause_of_peak(tone.frequency, each.envelope->spectrum.line_hz, result.forcing)});
+      const auto tones = spectral::tones(each.envelope->spectrum, tone_options);
+      std::vector<machine::Peak> peaks;
+      for (const spectral::Tone& tone : tones) peaks.push_back({tone.frequency, tone.amplitude_rms.value});
+      const auto causes = machine::causes_of_peaks(peaks, each.envelope->spectrum.line_hz, result.forcing);
+      for (std::size_t t = 0; t < tones.size(); ++t) {
+        each.peaks.push_back({tones[t], spectral::modulation_depth(*each.envelope, tones[t]), causes[t]});
       }
     }
     whose[i]->envelope = std::move(each);

@@ -172,10 +172,20 @@ void find_causes(SpectrumResult& result, const SpectrumRequest& request,
                  const std::vector<std::vector<double>>& resolutions) {
   for (std::size_t c = 0; c < result.channels.size(); ++c) {
     ChannelSpectrum& each = result.channels[c];
+    std::vector<machine::Peak> peaks;
+    std::vector<machine::Peak> stopped;
+    for (const SpectralPeak& peak : each.peaks) {
+      peaks.push_back({peak.tone.frequency, peak.tone.amplitude_rms.value, c, peak.tone.breadth});
+      if (peak.in_background()) stopped.push_back(peaks.back());
+    }
+    auto causes = machine::causes_of_peaks(peaks, each.shown.line_hz, result.forcing, request.modes, stopped);
     for (std::size_t i = 0; i < each.peaks.size(); ++i) {
       SpectralPeak& peak = each.peaks[i];
-      peak.cause = machine::cause_of_peak(peak.tone.frequency, resolutions[c][i], result.forcing, request.modes,
-                                          peak.in_background());
+      if (resolutions[c][i] < each.shown.line_hz) {  // parted by a finer look
+        causes[i] = machine::cause_of_peak(peak.tone.frequency, resolutions[c][i], result.forcing, request.modes,
+                                           peak.in_background());
+      }
+      peak.cause = std::move(causes[i]);
       if (i < each.velocity_peaks.size()) each.velocity_peaks[i].cause = peak.cause;
     }
   }
