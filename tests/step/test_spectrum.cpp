@@ -238,6 +238,7 @@ TEST_CASE("blows of a flaw in a bearing's outer ring are found in the envelope a
   request.site.machine->speed_hz = base::Interval{speed, speed};
   machine::Bearing bearing = *machine::bearing_named("6205");
   request.site.machine->bearings = {bearing};
+  request.site.points = {{"de", "horizontal", true}};
   const tests::MemoryReader reader(fast, {{"de", x}});
   const auto result = step::spectrum(reader, request, {});
   REQUIRE(result.channels.front().envelope);
