@@ -15,7 +15,6 @@ namespace stillmass::spectral {
 namespace {
 
 constexpr std::size_t most = 32;     // lobes looked at
-constexpr double matters = 1e-4;     // of a lobe's power: what line by line misses less is left as it is
 constexpr std::size_t around = 24;   // lines on each side that say what a lobe stands out of
 constexpr double outstanding = 1.5;  // over what noise reaches on one line in a million
 constexpr double steady = 0.3;       // spread of a tone on the lowest line, whose other side the offset hides
@@ -31,20 +30,6 @@ double noise_reach(double averages) {
 
 /// Lines on each side of the highest one that make a lobe; of the rectangle also its first side lobes.
 std::size_t half_lobe(Window window) { return std::max<std::size_t>(2, static_cast<std::size_t>(lobe_bins(window))); }
-
-/// Lines below which the weights f^-2n bend over a lobe. Twice integrated, half the lobe's second moment times the
-/// second derivative of f^-4, relative to f^-4, is 10 m / k^2. Far skirts reach everywhere.
-double bending_lines(Window window) {
-  if (has_far_skirts(window)) return 1e300;
-  double power = 0.0;
-  double moment = 0.0;
-  for (int j = -8; j <= 8; ++j) {
-    const double share = std::pow(transform(window, j), 2);
-    power += share;
-    moment += share * j * j;
-  }
-  return std::sqrt(10.0 * moment / power / matters);
-}
 
 /// Median of the given lines around line k, those of its lobe left out.
 double level_around(const Spectrum& s, std::size_t k, std::size_t lowest) {
@@ -202,10 +187,9 @@ class Lobe {
 
 /// The highest lines of lobes, those first that matter most to a velocity.
 std::vector<std::size_t> peaks(const Spectrum& s, std::size_t lowest) {
-  const double end = bending_lines(s.window);
   const double least = outstanding * noise_reach(s.effective_averages);
   std::vector<std::pair<double, std::size_t>> found;
-  for (std::size_t k = lowest; k + 1 < s.density.size() && static_cast<double>(k) < end; ++k) {
+  for (std::size_t k = lowest; k + 1 < s.density.size(); ++k) {
     const bool is_peak = (k == lowest || s.density[k] >= s.density[k - 1]) && s.density[k] > s.density[k + 1];
     if (!is_peak || (k == lowest && !s.spread.empty() && s.spread[k] > steady)) continue;
     const auto place = static_cast<double>(k);

@@ -8,10 +8,10 @@
 
 namespace stillmass::spectral {
 
-/// The lobes of a measured spectrum that stand out of what is around them and matter to a level of it that was
-/// integrated: by how their power, weighed line by line, misses what a tone has. Frequency and power from the lines of
-/// the lobe that are free of the sensor's offset, by least squares over the window's own lobe, those of the others
-/// taken off. At most 32, in order of frequency. Empty for peak hold, no blocks.
+/// The lobes of a measured spectrum that stand out of what is around them: the 32 at most that matter most to a
+/// velocity integrated from it, in order of frequency. Frequency and power from the lines of the lobe that are free of
+/// the sensor's offset, by least squares over the window's own lobe, those of the others taken off. Empty for peak
+/// hold, no blocks.
 std::vector<StrongLine> strong_lines(const Spectrum& measured);
 
 /// True for windows that end in a step: their side lobes fall by 6 dB an octave only.

@@ -190,6 +190,17 @@ TEST_CASE("a tone below the low limit is not counted, nor are its skirts") {
   CHECK(spectral::band_rms(velocity, {2.0, top}).value == Approx(1.0 / angular(40.0)).epsilon(0.05));
 }
 
+TEST_CASE("a tone on the edge of a band is whole however fine the lines are") {
+  std::vector<double> x(1 << 17, 0.0);
+  tests::add_tone(x, rate, 10.0, 1.0);
+  for (const std::size_t block : {1024, 2048, 16384, 65536}) {
+    const auto s = spectral::averaged_spectrum(x, rate, Quantity::acceleration, {.block_frames = block});
+    const auto velocity = spectral::as_quantity(s, Quantity::velocity);
+    CAPTURE(block);
+    CHECK(spectral::band_rms(velocity, {10.0, top}).value == Approx(1.0 / angular(10.0)).epsilon(2e-3));
+  }
+}
+
 TEST_CASE("a tone counts whole in a band that holds it and in none that does not") {
   auto x = noise_of(0.001, 5);
   tests::add_tone(x, rate, 10.0, 1.0);

@@ -43,6 +43,7 @@ struct SpectrumOptions {
 };
 
 /// A lobe that stands out of an integrated (or differentiated) spectrum: taken as a tone that carries the lobe's power.
+/// Whoever changes the density of an integrated spectrum clears them.
 struct StrongLine {
   double frequency_hz = 0.0;
   double u_hz = 0.0;         ///< of the frequency
