@@ -25,6 +25,7 @@ struct Leak {
   double reach = 0.0;      ///< what it is on the tone's lines, at most
   int image = 0;           ///< of the tone itself: -1 about 0, 1 about rate/2
   bool is_modelled = false;
+  bool is_own = false;
 };
 
 class Refinement {
@@ -55,7 +56,7 @@ class Refinement {
       const double there = place_of(tones_[j]);
       const auto add = [&](double place, int image) {
         const double distance = std::max(std::abs(place - here) - half, half);
-        leaks.push_back({place, a, a * transform_envelope(s_.window, distance), j == i ? image : 0, false});
+        leaks.push_back({place, a, a * transform_envelope(s_.window, distance), j == i ? image : 0, false, j == i});
       };
       if (j != i) add(there, 0);
       add(-there, -1);
@@ -246,7 +247,11 @@ class Refinement {
     }
     // The rectangle's neighbours are 0 where a tone stands on a line: their power tells its place no better than this,
     // nor on which side it stands.
-    if (s_.window == Window::rectangle) of_place += 0.5 * floor * std::sqrt(noise_.of_power(0)) / p[1];
+    // Beside strong tones the fit of so slowly falling side lobes may settle elsewhere: by about what leaks in.
+    if (s_.window == Window::rectangle) {
+      of_place += 0.5 * floor * std::sqrt(noise_.of_power(0)) / p[1];
+      for (const Leak& leak : leaks) of_place += leak.is_own ? 0.0 : 0.5 * leak.reach * leak.reach / p[1];
+    }
     tone.frequency.u = std::sqrt(std::max(of_place, 0.0)) * s_.line_hz;
     tone.amplitude_rms.u = 0.5 * std::sqrt(std::max(of_power, 0.0)) / tone.amplitude_rms.value;
   }
