@@ -16,7 +16,8 @@ namespace stillmass::spectral {
 namespace {
 
 constexpr std::size_t most_leaks = 3;
-constexpr double counts = 0.1;  // of the noise on a line: lesser leaks are left alone
+constexpr std::size_t most_sources = 60;  // the strongest tones; what others leak is noise
+constexpr double counts = 0.1;            // of the noise on a line: lesser leaks are left alone
 
 /// What reaches into a tone's lines from elsewhere.
 struct Leak {
@@ -25,6 +26,7 @@ struct Leak {
   double reach = 0.0;      ///< what it is on the tone's lines, at most
   int image = 0;           ///< of the tone itself: -1 about 0, 1 about rate/2
   bool is_modelled = false;
+  bool is_own = false;
 };
 
 class Refinement {
@@ -34,9 +36,16 @@ class Refinement {
 
   void operator()() {
     constexpr int rounds = 6;
+    constexpr double settled = 1e-9;  // lines
     const std::vector<Tone> before(tones_.begin(), tones_.end());
     for (int round = 0; round < rounds; ++round) {
-      for (std::size_t i = 0; i < tones_.size(); ++i) refit(i, before[i]);
+      double moved = 0.0;
+      for (std::size_t i = 0; i < tones_.size(); ++i) {
+        const double place = place_of(tones_[i]);
+        refit(i, before[i]);
+        moved = std::max(moved, std::abs(place_of(tones_[i]) - place));
+      }
+      if (moved < settled) break;
     }
   }
 
@@ -51,11 +60,12 @@ class Refinement {
     const double here = place_of(tones_[i]);
     const double half = lobe_bins(s_.window);
     for (std::size_t j = 0; j < tones_.size(); ++j) {
+      if (j >= most_sources && j != i) continue;
       const double a = tones_[j].amplitude_rms.value;
       const double there = place_of(tones_[j]);
       const auto add = [&](double place, int image) {
         const double distance = std::max(std::abs(place - here) - half, half);
-        leaks.push_back({place, a, a * transform_envelope(s_.window, distance), j == i ? image : 0, false});
+        leaks.push_back({place, a, a * transform_envelope(s_.window, distance), j == i ? image : 0, false, j == i});
       };
       if (j != i) add(there, 0);
       add(-there, -1);
@@ -87,7 +97,7 @@ class Refinement {
     return around.empty() ? 0.0 : numeric::median(std::move(around)) / median_over_mean(s_.effective_averages);
   }
 
-  /// Parameters: place, power, then the c of the modelled leaks. On line k, floor and other tones' powers taken off.
+  /// Parameters: place, power, then the c of the modelled leaks. What `rest` holds on line k.
   double model(double k, const std::vector<double>& p, const std::vector<Leak>& leaks) const {
     const double own = w(k - p[0]);
     double sum = p[1] * own * own;
@@ -134,6 +144,19 @@ class Refinement {
     const std::size_t unknowns = 2 + modelled;
     if (lines.size() < unknowns + 1) return;
 
+    // What neither moves with the tone nor is fitted is taken off once.
+    std::vector<double> rest;
+    for (const std::size_t k : lines) {
+      double others = floor;
+      for (const Leak& leak : leaks) {
+        if (!leak.is_modelled && leak.image == 0) {
+          others += std::pow(leak.amplitude * w(static_cast<double>(k) - leak.place), 2);
+        }
+      }
+      rest.push_back(power(k) - others);
+    }
+    std::erase_if(leaks, [](const Leak& leak) { return !leak.is_modelled && leak.image == 0; });
+
     std::vector<double> p(unknowns, 0.0);
     p[0] = place_of(tone);
     p[1] = tone.amplitude_rms.value * tone.amplitude_rms.value;
@@ -145,7 +168,7 @@ class Refinement {
     numeric::Matrix design(lines.size(), unknowns);
     std::optional<numeric::Matrix> inverse;
     for (int step = 0; step < 12; ++step) {
-      const double moved = improve(lines, weight, floor, leaks, p, design, inverse);
+      const double moved = improve(lines, weight, rest, leaks, p, design, inverse);
       if (!inverse || !(std::abs(p[0] - place_of(first)) < 0.75) || !is_near(p[1], first)) return;
       if (moved < 1e-9) break;
     }
@@ -158,9 +181,9 @@ class Refinement {
   }
 
   /// One step of Gauss and Newton; how far the place moved.
-  double improve(const std::vector<std::size_t>& lines, const std::vector<double>& weight, double floor,
-                 const std::vector<Leak>& leaks, std::vector<double>& p, numeric::Matrix& design,
-                 std::optional<numeric::Matrix>& inverse) const {
+  double improve(const std::vector<std::size_t>& lines, const std::vector<double>& weight,
+                 const std::vector<double>& rest, const std::vector<Leak>& leaks, std::vector<double>& p,
+                 numeric::Matrix& design, std::optional<numeric::Matrix>& inverse) const {
     constexpr double h = 1e-5;
     const std::size_t unknowns = p.size();
     const std::vector<double> scale = scales(p);
@@ -168,7 +191,7 @@ class Refinement {
     std::vector<double> gradient(unknowns, 0.0);
     for (std::size_t r = 0; r < lines.size(); ++r) {
       const auto k = static_cast<double>(lines[r]);
-      const double off = power(lines[r]) - floor - model(k, p, leaks);
+      const double off = rest[r] - model(k, p, leaks);
       for (std::size_t a = 0; a < unknowns; ++a) {
         const double step = a == 0 ? h : scale[a];  // all but the place are linear
         std::vector<double> up = p, down = p;
@@ -246,7 +269,11 @@ class Refinement {
     }
     // The rectangle's neighbours are 0 where a tone stands on a line: their power tells its place no better than this,
     // nor on which side it stands.
-    if (s_.window == Window::rectangle) of_place += 0.5 * floor * std::sqrt(noise_.of_power(0)) / p[1];
+    // Beside strong tones the fit of so slowly falling side lobes may settle elsewhere: by about what leaks in.
+    if (s_.window == Window::rectangle) {
+      of_place += 0.5 * floor * std::sqrt(noise_.of_power(0)) / p[1];
+      for (const Leak& leak : leaks) of_place += leak.is_own ? 0.0 : 0.5 * leak.reach * leak.reach / p[1];
+    }
     tone.frequency.u = std::sqrt(std::max(of_place, 0.0)) * s_.line_hz;
     tone.amplitude_rms.u = 0.5 * std::sqrt(std::max(of_power, 0.0)) / tone.amplitude_rms.value;
   }
@@ -263,8 +290,7 @@ class Refinement {
 }  // namespace
 
 void refine(const Spectrum& measured, const LineNoise& noise, std::vector<Tone>& tones) {
-  constexpr std::size_t most = 60;
-  Refinement(measured, noise, std::span(tones).first(std::min(most, tones.size())))();
+  Refinement(measured, noise, tones)();
 }
 
 }  // namespace stillmass::spectral

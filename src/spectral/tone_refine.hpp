@@ -13,8 +13,8 @@ namespace stillmass::spectral {
 /// the mean power on line k is sum of P_j W_j(k)^2 + sum over pairs of c_ij W_i(k) W_j(k) + floor, with one real number
 /// c_ij a pair, whatever the phases and however the blocks overlap. Place, power and the c of the three greatest leaks
 /// are fitted by least squares to the lines of the lobe; the other tones' own powers are taken off. With the rectangle
-/// every tone is fitted so. A fit that does not settle near the first estimate is dropped. Only the strongest 60 tones
-/// are looked at.
+/// every tone is fitted so. A fit that does not settle near the first estimate is dropped. What more than the
+/// strongest 60 tones leak counts as noise. `tones`: strongest first.
 void refine(const Spectrum& measured, const LineNoise& noise, std::vector<Tone>& tones);
 
 }  // namespace stillmass::spectral

@@ -60,35 +60,117 @@ TEST_CASE("the two-line formula for Hann is what the general one gives") {
   CHECK(found[0].frequency.value == Approx(212.0 + (2.0 * a - 1.0) / (a + 1.0)).epsilon(1e-7));
 }
 
-TEST_CASE("frequency and amplitude of tones in noise lie within their uncertainty as often as they should") {
-  // 300 cases a window: |error| <= 2 u holds for 95.4 % of a normal error; the share is known to 1.2 %. Accepted: 90 %
-  // at least, and the scatter 0.95 of the claim (which takes the greater of two, so is cautious) within three times its
-  // own 4 %.
-  for (const Window window : {Window::hann, Window::flat_top, Window::blackman_harris}) {
-    int within_f = 0, within_a = 0;
-    double f_pull = 0.0, a_pull = 0.0;
-    constexpr int cases = 300;
-    const numeric::Random random(52);
-    for (std::uint64_t c = 0; c < cases; ++c) {
-      auto x = faint_noise(21000, 1.0, c);
-      const double f = 100.0 + random.uniform(c, 0);
-      tests::add_tone(x, rate, f, 0.5, 6.28 * random.uniform(c, 1));
-      const auto found =
-          spectral::tones(spectrum(x, window, 1000), {.strongest = 1, .band_hz = base::Interval{90, 110}});
-      REQUIRE(found.size() == 1);
-      const double df = (found[0].frequency.value - f) / *found[0].frequency.u;
-      const double da = (found[0].amplitude_rms.value - 0.5) / *found[0].amplitude_rms.u;
-      within_f += std::abs(df) <= 2.0;
-      within_a += std::abs(da) <= 2.0;
-      f_pull += df * df / cases;
-      a_pull += da * da / cases;
+TEST_CASE("a tone off the line holds to 1e-4 of a line and 0.1 % beside strong tones and near both ends") {
+  // Noise-free but for 1e-7. Distances in lines; the neighbour's amplitude over the tone's. Limits: the issue's own,
+  // for neighbours beyond the window's lobe and one line. Measured: 3e-7 lines (Hann), 1.2e-5 (Hamming), 1e-8
+  // (Blackman-Harris), 7e-7 (flat-top).
+  struct Case {
+    double frequency, distance, ratio;
+  };
+  const Case cases[] = {{300, 0, 0},   {6, 0, 0},       {990, 0, 0}, {300, 8.3, 1},
+                        {300, 6.7, 3}, {300, 20.4, 10}, {8, 9.2, 5}};
+  for (const Window window : {Window::hann, Window::hamming, Window::blackman_harris, Window::flat_top}) {
+    for (const Case& c : cases) {
+      for (int o = 0; o <= 10; ++o) {
+        const double f = c.frequency + 0.1 * o;
+        auto x = faint_noise(40000, 1e-7);
+        tests::add_tone(x, rate, f, 1.0, 0.3 + o);
+        if (c.ratio > 0.0) tests::add_tone(x, rate, f + c.distance, c.ratio, 1.7 * o);
+        const auto found =
+            spectral::tones(spectrum(x, window), {.strongest = 2, .band_hz = base::Interval{f - 2.5, f + 2.5}});
+        CAPTURE(spectral::name(window), f, c.distance, c.ratio);
+        REQUIRE(found.size() == 1);
+        CHECK(std::abs(found[0].frequency.value - f) < 1e-4);
+        CHECK(found[0].amplitude_rms.value == Approx(1.0).epsilon(1e-3));
+        CHECK(std::abs(found[0].frequency.value - f) < 3.0 * *found[0].frequency.u + 1e-7);
+      }
     }
-    CAPTURE(spectral::name(window), std::sqrt(f_pull), std::sqrt(a_pull), within_f, within_a);
-    CHECK(within_f >= 0.90 * cases);
-    CHECK(within_a >= 0.90 * cases);
+  }
+}
+
+TEST_CASE("the rectangle holds to 1e-4 of a line where a tone stands alone, and beside others within its uncertainty") {
+  for (int o = 0; o <= 10; ++o) {
+    for (const double base_hz : {6.0, 300.0, 990.0}) {
+      const double f = base_hz + 0.1 * o;
+      auto x = faint_noise(40000, 1e-7);
+      tests::add_tone(x, rate, f, 1.0, 0.3 + o);
+      const auto alone = spectral::tones(spectrum(x, Window::rectangle), {.strongest = 1, .band_hz = {}});
+      CAPTURE(f);
+      REQUIRE(alone.size() == 1);
+      CHECK(std::abs(alone[0].frequency.value - f) < 1e-4);
+      CHECK(alone[0].amplitude_rms.value == Approx(1.0).epsilon(1e-3));
+      if (base_hz != 300.0) continue;
+      tests::add_tone(x, rate, f + 8.3, 1.0, 1.7 * o);
+      const auto beside = spectral::tones(spectrum(x, Window::rectangle),
+                                          {.strongest = 1, .band_hz = base::Interval{f - 1.5, f + 1.5}});
+      REQUIRE(beside.size() == 1);
+      CHECK(std::abs(beside[0].frequency.value - f) < 3.0 * *beside[0].frequency.u);
+    }
+  }
+}
+
+TEST_CASE("frequency and amplitude of tones in noise lie within their uncertainty as often as they should") {
+  // Three levels of the tone, three overlaps, 40 recordings each, 360 a window (seeds 51 noise, 52 places): |error| <=
+  // 2 u holds for 95.4 % of a normal error, known to 1.1 %. Accepted: 92 to 99 % (the claim takes the greater of two
+  // estimates of noise, so is cautious); the rectangle's place is held to 92 % only: where a tone stands on its line
+  // the neighbours do not tell on which side it stands.
+  const numeric::Random random(52);
+  for (const Window window : all) {
+    int within_f = 0, within_a = 0, cases = 0;
+    double f_pull = 0.0, a_pull = 0.0;
+    for (const double overlap : {0.0, 0.5, 0.75}) {
+      for (const double rms : {0.3, 1.0, 10.0}) {
+        for (int i = 0; i < 40; ++i) {
+          const auto c = static_cast<std::uint64_t>(cases);
+          auto x = faint_noise(21000, 1.0, c);
+          const double f = 100.0 + random.uniform(c, 0);
+          tests::add_tone(x, rate, f, rms, 6.28 * random.uniform(c, 1));
+          const auto s = spectral::averaged_spectrum(x, rate, Quantity::acceleration,
+                                                     {.window = window, .overlap = overlap, .block_frames = 1000});
+          const auto found = spectral::tones(s, {.strongest = 1, .band_hz = base::Interval{90, 112}});
+          REQUIRE(found.size() == 1);
+          const double df = (found[0].frequency.value - f) / *found[0].frequency.u;
+          const double da = (found[0].amplitude_rms.value - rms) / *found[0].amplitude_rms.u;
+          within_f += std::abs(df) <= 2.0;
+          within_a += std::abs(da) <= 2.0;
+          f_pull += df * df / 360.0;
+          a_pull += da * da / 360.0;
+          ++cases;
+        }
+      }
+    }
+    CAPTURE(spectral::name(window), within_f, within_a, std::sqrt(f_pull), std::sqrt(a_pull));
+    CHECK(within_f >= 0.92 * cases);
+    CHECK(within_a >= 0.92 * cases);
+    CHECK(within_a <= 0.99 * cases);
+    if (window == Window::rectangle) continue;
+    CHECK(within_f <= 0.99 * cases);
     CHECK(std::sqrt(f_pull) == Approx(0.95).epsilon(0.13));
     CHECK(std::sqrt(a_pull) == Approx(0.95).epsilon(0.13));
   }
+}
+
+TEST_CASE("the uncertainty of a tone beside a strong one holds in noise") {
+  // 300 recordings of a tone 7 lines beside one of ten times its amplitude: seeds 56 and 57; 92 to 99 % as above.
+  const numeric::Random random(57);
+  int within_f = 0, within_a = 0;
+  constexpr int cases = 300;
+  for (std::uint64_t c = 0; c < cases; ++c) {
+    auto x = tests::noise(21000, 56, c);
+    const double f = 200.0 + 2.0 * random.uniform(c, 0);
+    tests::add_tone(x, rate, f, 2.0, 6.28 * random.uniform(c, 1));
+    tests::add_tone(x, rate, f + 14.0, 20.0, 6.28 * random.uniform(c, 2));
+    const auto found =
+        spectral::tones(spectrum(x, Window::hann, 1000), {.strongest = 1, .band_hz = base::Interval{f - 4.0, f + 4.0}});
+    REQUIRE(found.size() == 1);
+    within_f += std::abs(found[0].frequency.value - f) <= 2.0 * *found[0].frequency.u;
+    within_a += std::abs(found[0].amplitude_rms.value - 2.0) <= 2.0 * *found[0].amplitude_rms.u;
+  }
+  CAPTURE(within_f, within_a);
+  CHECK(within_f >= 0.92 * cases);
+  CHECK(within_f <= 0.99 * cases);
+  CHECK(within_a >= 0.92 * cases);
+  CHECK(within_a <= 0.99 * cases);
 }
 
 TEST_CASE("noise alone holds no tone") {

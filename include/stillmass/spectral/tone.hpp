@@ -25,7 +25,7 @@ struct Tone {
 struct ToneOptions {
   std::size_t strongest = 20;  ///< at most so many
   double prominence = 4.0;     ///< at least (6 dB: common practice); more where few averages make noise spiky
-  std::optional<base::Interval> band_hz;
+  std::optional<base::Interval> band_hz;  ///< of the tones given; those outside still count as what leaks in
 };
 
 /// The noise floor per line: median over the lines around it (24 on each side, or 8 times the window's lobe if that is
@@ -38,9 +38,13 @@ std::vector<double> noise_floor(const Spectrum& spectrum);
 ///
 /// Frequency and amplitude follow from the ratio of two lines, exact for a steady tone and the window's own transform
 /// (for Hann, with a = ratio of the greater neighbour to the peak, (2 a - 1) / (a + 1) lines from the peak); the power
-/// of the floor is taken off before. u: from the floor's noise on those lines (or the scatter of the blocks if
-/// greater). Two tones closer than the window's lobe are one peak here. Of an integrated spectrum the measured one is
-/// used for the ratio. Empty for peak hold or no blocks.
+/// of the floor is taken off before. Where other tones, or its own image about 0 Hz and rate/2, leak into a tone's
+/// lines by more than a tenth of the noise there, place and amplitude are fitted again together with what leaks in:
+/// without noise to 1e-4 of a line and 0.1 % for tones more than the window's lobe and one line apart (the rectangle
+/// only where a tone stands alone; beside others its u says how far it may be off). u: from the floor's noise on those
+/// lines (or the scatter of the blocks if greater). Two tones closer than the window's lobe are one peak here:
+/// `close_tones` parts them. Of an integrated spectrum the measured one is used for the ratio. Empty for peak hold or
+/// no blocks.
 std::vector<Tone> tones(const Spectrum& spectrum, const ToneOptions& options = {});
 
 }  // namespace stillmass::spectral
