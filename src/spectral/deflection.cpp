@@ -75,8 +75,9 @@ PeakLines peak_lines(double frequency_hz, double line_hz, std::size_t lines, Win
   const auto lobe = static_cast<std::size_t>(lobe_bins(window));
   PeakLines peak{.asked_hz = frequency_hz};
   const double place = frequency_hz / line_hz;
-  const std::size_t reach = lobe - 1 + static_cast<std::size_t>(std::ceil(wander * place - 1e-9));
-  if (!(std::isfinite(place) && place >= static_cast<double>(lobe + reach) - 0.5 &&
+  const bool is_within = place > 0.0 && place < static_cast<double>(lines);  // not for NaN
+  const std::size_t reach = lobe - 1 + static_cast<std::size_t>(is_within ? std::ceil(wander * place - 1e-9) : 0.0);
+  if (!(is_within && place >= static_cast<double>(lobe + reach) - 0.5 &&
         place + static_cast<double>(reach) + 1.0 < static_cast<double>(lines - 1))) {
     throw base::usage_error(
         {}, fmt::format("a deflection at {:.6g} Hz", frequency_hz),
