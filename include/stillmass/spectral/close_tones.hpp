@@ -54,8 +54,8 @@ struct ToneCluster {
   std::string channel_name;
   base::Interval band_hz;
   Closeness closeness = Closeness::none;
-  /// Ascending frequency. One of `single`; two or three of `resolved`; of `unresolved` what one tone fits; of
-  /// `unsteady` mean frequency (its u the wander) and r.m.s. value.
+  /// Ascending frequency. One of `single`; two or three of `resolved` (the strongest: a fourth is not looked for); of
+  /// `unresolved` what one tone fits; of `unsteady` mean frequency (its u the wander) and r.m.s. value.
   std::vector<CloseTone> tones;
   double stretch_s = 0.0;          ///< length of the gap-free stretch that was looked at
   double middle_s = 0.0;           ///< its middle, from the start of the recording
