@@ -192,6 +192,13 @@ class Judge {
       return steadiness(lines_, hump.from - skirt, hump.to + skirt, noise).amplitude > steady_amplitude;
     });
     if (come_and_go) return false;
+    // What stands so little out of its own uncertainty may as well be the noise of a resonance beside the tone.
+    const bool is_faint = std::any_of(all.begin(), all.end(), [&](const Hump& hump) {
+      constexpr double clear = 6.0;
+      const CloseTone each = tone(hump, noise);
+      return each.amplitude_rms.value < clear * each.amplitude_rms.u.value_or(0.0);
+    });
+    if (is_faint) return false;
     const Steadiness sum = steadiness_beside(lines_, all.front().from - skirt, all.back().to + skirt, strongest, noise);
     if (is_modulated(sum)) return false;
     result.closeness = Closeness::resolved;

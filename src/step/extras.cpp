@@ -44,20 +44,6 @@ void mark(std::vector<SpectralPeak>& peaks, const std::vector<spectral::Tone>& b
   }
 }
 
-// The channel of the highest velocity, as it stands in the recording: the reference where none is named.
-std::optional<std::size_t> loudest(const SpectrumResult& result) {
-  const ChannelSpectrum* best = nullptr;
-  for (const ChannelSpectrum& each : result.channels) {
-    if (!each.severity_velocity || each.channel.role != recording::Role::vibration) continue;
-    if (best == nullptr || each.severity_velocity->value > best->severity_velocity->value) best = &each;
-  }
-  if (best == nullptr) return {};
-  const auto& channels = result.recording.channels;
-  const auto at = std::find_if(channels.begin(), channels.end(),
-                               [&](const auto& each) { return each.index == best->channel.index; });
-  return static_cast<std::size_t>(at - channels.begin());
-}
-
 }  // namespace
 
 void add_background(SpectrumResult& result, const BackgroundRequest& request, const Site& site,
@@ -111,7 +97,6 @@ void add_deflections(SpectrumResult& result, const recording::Reader& reader, co
                                "name a point or channel of this recording"});
     return;
   }
-  if (!options.reference) options.reference = loudest(result);
   if (moving < 2) {
     if (!reference.empty()) {
       result.refusals.push_back({"one-channel", "a deflection needs two channels of motion at least",
