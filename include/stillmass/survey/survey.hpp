@@ -59,7 +59,7 @@ struct SurveyResult {
   std::vector<Of<step::RunupResult>> runups;
   std::vector<Of<step::OtherTests::Cut>> power_cuts;  ///< of the coast-downs, one a vibration channel
   std::vector<step::OperatingDeflection> shapes;      ///< of several recordings as one: roved sensors
-  std::optional<double> target_m_s;  ///< asked for, or the limit B/C of the standard
+  std::optional<double> target_m_s;                   ///< asked for, or the limit B/C of the standard
   bool target_from_standard = false;
   std::vector<base::Finding> findings;  ///< of the machine and of the chain, strongest first
   std::vector<base::Refusal> refusals;  ///< questions that the recordings do not answer
