@@ -36,7 +36,8 @@ int run_bump(Session& session) {
   const step::BumpResult result = step::bump(readers, request, session.context());
   session.print(report::text(result));
   const report::Envelope envelope = session.envelope();
-  session.write(report::json(envelope, result), report::csv(result), report::page(envelope, result));
+  session.write({[&] { return report::json(envelope, result); }, [&] { return report::csv(result); },
+                 [&] { return report::page(envelope, result); }});
   return result.refusal ? not_answered : done;
 }
 

@@ -35,7 +35,8 @@ int run_check(Session& session) {
     }
   }
   const report::Envelope envelope = session.envelope();
-  session.write(report::json(envelope, results), report::csv(results), report::page(envelope, results));
+  session.write({[&] { return report::json(envelope, results); }, [&] { return report::csv(results); },
+                 [&] { return report::page(envelope, results); }});
   return code;
 }
 

@@ -27,7 +27,8 @@ int run_runup(Session& session) {
   const step::RunupResult result = step::runup(*reader, request, session.context());
   session.print(report::text(result));
   const report::Envelope envelope = session.envelope();
-  session.write(report::json(envelope, result), report::csv(result), report::page(envelope, result));
+  session.write({[&] { return report::json(envelope, result); }, [&] { return report::csv(result); },
+                 [&] { return report::page(envelope, result); }});
   return result.refusal ? not_answered : done;
 }
 

@@ -90,14 +90,14 @@ report::Envelope Session::envelope() const {
   return envelope;
 }
 
-void Session::write(const std::string& json, const std::vector<report::NamedText>& csv, const report::Page& page) {
+void Session::write(const Outputs& outputs) {
   bar_.clear();
   if (csv_folder_) {
-    for (const report::NamedText& file : csv) csv_folder_->write(file.name, file.text);
+    for (const report::NamedText& file : outputs.csv()) csv_folder_->write(file.name, file.text);
     csv_folder_->commit();
   }
-  if (const auto file = arguments_.text("--html")) base::write_whole(*file, report::html(page));
-  write_json(json);
+  if (const auto file = arguments_.text("--html")) base::write_whole(*file, report::html(outputs.page()));
+  if (arguments_.has("--json")) write_json(outputs.json());
 }
 
 void Session::write_json(const std::string& json) {

@@ -1,5 +1,6 @@
 #pragma once
 
+#include <functional>
 #include <memory>
 #include <optional>
 #include <stop_token>
@@ -34,8 +35,14 @@ class Session {
   void warn(const std::string& text);
 
   report::Envelope envelope() const;
+  /// A result in every form it can be written in; each is made only where it was asked for.
+  struct Outputs {
+    std::function<std::string()> json;
+    std::function<std::vector<report::NamedText>()> csv;
+    std::function<report::Page()> page;
+  };
   /// Writes what was asked for: CSV files, the page, the JSON last.
-  void write(const std::string& json, const std::vector<report::NamedText>& csv, const report::Page& page);
+  void write(const Outputs& outputs);
   void write_json(const std::string& json);
 
   /// The survey file of --survey, if given.

@@ -101,7 +101,8 @@ int run_spectrum(Session& session) {
   const report::SpectrumView view{session.arguments().has("--density"), session.arguments().has("--third-octaves")};
   session.print(report::text(result, view));
   const report::Envelope envelope = session.envelope();
-  session.write(report::json(envelope, result), report::csv(result), report::page(envelope, result, view));
+  session.write({[&] { return report::json(envelope, result); }, [&] { return report::csv(result); },
+                 [&] { return report::page(envelope, result, view); }});
   return done;
 }
 

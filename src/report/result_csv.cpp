@@ -157,11 +157,15 @@ std::vector<NamedText> csv(const step::SpectrumResult& result) {
     const std::string density_unit = "[(" + unit + ")^2/Hz]";
     std::string text = row(std::string("frequency [Hz]"), "r.m.s. amplitude [" + unit + "]", "density " + density_unit,
                            "95 % from " + density_unit, "95 % to " + density_unit);
+    const auto intervals = spectral::density_intervals(shown);
     for (std::size_t k = shown.first_line; k < shown.density.size(); ++k) {
-      const auto interval = spectral::density_interval(shown, k);
-      text += row(shown.frequency(k), shown.amplitude_rms(k), shown.density[k],
-                  interval ? std::optional(interval->lo) : std::nullopt,
-                  interval ? std::optional(interval->hi) : std::nullopt);
+      std::optional<double> from;
+      std::optional<double> to;
+      if (intervals) {
+        from = (*intervals)[k - shown.first_line].lo;
+        to = (*intervals)[k - shown.first_line].hi;
+      }
+      text += row(shown.frequency(k), shown.amplitude_rms(k), shown.density[k], from, to);
     }
     files.push_back({file_name("spectrum", each.channel.name), text});
     std::string peaks = row(std::string("frequency [Hz]"), std::string("u [Hz]"), "r.m.s. amplitude [" + unit + "]",

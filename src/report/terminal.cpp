@@ -175,11 +175,13 @@ std::string text(const survey::SurveyResult& result) {
     out += "\nCalibrated:\n";
     for (const survey::ChannelCalibration& each : result.calibrations.channels) out += bullet(each.text);
   }
+  constexpr std::size_t most_causes = 3;  // the page has them all, with their evidence
   std::vector<base::Finding> causes;
   for (const base::Finding& each : result.findings) {
     if (!each.evidence.empty() && each.strength != base::Strength::weak) causes.push_back(each);
   }
-  if (!causes.empty()) out += "\nWhat drives it:\n" + cause_lines(causes, false);
+  if (causes.size() > most_causes) causes.resize(most_causes);
+  if (causes.size() > 1) out += "\nWhat drives it:\n" + cause_headlines(causes);
   std::vector<base::Finding> assumed;
   const auto pick = [&](const std::vector<base::Finding>& findings) {
     for (const base::Finding& each : findings) {

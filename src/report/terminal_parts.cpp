@@ -9,6 +9,16 @@
 
 namespace stillmass::report {
 
+namespace {
+
+std::string headline(const base::Finding& each) {
+  const std::string whose = each.channel.empty() ? "" : each.channel + ": ";
+  return bullet(base::printable(
+      fmt::format("{}{} [{}, {}]", whose, each.text, base::text(each.code).name, base::name(each.strength))));
+}
+
+}  // namespace
+
 std::string heading(const recording::Recording& recording) {
   return fmt::format("{}\n  {}; {} channel{}, {} Hz, {} s{}\n", base::printable(recording.file.string()),
                      base::printable(recording.format), recording.channels.size(),
@@ -34,7 +44,13 @@ std::string finding_lines(const std::vector<base::Finding>& findings, bool with_
   return out;
 }
 
-std::string cause_lines(const std::vector<base::Finding>& findings, bool with_tests) {
+std::string cause_headlines(const std::vector<base::Finding>& findings) {
+  std::string out;
+  for (const base::Finding& each : findings) out += headline(each);
+  return out;
+}
+
+std::string cause_lines(const std::vector<base::Finding>& findings) {
   std::string out;
   for (const base::Finding& each : findings) {
     const auto add = [&](const char* label, const std::vector<std::string>& texts) {
@@ -43,11 +59,8 @@ std::string cause_lines(const std::vector<base::Finding>& findings, bool with_te
         out += "      " + wrapped(base::printable(label + text), screen - 6, 8) + "\n";
       }
     };
-    const std::string whose = each.channel.empty() ? "" : each.channel + ": ";
-    out += bullet(base::printable(
-        fmt::format("{}{} [{}, {}]", whose, each.text, base::text(each.code).name, base::name(each.strength))));
+    out += headline(each);
     add("seen: ", each.evidence);
-    if (!with_tests) continue;
     add("would confirm: ", each.confirm);
     add("would refute: ", each.refute);
   }

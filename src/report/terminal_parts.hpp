@@ -17,7 +17,9 @@ std::string heading(const recording::Recording& recording);
 std::string bullet(const std::string& text);
 /// One bullet a finding; an assumption has no likely cause.
 std::string finding_lines(const std::vector<base::Finding>& findings, bool with_cause = true);
-/// What drives the machine: strength, evidence and, with its tests, what would confirm or refute it.
-std::string cause_lines(const std::vector<base::Finding>& findings, bool with_tests = true);
+/// What drives the machine, one bullet each: finding, code, strength.
+std::string cause_headlines(const std::vector<base::Finding>& findings);
+/// The same with the evidence, and what would confirm or refute each.
+std::string cause_lines(const std::vector<base::Finding>& findings);
 
 }  // namespace stillmass::report

@@ -10,6 +10,16 @@
 
 namespace stillmass::spectral {
 
+namespace {
+
+/// Density of the true spectrum over that measured, from and to.
+base::Interval factors(double dof, double probability) {
+  const double tail = 0.5 * (1.0 - probability);
+  return {dof / numeric::chi_square_quantile(1.0 - tail, dof), dof / numeric::chi_square_quantile(tail, dof)};
+}
+
+}  // namespace
+
 double degrees_of_freedom(const Spectrum& spectrum, std::size_t line) {
   // E|X|^4 = (2 + r^2) (E|X|^2)^2 for Gaussian X with E X^2 of magnitude r E|X|^2: r is the correlation with the mirror
   // image of the line, about 0 and about rate/2.
@@ -31,11 +41,23 @@ base::Answer<base::Interval> density_interval(const Spectrum& spectrum, std::siz
     return base::Refusal{"line-not-given", fmt::format("line {} is not given by the spectrum", line),
                          "take a line between its low limit and half the sampling rate"};
   }
-  const double dof = degrees_of_freedom(spectrum, line);
-  const double tail = 0.5 * (1.0 - probability);
-  const double scaled = dof * spectrum.density[line];
-  return base::Interval{scaled / numeric::chi_square_quantile(1.0 - tail, dof),
-                        scaled / numeric::chi_square_quantile(tail, dof)};
+  const base::Interval around = factors(degrees_of_freedom(spectrum, line), probability);
+  return base::Interval{around.lo * spectrum.density[line], around.hi * spectrum.density[line]};
+}
+
+base::Answer<std::vector<base::Interval>> density_intervals(const Spectrum& spectrum, double probability) {
+  const auto first = density_interval(spectrum, spectrum.first_line, probability);
+  if (!first) return first.refusal();
+  std::vector<base::Interval> all;
+  double dof = 0.0;
+  base::Interval around{0.0, 0.0};
+  for (std::size_t k = spectrum.first_line; k < spectrum.density.size(); ++k) {
+    const double here = degrees_of_freedom(spectrum, k);
+    if (here != dof) around = factors(here, probability);  // the same on all lines but those near the ends
+    dof = here;
+    all.push_back({around.lo * spectrum.density[k], around.hi * spectrum.density[k]});
+  }
+  return all;
 }
 
 base::Answer<base::Interval> amplitude_interval(const Spectrum& spectrum, std::size_t line, double probability) {

@@ -104,3 +104,15 @@ TEST_CASE("peak hold has no interval, nor has a line that is not given, and it i
   CHECK(spectral::amplitude_interval(s, 10).refusal().code == "peak-hold");
   CHECK(spectral::density_interval(Spectrum{}, 0).refusal().code == "no-blocks");
 }
+
+TEST_CASE("the intervals of all lines are those of each") {
+  for (const std::size_t length : {64u, 63u}) {
+    spectral::SpectrumOptions options;
+    options.block_frames = length;
+    const auto s = spectral::averaged_spectrum(tests::noise(4096, 7), 1000.0, base::Quantity::acceleration, options);
+    const auto all = spectral::density_intervals(s);
+    REQUIRE(all);
+    REQUIRE(all->size() == s.density.size());
+    for (std::size_t k = 0; k < all->size(); ++k) CHECK((*all)[k] == *spectral::density_interval(s, k));
+  }
+}

@@ -1,6 +1,7 @@
 #pragma once
 
 #include <cstddef>
+#include <vector>
 
 #include "stillmass/base/answer.hpp"
 #include "stillmass/base/interval.hpp"
@@ -20,6 +21,9 @@ double degrees_of_freedom(const Spectrum& spectrum, std::size_t line);
 /// is even over the line's lobe. Refused: `peak-hold` (the greatest of the blocks estimates no density), `no-blocks`,
 /// `line-not-given` (below first_line, or beyond the last).
 base::Answer<base::Interval> density_interval(const Spectrum& spectrum, std::size_t line, double probability = 0.95);
+
+/// That of every line from `first_line` on, in their order. Refused as above.
+base::Answer<std::vector<base::Interval>> density_intervals(const Spectrum& spectrum, double probability = 0.95);
 
 /// The same of the r.m.s. amplitude that the line shows (sqrt of density times noise bandwidth).
 base::Answer<base::Interval> amplitude_interval(const Spectrum& spectrum, std::size_t line, double probability = 0.95);
