@@ -175,13 +175,15 @@ std::string text(const survey::SurveyResult& result) {
     out += "\nCalibrated:\n";
     for (const survey::ChannelCalibration& each : result.calibrations.channels) out += bullet(each.text);
   }
-  constexpr std::size_t most_causes = 3;  // the page has them all, with their evidence
-  std::vector<base::Finding> causes;
+  // The first cause stands in its line above; the page has them all, with their evidence.
+  constexpr std::size_t most_more = 2;
+  std::vector<base::Finding> more;
   for (const base::Finding& each : result.findings) {
-    if (!each.evidence.empty() && each.strength != base::Strength::weak) causes.push_back(each);
+    if (!each.evidence.empty() && each.strength != base::Strength::weak) more.push_back(each);
   }
-  if (causes.size() > most_causes) causes.resize(most_causes);
-  if (causes.size() > 1) out += "\nWhat drives it:\n" + cause_headlines(causes);
+  if (!more.empty()) more.erase(more.begin());
+  if (more.size() > most_more) more.resize(most_more);
+  if (!more.empty()) out += "\nAlso found:\n" + cause_headlines(more);
   std::vector<base::Finding> assumed;
   const auto pick = [&](const std::vector<base::Finding>& findings) {
     for (const base::Finding& each : findings) {
