@@ -224,7 +224,7 @@ Rows deflection_rows(const std::vector<step::OperatingDeflection>& shapes) {
         continue;
       }
       std::string cell = rounded(at->magnitude.value);
-      if (at->phase) cell += fmt::format(" at {:.0f} deg", at->phase->value * rad_to_deg);
+      if (at->phase) cell += fmt::format(" at {:.0f} deg", std::round(at->phase->value * rad_to_deg) + 0.0);
       if (name == each.shape.reference && each.shape.sign_known) cell = "1 (reference)";
       row.push_back(cell);
     }

@@ -39,7 +39,8 @@ class Harmonics {
         if (reading.chance < best.chance) best = std::move(reading);
       }
     }
-    return best.members.empty() ? best : without_subharmonic(std::move(best), greatest_f);
+    if (best.members.empty()) return best;
+    return with_strong_fundamental(without_subharmonic(std::move(best), greatest_f), greatest_f);
   }
 
  private:
@@ -157,6 +158,26 @@ class Harmonics {
       if (is_needed) continue;
       Reading next = refined(factor * reading.fundamental, factor * reading.u, tones_.free(), greatest_f);
       if (judge(next)) return next;
+    }
+    return reading;
+  }
+
+  /// Where the strongest tone of all stands at a half or a third of the fundamental, it is the fundamental: a shaft's
+  /// 1x with a few of its harmonics (common practice). By chance one tone in as many as there are is the strongest.
+  Reading with_strong_fundamental(Reading reading, double greatest_f) const {
+    for (const int part : {2, 3}) {
+      const double target = reading.fundamental / part;
+      const std::ptrdiff_t at = tones_.nearest(target, reading.u / part);
+      if (at < 0) continue;
+      const auto tone = static_cast<std::size_t>(at);
+      const bool is_strongest = std::all_of(
+          reading.members.begin(), reading.members.end(),
+          [&](const FamilyMember& member) { return tones_.amplitude(member.tone) < tones_.amplitude(tone); });
+      const double reach = widths * std::hypot(tones_.u(tone), reading.u / part);
+      const double by_chance = tones_.chance_of_a_hit(target, reach) / static_cast<double>(tones_.free().size());
+      if (!is_strongest || by_chance > options_.chance) continue;
+      Reading next = refined(tones_.frequency(tone), tones_.u(tone), tones_.free(), greatest_f);
+      if (next.members.size() > reading.members.size() && judge(next)) return next;
     }
     return reading;
   }

@@ -85,6 +85,33 @@ std::optional<Complex> Deflection::ratio() const {
   return std::polar(magnitude.value, phase->value);
 }
 
+DeflectionShape over_the_greatest(DeflectionShape shape) {
+  if (!shape.sign_known || shape.points.empty()) return shape;
+  const Deflection greatest =
+      *std::max_element(shape.points.begin(), shape.points.end(),
+                        [](const Deflection& a, const Deflection& b) { return a.magnitude.value < b.magnitude.value; });
+  if (greatest.point == shape.reference || !greatest.phase) return shape;
+  const double relative = greatest.magnitude.relative().value_or(0.0);
+  for (Deflection& each : shape.points) {
+    if (each.point == greatest.point) {
+      each.magnitude = {1.0, {}, {}, base::Quantity::ratio};
+      each.phase = base::Estimate{0.0, {}, {}, base::Quantity::angle};
+      each.coherence.reset();
+      continue;
+    }
+    const double own = each.magnitude.relative().value_or(0.0);
+    each.magnitude.value /= greatest.magnitude.value;
+    each.magnitude.u = std::hypot(own, relative) * each.magnitude.value;
+    if (each.phase) {
+      each.phase->value = std::remainder(each.phase->value - greatest.phase->value, 2.0 * std::numbers::pi);
+      each.phase->u = std::hypot(each.phase->u.value_or(0.0), greatest.phase->u.value_or(0.0));
+    }
+    if (greatest.coherence) each.coherence = each.coherence.value_or(1.0) * *greatest.coherence;
+  }
+  shape.reference = greatest.point;
+  return shape;
+}
+
 base::Answer<DeflectionShape> joined(std::span<const DeflectionShape> recordings, double tolerance) {
   if (recordings.empty()) throw base::usage_error({}, "no deflection to join", {});
   DeflectionShape shape;

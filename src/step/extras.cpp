@@ -135,7 +135,7 @@ void add_deflections(SpectrumResult& result, const recording::Reader& reader, co
   const auto shapes = spectral::deflections(reader, result.range, frequencies, options, context);
   for (std::size_t i = 0; i < shapes.size(); ++i) {
     if (!shapes[i]) continue;
-    wanted[i].shape = *shapes[i];
+    wanted[i].shape = options.reference ? *shapes[i] : spectral::over_the_greatest(*shapes[i]);
     result.shapes.push_back(std::move(wanted[i]));
   }
 }

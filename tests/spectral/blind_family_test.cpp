@@ -146,6 +146,24 @@ TEST_CASE("no family is explained by a half or a third of its fundamental") {
   CHECK(low <= 0.02 * sets);
 }
 
+TEST_CASE("a strong 1x with 2x, 6x and 12x is a family of 1x, though only 1x itself is odd") {
+  int right = 0;
+  constexpr int sets = 100;
+  for (std::uint64_t c = 0; c < sets; ++c) {
+    List list(119, c);
+    list.add(24.63, 8.0);
+    list.add(49.26, 0.5);
+    list.add(147.78, 1.6);
+    list.add(295.56, 0.1);
+    list.add_random(5);
+    const auto found = list.families();
+    if (found.harmonics.empty()) continue;
+    right += std::abs(found.harmonics.front().fundamental.value - 24.63) < 0.1;
+  }
+  CAPTURE(right);
+  CHECK(right >= 0.9 * sets);
+}
+
 TEST_CASE("half orders are said as such") {
   List list(116);
   for (const int k : {1, 2, 3, 4}) list.add(24.8 * k, 1.0 / k);

@@ -389,3 +389,26 @@ TEST_CASE("a faulty request for deflections is refused before any sample is read
   CHECK_THROWS_AS(with({24.63}, {}, alone), base::Error);
   CHECK_THROWS_AS(with({24.63}, {.wander = std::numeric_limits<double>::quiet_NaN()}, reader), base::Error);
 }
+
+TEST_CASE("a shape over its greatest point keeps every ratio, and its uncertainties join") {
+  spectral::DeflectionShape shape;
+  shape.reference = "a";
+  const auto point = [](const char* name, double magnitude, double u, double phase, std::optional<double> coherence) {
+    spectral::Deflection d;
+    d.point = name;
+    d.magnitude = {magnitude, u, {}, base::Quantity::ratio};
+    d.phase = base::Estimate{phase, magnitude > 0.0 ? u / magnitude : 0.0, {}, base::Quantity::angle};
+    d.coherence = coherence;
+    return d;
+  };
+  shape.points = {point("a", 1.0, 0.0, 0.0, {}), point("b", 4.0, 0.04, 2.0, 0.9), point("c", 2.0, 0.04, -3.0, 0.8)};
+  const auto over = spectral::over_the_greatest(shape);
+  CHECK(over.reference == "b");
+  for (std::size_t i = 0; i < 3; ++i) {
+    CHECK(std::abs(*over.points[i].ratio() - *shape.points[i].ratio() / *shape.points[1].ratio()) < 1e-12);
+  }
+  CHECK(*over.points[0].magnitude.u == Approx(0.25 * 0.01));  // 0 and 1 %
+  CHECK(*over.points[2].magnitude.u == Approx(0.5 * std::hypot(0.02, 0.01)));
+  CHECK(*over.points[2].coherence == Approx(0.72));
+  CHECK_FALSE(over.points[1].coherence);
+}

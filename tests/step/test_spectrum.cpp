@@ -176,7 +176,7 @@ TEST_CASE("the worst point, the plant's limits and the phase between two channel
   REQUIRE(result.shapes.size() == 1);
   const auto& shape = result.shapes.front().shape;
   CHECK(result.shapes.front().name == "1x");
-  CHECK(shape.reference == "fan-h");
+  CHECK(shape.reference == "fan-h");  // it moves most
   const auto at = std::find_if(shape.points.begin(), shape.points.end(),
                                [](const spectral::Deflection& point) { return point.point == "fan-v"; });
   REQUIRE(at != shape.points.end());

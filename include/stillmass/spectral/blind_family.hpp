@@ -56,9 +56,10 @@ struct Families {
 /// prediction; at least `line_hz` / 20). The least surprising explanation by chance (binomial, local density of tones,
 /// times the number of fundamentals tried) wins, is refined, and its tones are taken out before the next is looked for.
 /// A fundamental at 1/2, 1/3, ... of another is kept only where at least two members need it and chance does not
-/// explain them. Side bands: spacings f_j - f_i tried on every carrier stronger than the tones beside it; a spacing
-/// counts over all carriers that show it. A run of harmonics is not its own side bands: such a carrier must stand apart
-/// from the low harmonics. Cost: of the order of n^2 greatest; 200 tones take milliseconds.
+/// explain them, or where the strongest tone of all stands there. Side bands: spacings f_j - f_i tried on every carrier
+/// stronger than the tones beside it; a spacing counts over all carriers that show it. A run of harmonics is not its
+/// own side bands: such a carrier must stand apart from the low harmonics. Cost: of the order of n^2 greatest; 200
+/// tones take milliseconds.
 Families families(std::span<const Tone> tones, double line_hz, const FamilyOptions& options = {});
 
 }  // namespace stillmass::spectral

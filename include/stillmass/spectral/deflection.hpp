@@ -103,6 +103,11 @@ std::vector<base::Answer<DeflectionShape>> deflections(const recording::Reader& 
                                                        std::span<const double> frequencies_hz,
                                                        const DeflectionOptions& options, const base::Context& context);
 
+/// The same shape as ratios to its point of the greatest magnitude: what was 1 there is 1 here. u: of both ratios. The
+/// coherence of a point with the new reference is taken as the product of both with the old one. A shape without phases
+/// is as it was.
+DeflectionShape over_the_greatest(DeflectionShape shape);
+
 /// One or more sensors moved from point to point against a reference that stayed: the shapes of the recordings as one.
 /// The ratio to the reference is free of a changing level. A point measured more than once is the weighted mean, with
 /// the greater of the inner and outer uncertainty. Refused: `references-differ`, `frequencies-differ` (more than
