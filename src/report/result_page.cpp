@@ -76,7 +76,7 @@ Page page(const Envelope& envelope, const step::SpectrumResult& result, const Sp
       out.lines.push_back({"Strongest line", fmt::format("{}: {}", with_u(strongest->peaks.front().tone.frequency),
                                                          strongest->peaks.front().cause.text)});
       if (!result.causes.empty()) {
-        out.lines.push_back({"Cause", result.causes.front().text, Tone::neutral});
+        out.lines.push_back({"Cause", cause_sentence(result.causes.front()), Tone::neutral});
       }
     }
   }

@@ -146,6 +146,12 @@ std::string sentence(const base::Finding& finding) {
                      code.likely_cause, code.next_step);
 }
 
+std::string cause_sentence(const base::Finding& finding) {
+  std::string name(base::text(finding.code).name);
+  std::replace(name.begin(), name.end(), '-', ' ');
+  return fmt::format("{} ({}): {}", name, base::name(finding.strength), finding.text);
+}
+
 Shortened shortened(const std::vector<base::Finding>& findings) {
   constexpr std::size_t most = 3;
   Shortened out;

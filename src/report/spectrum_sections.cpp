@@ -90,11 +90,8 @@ std::vector<Block> cause_blocks(const std::vector<base::Finding>& causes) {
   std::vector<Block> blocks;
   for (const base::Finding& each : causes) {
     if (each.evidence.empty()) continue;
-    const base::CodeText& code = base::text(each.code);
-    std::string heading = fmt::format("{}, {}", code.seen, base::name(each.strength));
-    if (!each.channel.empty()) heading += " (" + each.channel + ")";
-    blocks.emplace_back(
-        Caution{each.strength == base::Strength::weak ? Tone::neutral : Tone::caution, heading, ended(each.text)});
+    blocks.emplace_back(Caution{each.strength == base::Strength::weak ? Tone::neutral : Tone::caution, each.channel,
+                                ended(cause_sentence(each))});
     Details details;
     details.summary = "Evidence, and what would confirm or refute it";
     const auto add = [&](const char* label, const std::vector<std::string>& items) {

@@ -100,7 +100,7 @@ Line severity_line(const survey::SurveyResult& result) {
 Line cause_line(const survey::SurveyResult& result) {
   for (const base::Finding& finding : result.findings) {
     if (finding.evidence.empty()) continue;  // what is assumed on the way
-    return {"Cause", fmt::format("{} ({})", finding.text, base::name(finding.strength)), Tone::neutral};
+    return {"Cause", cause_sentence(finding), Tone::neutral};
   }
   return {"Cause", "no cause stands out of these recordings", Tone::caution};
 }

@@ -12,9 +12,7 @@ namespace stillmass::report {
 namespace {
 
 std::string headline(const base::Finding& each) {
-  const std::string whose = each.channel.empty() ? "" : each.channel + ": ";
-  return bullet(base::printable(
-      fmt::format("{}{} [{}, {}]", whose, each.text, base::text(each.code).name, base::name(each.strength))));
+  return bullet(base::printable((each.channel.empty() ? "" : each.channel + ": ") + cause_sentence(each)));
 }
 
 }  // namespace

@@ -262,6 +262,60 @@ def demo():
     claim("a question that the data cannot answer: exit 1 and what to measure", done.returncode == 1 and done.stdout != b"", done)
 
 
-{"help": help_, "usage": usage, "broken": broken, "outputs": outputs, "threads": threads, "stop": stop, "streams": streams, "demo": demo}[sys.argv[3]]()
+def spectrum_options():
+    """Each option of `spectrum` changes what it says it changes."""
+    duty, survey = str(recording("steady")), ("--survey", SURVEY)
+
+    def result(*words):
+        done = run("spectrum", *words, "--json", "-", "--quiet")
+        claim(f"spectrum {words} runs", done.returncode == 0, done)
+        return json.loads(done.stdout or b"{}").get("result", {}) if done.returncode == 0 else {"channels": [{}]}
+
+    def says(word, *words):
+        done = run("spectrum", *words)
+        claim(f"spectrum {words[1:]} says {word!r}", done.returncode == 0 and word in done.stdout, done)
+
+    plain = result(duty, *survey)
+    first = plain["channels"][0]
+    claim("the survey's background is used", first["background"]["share"]["value"] < 0.05)
+    claim("the neighbour's line is background", any(p["cause"] == "background" and abs(p["frequency"]["value"] - 16.63) < 0.05 for p in first["peaks"]))
+    claim("the blocks have their reason", plain["lines_chosen"]["reason"] == "separation")
+    claim("the speed is found", abs(plain["speed"]["value"] - 1478) < 1)
+    alone = result(duty)
+    claim("without a survey no zone and no force", alone["channels"][0]["severity"] is None and alone["forcing"] == [])
+    named = result(duty, "--speed", "1480")
+    claim("a speed by hand names the orders", any(p["cause"] == "1x" for p in named["channels"][0]["peaks"]))
+    ranged = result(duty, "--speed", "1400:1500")
+    claim("a range of speeds too", abs(ranged["speed"]["value"] - 1478) < 1)
+    peak, both = (result(duty, *survey, "--detector", d)["channels"][0]["overall"]["value"] for d in ("peak", "peak-to-peak"))
+    claim("peak is sqrt 2, peak-to-peak 2 sqrt 2 of r.m.s.", abs(peak / first["overall"]["value"] - 2**0.5) < 1e-9 and abs(both / peak - 2) < 1e-9)
+    claim("acceleration has no low limit", result(duty, "--quantity", "acceleration")["channels"][0]["low_limit_hz"] is None)
+    claim("so many lines as asked for", abs(result(duty, "--lines", "800", "--max-frequency", "400")["resolution_hz"] - 0.5) < 0.02)
+    claim("an exponential average is worth what it says", 20 < result(duty, "--average", "exponential", "--averages", "16", "--overlap", "0", "--resolution", "2")["effective_averages"] < 32)
+    says(b"peak hold", duty, "--average", "peak-hold")
+    says(b"31.5 Hz", duty, "--third-octaves")
+    says(b"(mm/s)", duty, "--density")
+    says(b"no envelope: ", duty, "--envelope", "auto")
+    says(b"envelope of 500 to 1500 Hz", duty, "--envelope", "500:1500")
+    says(b"Not answered", duty, "--reference", "nobody")
+    says(b"Not answered", duty, "--average", "synchronous")
+    coast = str(recording("coastdown"))
+    says(b"repeats with the shaft", coast, *survey, "--average", "synchronous", "--to", "8")
+    claim("a reference by name", all(d["reference"] == "motor-de-h" for d in result(duty, *survey, "--reference", "motor-de-h")["deflections"]))
+    with tempfile.TemporaryDirectory() as folder:
+        done = run("spectrum", duty, *survey, "--zoom", "90:110", "--csv", folder + "/csv", "--html", folder + "/z.html", "--quiet")
+        names = {each.name for each in pathlib.Path(folder, "csv").iterdir()} if done.returncode == 0 else set()
+        claim("zoom, third octaves and deflections have files", {"zoom-pump-de-h.csv", "third-octaves-pump-de-h.csv", "deflections.csv"} <= names, done)
+        lines = pathlib.Path(folder, "csv/zoom-pump-de-h.csv").read_text(encoding="utf-8").splitlines()
+        claim("the zoom's lines are finer than a fiftieth of a hertz", float(lines[2].split(",")[0]) - float(lines[1].split(",")[0]) < 0.02)
+        header = pathlib.Path(folder, "csv/spectrum-pump-de-h.csv").read_text(encoding="utf-8").splitlines()
+        low, high = (float(cell) for cell in header[100].split(",")[3:5])
+        claim("each line has its interval", 0 < low < float(header[100].split(",")[2]) < high)
+    refused("a band that is not there", 2, "spectrum", duty, "--zoom", "5000:6000")
+    refused("an envelope that does not fit", 2, "spectrum", duty, "--envelope", "1500:9000")
+    refused("a background that is not there", 3, "spectrum", duty, "--background", "nowhere.wav", text=b"nowhere.wav")
+
+
+{"spectrum": spectrum_options, "help": help_, "usage": usage, "broken": broken, "outputs": outputs, "threads": threads, "stop": stop, "streams": streams, "demo": demo}[sys.argv[3]]()
 print("\n".join(faults))
 sys.exit(1 if faults else 0)

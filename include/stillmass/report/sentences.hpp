@@ -26,6 +26,8 @@ std::string sentence(const absorber::Reason& reason);
 std::string sentence(const absorber::Remedy& remedy);
 /// Seen, likely cause, what to do: one line.
 std::string sentence(const base::Finding& finding);
+/// What drives the machine: "unbalance (fair): 1x at 24.63 Hz ...".
+std::string cause_sentence(const base::Finding& finding);
 /// At most three findings of one code, and how many more there are of each: a list that can be read.
 struct Shortened {
   std::vector<base::Finding> findings;
