@@ -62,6 +62,10 @@ base::Answer<std::optional<machine::Support>> support_of(const SpectrumRequest& 
 
 base::Answer<Severity> severity_of(const ChannelSpectrum& channel, const SpectrumRequest& request,
                                    const spectral::Spectrum& velocity, const std::optional<Estimate>& forcing_1x) {
+  if (!request.runs_steadily) {
+    return Refusal{"limit-unknown", "the recording is not of the machine running steadily",
+                   "record the running machine for a minute at its usual load"};
+  }
   if (!request.site.machine) {
     return Refusal{"limit-unknown", "nothing is said of the machine", "give --survey with [machine] and [limit]"};
   }
@@ -143,6 +147,7 @@ void judge_channel(ChannelSpectrum& channel, const SpectrumRequest& request,
   channel.severity = severity_of(channel, request, velocity, forcing_1x);
   const SitePoint* point = request.site.point(channel.channel.point);
   if (!channel.severity_velocity || !channel.channel.unit_known || point == nullptr) return;
+  if (!request.runs_steadily) return;
   const bool wanted = request.site.standard == typical_standard || request.site.standard.empty();
   if (!channel.severity && point->on_bearing_housing && wanted) {
     channel.typical = machine::against_ranges(machine::typical_ranges(), *channel.severity_velocity);
