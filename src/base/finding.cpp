@@ -117,9 +117,14 @@ constexpr auto codes = std::to_array<CodeText>({
      "cavitation or recirculation in the pump", "compare suction pressure and flow with the pump's curve"},
     {Code::soft_foot, "soft-foot", "motion at running speed along one direction, with an electrical line",
      "a foot that does not rest flat, or a frame under strain", "measure the motion of each foot"},
+    {Code::speed_varies, "speed-varies", "the speed changes within the recording",
+     "a run-up, a drive that follows its process, or a load that sways",
+     "use the steady part (--from, --to), or record a tacho and use runup"},
+    {Code::single_shocks, "single-shocks", "single shocks make the signal",
+     "a hammer test, or a sensor that was touched", "use bump for blows; record the running machine for its spectrum"},
 });
 
-static_assert(codes.size() == static_cast<std::size_t>(Code::soft_foot) + 1);
+static_assert(codes.size() == static_cast<std::size_t>(Code::single_shocks) + 1);
 
 }  // namespace
 

@@ -20,8 +20,9 @@ constexpr std::string_view every = "check spectrum runup bump absorber survey si
 constexpr auto options = std::to_array<Option>({
     {"--survey", "FILE", Rule::file, false, "take channels, machine and limits from this survey file", recordings},
     {"--channel", "INDEX=NAME[:UNIT[*SCALE]]", Rule::channel, true,
-     "name, unit and scale of a channel; INDEX from 1, a time column not counted; UNIT one of g, m/s2, mm/s, m/s, um, "
-     "mm, m, N, V, 1, tacho; SCALE in units per 1.0 of the stored sample (full scale of an integer file)",
+     "name, unit and scale of a channel; INDEX from 1, a time column not counted; UNIT one of g, m/s2, mm/s, m/s, "
+     "in/s, um, "
+     "mm, m, mil, N, lbf, V, 1, tacho; SCALE in units per 1.0 of the stored sample (full scale of an integer file)",
      recordings},
     {"--rate", "HZ", Rule::positive, false, "sampling rate of a text file without a time column", recordings},
     {"--separator", "comma|semicolon|tab|blanks", Rule::choice, false,

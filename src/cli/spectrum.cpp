@@ -1,7 +1,9 @@
 #include "stillmass/step/spectrum.hpp"
 
+#include <algorithm>
 #include <memory>
 
+#include "stillmass/base/error.hpp"
 #include "stillmass/base/number.hpp"
 #include "stillmass/report/result_csv.hpp"
 #include "stillmass/report/result_json.hpp"
@@ -26,6 +28,16 @@ void take_speed(const std::string& text, step::SpectrumRequest& request) {
     request.speed_hz.reset();
   } else {
     request.speed_hz = *base::parse_number(text) * per_minute;
+  }
+}
+
+// Options that contradict each other or do nothing beside each other.
+void check_together(const Arguments& arguments) {
+  if (arguments.has("--averages") && arguments.text("--average") != "exponential") {
+    throw base::usage_error("--averages", "goes with --average exponential only", "leave it out");
+  }
+  if (arguments.has("--lines") && arguments.has("--resolution")) {
+    throw base::usage_error("--lines", "and --resolution both say how far lines are apart", "give one of them");
   }
 }
 
@@ -79,7 +91,14 @@ step::SpectrumRequest request_from(const Session& session, const std::string& fi
 
 // The recording of the stopped machine: as named, else that of the survey.
 std::string background_file(const Session& session, const std::string& file) {
-  if (const auto named = session.arguments().text("--background")) return *named;
+  if (const auto named = session.arguments().text("--background")) {
+    const survey::SurveyRecording* known = session.survey() ? session.entry(*named) : nullptr;
+    if (known != nullptr && known->kind != survey::Kind::background) {
+      throw base::usage_error(*named, "is not of kind \"background\" in the survey file",
+                              "name a recording of the stopped machine");
+    }
+    return *named;
+  }
   if (!session.survey()) return {};
   const survey::SurveyRecording* entry = session.entry(file);
   if (entry == nullptr || entry->kind != survey::Kind::steady || !entry->running) return {};
@@ -92,6 +111,7 @@ std::string background_file(const Session& session, const std::string& file) {
 }  // namespace
 
 int run_spectrum(Session& session) {
+  check_together(session.arguments());
   const std::string& file = session.arguments().files.front();
   const auto reader = session.open(file);
   step::SpectrumRequest request = request_from(session, file);
@@ -107,7 +127,10 @@ int run_spectrum(Session& session) {
   const report::Envelope envelope = session.envelope();
   session.write({[&] { return report::json(envelope, result); }, [&] { return report::csv(result); },
                  [&] { return report::page(envelope, result, view); }});
-  return done;
+  const bool is_answered = session.arguments().text("--average") != "synchronous" ||
+                           std::any_of(result.channels.begin(), result.channels.end(),
+                                       [](const auto& each) { return each.synchronous.has_value(); });
+  return is_answered ? done : not_answered;
 }
 
 }  // namespace stillmass::cli

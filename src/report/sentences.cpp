@@ -184,13 +184,15 @@ std::string uncertainty_note(const step::SpectrumResult& result) {
     any = any || each.channel.factor_u;
     if (!each.channel.factor_u) without += (without.empty() ? "" : ", ") + each.channel.name;
   }
-  if (without.empty()) return "+- is the standard uncertainty, that of the sensors' calibration included.";
+  const std::string clock = " The recorder's clock comes on top of frequencies (usually below 0.005 %).";
+  if (without.empty()) return "+- is the standard uncertainty, that of the sensors' calibration included." + clock;
   if (any) {
     return "+- is the standard uncertainty, that of the sensor's calibration included but for " + without +
-           ", where it comes on top (usually 2 to 5 %).";
+           ", where it comes on top (usually 2 to 5 %; a zone counts 2 %)." + clock;
   }
-  return "+- is the standard uncertainty from this recording; the sensor's calibration comes on top (usually 2 to 5 "
-         "%).";
+  return "+- is the standard uncertainty from this recording; the sensor's calibration comes on top (usually 2 to 5 %; "
+         "a zone counts 2 %)." +
+         clock;
 }
 
 std::string sentence(const base::Refusal& refusal) {

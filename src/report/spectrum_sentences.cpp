@@ -115,8 +115,8 @@ std::vector<std::string> judgements(const step::ChannelSpectrum& channel) {
   }
   if (channel.background) {
     const spectral::BackgroundLevel& each = *channel.background;
-    std::string text = fmt::format("background {} r.m.s., {} % of the running level",
-                                   velocity_text(each.background.value), rounded(each.share.value * 100.0, 2));
+    std::string text = fmt::format("background {} mm/s r.m.s., {} % of the running level",
+                                   rounded(each.background.value * 1e3), rounded(each.share.value * 100.0, 2));
     if (each.machine) {
       text += fmt::format("; without it {}", with_u(*each.machine, 1e3, "mm/s"));
     } else {
@@ -149,6 +149,7 @@ std::string cause_text(const step::SpectralPeak& peak) {
 }
 
 std::vector<std::string> family_sentences(const step::SpectrumResult& result) {
+  constexpr std::size_t most_families = 4;  // the JSON result has them all
   std::vector<std::string> out;
   for (const spectral::HarmonicFamily& family : result.families.harmonics) {
     std::string text = fmt::format("harmonics of {}: {}", with_u(family.fundamental), numbers_text(family.members));
@@ -157,7 +158,14 @@ std::vector<std::string> family_sentences(const step::SpectrumResult& result) {
     }
     out.push_back(text);
   }
+  std::size_t sides = 0;
   for (const spectral::SideBandFamily& family : result.families.side_bands) {
+    const auto is_member = [&](const spectral::FamilyMember& member) { return member.tone == family.carrier; };
+    if (family.spacing_of) {  // of a harmonic: the family above has said it
+      const auto& members = result.families.harmonics[*family.spacing_of].members;
+      if (std::any_of(members.begin(), members.end(), is_member)) continue;
+    }
+    if (++sides > most_families) break;
     out.push_back(fmt::format("side bands of {} Hz, {} apart: {}",
                               rounded(result.tones[family.carrier].frequency.value, 4), with_u(family.spacing),
                               numbers_text(family.members)));
@@ -193,6 +201,31 @@ Rows peak_rows(const step::SpectrumResult& result, const step::ChannelSpectrum& 
     }
     row.push_back(cause_text(peak));
     out.rows.push_back(row);
+  }
+  return out;
+}
+
+std::string zoom_sentence(const step::ChannelSpectrum& channel) {
+  const spectral::ZoomSpectrum& zoom = *channel.zoom;
+  return fmt::format("zoom {} to {} Hz, lines {} Hz apart, {} block{}; its highest lines:", plain(zoom.band_hz.lo),
+                     plain(zoom.band_hz.hi), plain(zoom.line_hz, 3), zoom.blocks, zoom.blocks == 1 ? "" : "s");
+}
+
+Rows zoom_rows(const step::SpectrumResult& result, const step::ChannelSpectrum& channel) {
+  constexpr std::size_t most = 6;
+  const spectral::ZoomSpectrum& zoom = *channel.zoom;
+  const base::Unit unit = base::trade_unit(zoom.quantity);
+  const double factor = base::from_rms(result.detector) / unit.to_si;
+  std::vector<std::size_t> peaks;
+  for (std::size_t k = 1; k + 1 < zoom.density.size(); ++k) {
+    if (zoom.density[k] >= zoom.density[k - 1] && zoom.density[k] > zoom.density[k + 1]) peaks.push_back(k);
+  }
+  std::stable_sort(peaks.begin(), peaks.end(), [&](auto a, auto b) { return zoom.density[a] > zoom.density[b]; });
+  if (peaks.size() > most) peaks.resize(most);
+  Rows out{{"line", std::string(base::name(result.detector)) + " of the line"}, {}};
+  for (const std::size_t k : peaks) {
+    out.rows.push_back({fmt::format("{} Hz", plain(zoom.frequency(k))),
+                        fmt::format("{} {}", rounded(zoom.amplitude_rms(k) * factor), unit.name)});
   }
   return out;
 }

@@ -31,6 +31,9 @@ struct Rows {
   std::vector<std::vector<std::string>> rows;
 };
 Rows peak_rows(const step::SpectrumResult& result, const step::ChannelSpectrum& channel, bool density);
+/// Band and lines of a zoom, and its highest lines.
+std::string zoom_sentence(const step::ChannelSpectrum& channel);
+Rows zoom_rows(const step::SpectrumResult& result, const step::ChannelSpectrum& channel);
 Rows envelope_rows(const step::EnvelopeResult& envelope);
 /// Points against frequencies: "1.00 at 0 deg".
 Rows deflection_rows(const std::vector<step::OperatingDeflection>& shapes);

@@ -30,7 +30,11 @@ std::string channel_text(const step::SpectrumResult& result, const step::Channel
   for (const std::string& each : judgements(channel)) out += indented(each);
   if (const std::string features = features_sentence(channel); !features.empty()) out += indented(features);
   const Rows peaks = peak_rows(result, channel, view.density);
-  out += peaks.rows.empty() ? "  no line stands out of the noise\n" : table(peaks);
+  const bool is_searched = channel.measured.averaging != spectral::Averaging::peak_hold;
+  const char* nothing =
+      is_searched ? "  no line stands out of the noise\n" : "  a peak hold is not searched for lines\n";
+  out += peaks.rows.empty() ? nothing : table(peaks);
+  if (channel.zoom) out += indented(zoom_sentence(channel)) + table(zoom_rows(result, channel));
   if (channel.synchronous) {
     const rotation::SynchronousAverage& average = *channel.synchronous;
     std::string text = fmt::format("synchronous average of {} blocks of {} turn{}", average.blocks,

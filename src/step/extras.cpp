@@ -6,6 +6,7 @@
 
 #include <fmt/format.h>
 
+#include "stillmass/base/error.hpp"
 #include "stillmass/base/number.hpp"
 #include "stillmass/spectral/quantity.hpp"
 
@@ -41,6 +42,29 @@ std::vector<spectral::Tone> tones_of(const std::vector<SpectralPeak>& peaks) {
 void mark(std::vector<SpectralPeak>& peaks, const std::vector<spectral::Tone>& background, double line_hz) {
   for (const spectral::BackgroundTone& each : spectral::background_tones(tones_of(peaks), background, line_hz)) {
     peaks[each.running].background = each;
+  }
+}
+
+// Lines enough below and above a frequency for the ratios at its line and the noise beside it.
+bool has_room(double frequency_hz, const SpectrumResult& result) {
+  const double side = 2.0 * spectral::lobe_bins(result.options.window) + 2.0;
+  const double place = frequency_hz / result.choice.line_hz;
+  return place > side && place < 0.5 * static_cast<double>(result.choice.length) - side;
+}
+
+// Lines of an envelope at multiples of a bearing's frequency that stands there itself.
+void name_multiples(std::vector<EnvelopePeak>& peaks, const std::vector<machine::Forcing>& forcing, double line_hz) {
+  for (const EnvelopePeak& first : peaks) {
+    if (!first.cause.forcing) continue;
+    const machine::Forcing& force = forcing[*first.cause.forcing];
+    if (force.kind != machine::ForcingKind::bearing || force.harmonic != 1) continue;
+    for (EnvelopePeak& other : peaks) {
+      if (other.cause.text != machine::unexplained) continue;
+      const double number = std::round(other.tone.frequency.value / first.tone.frequency.value);
+      const double off = std::abs(other.tone.frequency.value - number * first.tone.frequency.value);
+      if (number < 2.0 || off > std::max(line_hz, 3.0 * number * first.tone.frequency.u.value_or(0.0))) continue;
+      other.cause.text = fmt::format("{:.0f}x {}", number, force.name);
+    }
   }
 }
 
@@ -93,9 +117,8 @@ void add_deflections(SpectrumResult& result, const recording::Reader& reader, co
     if (!reference.empty() && (channel.name == reference || channel.point == reference)) options.reference = c;
   }
   if (!reference.empty() && !options.reference) {
-    result.refusals.push_back({"no-reference", "no channel of motion is called '" + reference + "'",
-                               "name a point or channel of this recording"});
-    return;
+    throw base::usage_error(result.recording.file.string(), "no channel of motion is called '" + reference + "'",
+                            "name a point or channel of this recording");
   }
   if (moving < 2) {
     if (!reference.empty()) {
@@ -123,7 +146,7 @@ void add_deflections(SpectrumResult& result, const recording::Reader& reader, co
     const bool is_near = std::any_of(frequencies.begin(), frequencies.end(), [&](double other) {
       return std::abs(other - frequency) < 4.0 * result.choice.line_hz;
     });
-    if (is_near || frequencies.size() == most_shapes) continue;
+    if (is_near || frequencies.size() == most_shapes || !has_room(frequency, result)) continue;
     OperatingDeflection each;
     each.name = peak->cause.forcing ? result.forcing[*peak->cause.forcing].name
                                     : fmt::format("{} Hz", base::rounded(frequency, 4));
@@ -174,6 +197,7 @@ void add_envelopes(SpectrumResult& result, const recording::Reader& reader, cons
         each.peaks.push_back({tones[t], spectral::modulation_depth(*each.envelope, tones[t]), causes[t]});
       }
     }
+    if (each.envelope) name_multiples(each.peaks, result.forcing, each.envelope->spectrum.line_hz);
     whose[i]->envelope = std::move(each);
   }
 }

@@ -16,6 +16,7 @@ using spectral::ToneCluster;
 
 constexpr std::size_t most_suspects = 6;   // of a channel, the strongest
 constexpr double swings = 0.2;             // of the amplitude: it is said before the wander of the frequency
+constexpr double told = 0.3;               // lines of the stretch: less wander is not said
 constexpr double least_prominence = 30.0;  // weaker ones are not worth a second look
 
 struct Suspect {
@@ -36,6 +37,7 @@ std::string note_of(const ToneCluster& cluster) {
       if (cluster.variation && *cluster.variation > swings) {
         return fmt::format("its amplitude varies by {} % r.m.s.", base::rounded(*cluster.variation * 100.0, 2));
       }
+      if (cluster.wander_hz && *cluster.wander_hz * cluster.stretch_s < told) return "";
       if (cluster.wander_hz) return fmt::format("wanders by {} Hz r.m.s.", base::rounded(*cluster.wander_hz, 2));
       return "unsteady";
     case Closeness::single:
@@ -84,7 +86,7 @@ std::vector<std::vector<FineTone>> fine_tones(const recording::Reader& reader, r
       const auto suspect = std::find_if(suspects.begin(), suspects.end(),
                                         [&](const Suspect& each) { return each.of == i && each.tone == t; });
       if (suspect == suspects.end()) {
-        out[i].push_back({tone, Closeness::none, {}, spectra[i]->line_hz});
+        out[i].push_back({tone, Closeness::none, {}, {}, spectra[i]->line_hz});
         continue;
       }
       const ToneCluster& measured = clusters[static_cast<std::size_t>(suspect - suspects.begin())];
@@ -95,17 +97,31 @@ std::vector<std::vector<FineTone>> fine_tones(const recording::Reader& reader, r
               : measured;
       if (cluster.closeness == Closeness::resolved) {
         for (const spectral::CloseTone& close : cluster.tones) {
-          out[i].push_back({part_of_peak(tone, close), cluster.closeness, note_of(cluster), cluster.least_spacing_hz});
+          out[i].push_back(
+              {part_of_peak(tone, close), cluster.closeness, note_of(cluster), {}, cluster.least_spacing_hz});
         }
       } else {
         const bool wanders = cluster.closeness == Closeness::unsteady && !cluster.tones.empty();
         out[i].push_back({wanders ? part_of_peak(tone, cluster.tones.front()) : tone, cluster.closeness,
-                          note_of(cluster), spectra[i]->line_hz});
+                          note_of(cluster), wanders ? cluster.wander_hz : std::nullopt, spectra[i]->line_hz});
       }
     }
     std::stable_sort(out[i].begin(), out[i].end(), [](const FineTone& a, const FineTone& b) {
       return a.tone.amplitude_rms.value > b.tone.amplitude_rms.value;
     });
+  }
+  return out;
+}
+
+std::vector<std::vector<spectral::CloseTone>> tones_within(const recording::Reader& reader, recording::FrameRange range,
+                                                           const std::vector<std::size_t>& channels,
+                                                           base::Interval band_hz, const base::Context& context) {
+  std::vector<spectral::CloseBand> bands;
+  for (const std::size_t channel : channels) bands.push_back({channel, band_hz});
+  std::vector<std::vector<spectral::CloseTone>> out;
+  for (const ToneCluster& cluster : spectral::resolve_tones(reader, range, bands, context)) {
+    const bool are_tones = cluster.closeness == Closeness::resolved || cluster.closeness == Closeness::single;
+    out.push_back(are_tones ? cluster.tones : std::vector<spectral::CloseTone>{});
   }
   return out;
 }

@@ -17,6 +17,7 @@ struct FineTone {
   spectral::Tone tone;
   spectral::Closeness closeness = spectral::Closeness::none;
   std::string note;
+  std::optional<double> wander_hz{};
   double resolution_hz = 0.0;  ///< tones closer than this are one
 };
 
@@ -26,5 +27,11 @@ std::vector<std::vector<FineTone>> fine_tones(const recording::Reader& reader, r
                                               const std::vector<ChannelTones>& all,
                                               const std::vector<const spectral::Spectrum*>& spectra,
                                               const base::Context& context);
+
+/// Steady tones in a band of each of those channels (of the recording), found with its whole length; in the quantity of
+/// the channel.
+std::vector<std::vector<spectral::CloseTone>> tones_within(const recording::Reader& reader, recording::FrameRange range,
+                                                           const std::vector<std::size_t>& channels,
+                                                           base::Interval band_hz, const base::Context& context);
 
 }  // namespace stillmass::step

@@ -18,6 +18,7 @@ using base::Refusal;
 
 constexpr Interval severity_band{10.0, 1000.0};
 constexpr Interval slow_severity_band{2.0, 1000.0};
+constexpr double low_end_missing = 1.1;  // of the band's lower end: further up the level is no longer that of the band
 constexpr std::int64_t cut_samples = 3;  // at full scale: the channel is unusable (as `check` has it)
 constexpr std::string_view typical_standard = "ISO 20816-1";
 
@@ -140,10 +141,13 @@ void judge_channel(ChannelSpectrum& channel, const SpectrumRequest& request,
     channel.severity = Refusal{"limit-unknown", "the channel is not a vibration", ""};
     return;
   }
-  const spectral::Spectrum velocity = in_quantity(channel.measured, Quantity::velocity);
-  if (auto value = level(velocity, standard_band(request.site))) {
-    channel.severity_velocity = with_calibration(*value, channel.channel);
+  if (channel.measured.averaging == spectral::Averaging::peak_hold) {
+    channel.severity = Refusal{"limit-unknown", "a peak hold has no r.m.s. level", "average the mean of the squares"};
+    return;
   }
+  const spectral::Spectrum velocity = in_quantity(channel.measured, Quantity::velocity);
+  const Interval band = standard_band(request.site);
+  if (auto value = level(velocity, band)) channel.severity_velocity = with_calibration(*value, channel.channel);
   channel.severity = severity_of(channel, request, velocity, forcing_1x);
   const SitePoint* point = request.site.point(channel.channel.point);
   if (!channel.severity_velocity || !channel.channel.unit_known || point == nullptr) return;
@@ -152,6 +156,7 @@ void judge_channel(ChannelSpectrum& channel, const SpectrumRequest& request,
   if (!channel.severity && point->on_bearing_housing && wanted) {
     channel.typical = machine::against_ranges(machine::typical_ranges(), *channel.severity_velocity);
   }
+  if (held(velocity, band)->lo > low_end_missing * band.lo) return;
   channel.plant = machine::against_plant(request.site.plant, *channel.severity_velocity);
 }
 

@@ -23,6 +23,8 @@ using base::Interval;
 using base::Quantity;
 
 constexpr std::size_t most_tones = 60;      // of a channel: for causes and families
+constexpr double coarse = 0.25;             // of the speed: lines so far apart do not show it
+constexpr double shocks_kurtosis = 20.0;    // single blows, not a running machine (common practice)
 constexpr std::int64_t full_scale_run = 3;  // samples at full scale that make a finding (as `check` has it)
 
 // What is known of the machine, with the speed of this recording.
@@ -74,6 +76,13 @@ void measure(SpectrumResult& result, const recording::Reader& reader, const Spec
             each.measured, channel, request.site.machine ? request.site.machine->line_frequency_hz : std::nullopt);
       }
     }
+    if (each.features.kurtosis.value_or(0.0) > shocks_kurtosis && channel.role == recording::Role::vibration) {
+      each.findings.push_back(
+          {base::Code::single_shocks,
+           fmt::format("kurtosis {:.3g}: single shocks make the signal, averaged levels mean little",
+                       *each.features.kurtosis),
+           channel.name});
+    }
     if (each.features.deviation == 0.0) {
       each.findings.push_back({base::Code::no_signal, "nothing varies: there is no signal", channel.name});
     }
@@ -85,6 +94,23 @@ void measure(SpectrumResult& result, const recording::Reader& reader, const Spec
            channel.name});
     }
   }
+}
+
+// Where the channel stands in the recording.
+std::size_t position_of(const SpectrumResult& result, const ChannelSpectrum& channel) {
+  std::size_t position = 0;
+  while (result.recording.channels[position].index != channel.channel.index) ++position;
+  return position;
+}
+
+// An amplitude as measured in the quantity that the channel is shown in.
+Estimate in_quantity_of(const ChannelSpectrum& channel, Estimate measured, double frequency_hz) {
+  const auto n = spectral::integrations_between(channel.measured.quantity, channel.shown.quantity);
+  const double factor = std::abs(spectral::integration_factor(n.value_or(0), frequency_hz));
+  measured.value *= factor;
+  if (measured.u) *measured.u *= factor;
+  measured.quantity = channel.shown.quantity;
+  return with_calibration(measured, channel.channel);
 }
 
 // As another quantity of motion at its own frequency.
@@ -107,9 +133,7 @@ void find_peaks(SpectrumResult& result, const recording::Reader& reader, const S
     spectral::ToneOptions options;
     options.strongest = std::max(most_tones, request.peaks);
     if (request.max_frequency_hz) options.band_hz = Interval{0.0, *request.max_frequency_hz};
-    std::size_t position = 0;
-    while (result.recording.channels[position].index != each.channel.index) ++position;
-    tones.push_back({position, spectral::tones(each.shown, options)});
+    tones.push_back({position_of(result, each), spectral::tones(each.shown, options)});
     spectra.push_back(&each.shown);
   }
   const auto fine = fine_tones(reader, result.range, tones, spectra, context);
@@ -122,11 +146,53 @@ void find_peaks(SpectrumResult& result, const recording::Reader& reader, const S
       peak.tone.amplitude_rms = with_calibration(peak.tone.amplitude_rms, each.channel);
       peak.closeness = found.closeness;
       peak.note = found.note;
+      peak.wander_hz = found.wander_hz;
       each.peaks.push_back(peak);
       resolutions.back().push_back(found.resolution_hz);
       if (!base::is_motion(each.shown.quantity)) continue;
       peak.tone = as_velocity(peak.tone);
       each.velocity_peaks.push_back(std::move(peak));
+    }
+  }
+}
+
+// Where the speed must be and no line stands, the whole length of the recording may still part one from a stronger
+// neighbour. What it finds joins the peaks.
+void look_where_the_speed_must_be(SpectrumResult& result, const recording::Reader& reader,
+                                  const machine::Machine& machine, std::vector<std::vector<double>>& resolutions,
+                                  const base::Context& context) {
+  constexpr double most_lines = 40.0;
+  const auto possible = machine::possible_speeds(machine);
+  if (!possible || possible->width() > most_lines * result.choice.line_hz) return;
+  const double reach = 4.0 * result.choice.line_hz;
+  const Interval all{0.0, 0.5 * result.recording.rate_hz};
+  const Interval band{all.clamped(possible->lo - reach), all.clamped(possible->hi + reach)};
+  std::vector<std::size_t> whose;
+  std::vector<std::size_t> channels;
+  for (std::size_t c = 0; c < result.channels.size(); ++c) {
+    if (result.channels[c].velocity_peaks.empty()) continue;
+    whose.push_back(c);
+    channels.push_back(position_of(result, result.channels[c]));
+  }
+  const auto found = tones_within(reader, result.range, channels, band, context);
+  for (std::size_t i = 0; i < whose.size(); ++i) {
+    ChannelSpectrum& channel = result.channels[whose[i]];
+    for (const spectral::CloseTone& close : found[i]) {
+      const double frequency = close.frequency.value;
+      const bool is_known = std::any_of(channel.peaks.begin(), channel.peaks.end(), [&](const SpectralPeak& peak) {
+        return std::abs(peak.tone.frequency.value - frequency) < 0.25 * result.choice.line_hz;
+      });
+      if (is_known || !possible->contains(frequency)) continue;
+      SpectralPeak peak;
+      peak.tone.frequency = close.frequency;
+      peak.tone.amplitude_rms = in_quantity_of(channel, close.amplitude_rms, frequency);
+      peak.tone.line = static_cast<std::size_t>(std::lround(frequency / channel.shown.line_hz));
+      peak.closeness = spectral::Closeness::resolved;
+      peak.note = "parted from its neighbour with the whole length of the recording";
+      channel.peaks.push_back(peak);
+      resolutions[whose[i]].push_back(4.0 * close.frequency.u.value_or(0.0));
+      peak.tone = as_velocity(peak.tone);
+      channel.velocity_peaks.push_back(std::move(peak));
     }
   }
 }
@@ -144,10 +210,32 @@ void find_families(SpectrumResult& result) {
   result.families = spectral::families(result.tones, result.choice.line_hz);
 }
 
+// A speed that wanders has no single value: lines show where it dwells, so a third of the wander is added to u (chosen
+// here, tried on the demo). Wander beyond what a load makes is a finding.
+void account_for_wander(SpectrumResult& result) {
+  constexpr double dwell = 1.0 / 3.0;
+  constexpr double much = 0.005;  // of the speed: lines are smeared (common practice)
+  machine::RunningSpeed& found = *result.refined_speed;
+  for (const ChannelSpectrum& channel : result.channels) {
+    for (const SpectralPeak& peak : channel.velocity_peaks) {
+      if (!peak.wander_hz) continue;
+      const double order = peak.tone.frequency.value / found.speed.value;
+      if (std::abs(order - std::round(order)) > 0.02 * order) continue;
+      found.wander = std::max(found.wander, *peak.wander_hz / peak.tone.frequency.value);
+    }
+  }
+  found.speed.u = std::hypot(found.speed.u.value_or(0.0), dwell * found.wander * found.speed.value);
+  result.speed = found.speed;
+  if (found.wander < much) return;
+  result.findings.push_back(
+      {base::Code::speed_varies,
+       fmt::format("the speed varies by {:.2g} % r.m.s. about {:.0f} r/min: the lines that follow it are "
+                   "smeared, and their amplitudes read low",
+                   100.0 * found.wander, 60.0 * found.speed.value)});
+}
+
 // The running speed: refined from the lines of all channels, else as said.
-void find_speed(SpectrumResult& result, const std::optional<machine::Machine>& machine,
-                const SpectrumRequest& request) {
-  if (!machine) return;
+base::Answer<machine::RunningSpeed> speed_of(const SpectrumResult& result, const machine::Machine& machine) {
   std::vector<machine::Peak> peaks;
   for (std::size_t c = 0; c < result.channels.size(); ++c) {
     for (const SpectralPeak& peak : result.channels[c].velocity_peaks) {
@@ -159,16 +247,38 @@ void find_speed(SpectrumResult& result, const std::optional<machine::Machine>& m
   for (const spectral::HarmonicFamily& family : result.families.harmonics) {
     candidates.push_back({family.fundamental, static_cast<int>(family.members.size())});
   }
-  const auto found = machine->speed_hz ? machine::running_speed(peaks, *machine, result.choice.line_hz)
-                                       : machine::running_speed(peaks, *machine, result.choice.line_hz, candidates);
-  if (found) {
+  return machine.speed_hz ? machine::running_speed(peaks, machine, result.choice.line_hz)
+                          : machine::running_speed(peaks, machine, result.choice.line_hz, candidates);
+}
+
+void find_speed(SpectrumResult& result, const recording::Reader& reader, const machine::Machine& machine,
+                const SpectrumRequest& request, std::vector<std::vector<double>>& resolutions,
+                const base::Context& context) {
+  auto found = speed_of(result, machine);
+  if (!found) {
+    look_where_the_speed_must_be(result, reader, machine, resolutions, context);
+    found = speed_of(result, machine);
+  }
+  if (found && result.choice.line_hz > coarse * found->speed.value) {
+    result.refusals.push_back(
+        {"speed-unknown", fmt::format("lines {:.3g} Hz apart are too coarse to find the speed", result.choice.line_hz),
+         "ask for a finer resolution, or use a longer part"});
+  } else if (found) {
     result.refined_speed = *found;
     result.speed = found->speed;
-  } else if (request.speed_hz) {
-    result.speed = Estimate{*request.speed_hz, {}, {}, Quantity::speed};
+    account_for_wander(result);
+    return;
   } else {
     result.refusals.push_back(found.refusal());
   }
+  if (request.speed_hz) result.speed = Estimate{*request.speed_hz, {}, {}, Quantity::speed};
+}
+
+// The blocks scatter like noise and the peak is broader than a tone's: a resonance that noise excites.
+bool is_random(const spectral::Tone& tone) {
+  constexpr double like_noise = 0.6;
+  constexpr double broad = 1.5;
+  return tone.spread && *tone.spread > like_noise && tone.breadth > broad;
 }
 
 void find_causes(SpectrumResult& result, const SpectrumRequest& request,
@@ -184,6 +294,10 @@ void find_causes(SpectrumResult& result, const SpectrumRequest& request,
     auto causes = machine::causes_of_peaks(peaks, each.shown.line_hz, result.forcing, request.modes, stopped);
     for (std::size_t i = 0; i < each.peaks.size(); ++i) {
       SpectralPeak& peak = each.peaks[i];
+      if (is_random(peak.tone)) {  // a resonance under noise is no line of a shaft
+        causes[i] =
+            machine::cause_of_peak(peak.tone.frequency, resolutions[c][i], {}, request.modes, peak.in_background());
+      }
       if (resolutions[c][i] < each.shown.line_hz) {  // parted by a finer look
         causes[i] = machine::cause_of_peak(peak.tone.frequency, resolutions[c][i], result.forcing, request.modes,
                                            peak.in_background());
@@ -229,7 +343,7 @@ SpectrumResult spectrum(const recording::Reader& reader, const SpectrumRequest& 
   find_peaks(result, reader, request, resolutions, context);
   if (request.background.reader != nullptr) add_background(result, request.background, request.site, context);
   find_families(result);
-  find_speed(result, machine, request);
+  if (machine) find_speed(result, reader, *machine, request, resolutions, context);
   if (result.speed) result.forcing = machine::forcing_frequencies(*machine, *result.speed);
   find_causes(result, request, resolutions);
   judge(result, request);
@@ -241,6 +355,9 @@ SpectrumResult spectrum(const recording::Reader& reader, const SpectrumRequest& 
   if (request.synchronous) add_synchronous(result, reader, *request.synchronous, context);
   if (machine && request.site.machine) result.causes = diagnosed(result, request.site, request.modes);
   for (ChannelSpectrum& each : result.channels) {
+    std::stable_sort(each.peaks.begin(), each.peaks.end(), [](const SpectralPeak& a, const SpectralPeak& b) {
+      return a.tone.amplitude_rms.value > b.tone.amplitude_rms.value;
+    });
     if (each.peaks.size() > request.peaks) each.peaks.resize(request.peaks);
   }
   return result;

@@ -65,6 +65,9 @@ enum class Code {
   bearing_damage,
   cavitation_like,
   soft_foot,
+  // of what a spectrum can stand for
+  speed_varies,
+  single_shocks,
 };
 
 /// What a code stands for, in words for people.
