@@ -6,6 +6,7 @@
 #include <numbers>
 
 #include "stillmass/machine/diagnosis.hpp"
+#include "stillmass/spectral/quantity.hpp"
 
 #include "step/levels.hpp"
 
@@ -18,6 +19,7 @@ using base::Quantity;
 constexpr double high_frequency_hz = 1000.0;  // above: noise of flow and of bearings (common practice)
 constexpr double end_of_flat = 2.56;          // recorders' filters begin at rate / 2.56 (common practice)
 constexpr double usual_orders[] = {1.0, 2.0};
+constexpr double most_phase_u_deg = 30.0;  // of a line of the synchronous average; above, its phase tells nothing
 
 // What of a mean square is left without tones, as r.m.s.
 std::optional<double> without(double rms, double tones_mean_square) {
@@ -105,8 +107,9 @@ std::optional<machine::SpeedRun> run_of(const ChannelSpectrum& channel, const Ru
     const auto at = [&](std::ptrdiff_t i) { return static_cast<std::size_t>(i); };
     machine::SpeedRun out;
     const double full = moved.amplitude_rms(at(fastest));
-    if (moved.speed_hz[at(slowest)] <= slow * moved.speed_hz[at(fastest)] && full > 0.0 &&
-        moved.amplitude_rms(at(slowest)) > 2.0 * moved.noise[at(slowest)]) {
+    const auto stands_out = [&](std::ptrdiff_t i) { return moved.amplitude_rms(at(i)) > 2.0 * moved.noise[at(i)]; };
+    if (!stands_out(slowest) || !stands_out(fastest)) return out;
+    if (moved.speed_hz[at(slowest)] <= slow * moved.speed_hz[at(fastest)]) {
       out.slow_roll = moved.amplitude_rms(at(slowest)) / full;
     }
     out.phase_change = std::abs(std::arg(moved.value[at(fastest)] / moved.value[at(slowest)]));
@@ -154,7 +157,8 @@ machine::ChannelFacts channel_facts(const ChannelSpectrum& channel, const Spectr
   put_families(facts, channel, spectra);
   if (others.run != nullptr) facts.run = run_of(channel, *others.run);
   for (const OtherTests::Cut& cut : others.power_cuts) {
-    if (cut.channel == channel.channel.name) facts.power_cut = outcome(cut.result);
+    if (cut.channel != channel.channel.name || outcome(cut.result) == machine::TestOutcome::not_made) continue;
+    facts.power_cut = outcome(cut.result);
   }
   return facts;
 }
@@ -180,11 +184,15 @@ void put_phases(machine::Facts& facts, const SpectrumResult& spectra) {
     }
   }
   for (const ChannelSpectrum& channel : spectra.channels) {
-    if (!channel.synchronous) continue;
+    if (!channel.synchronous || !channel.synchronous->speed_hz) continue;
+    const auto n = spectral::integrations_between(channel.synchronous->quantity, Quantity::velocity);
+    if (!n) continue;
     for (const rotation::SynchronousLine& line : channel.synchronous->lines) {
       if (line.order != 1.0 && line.order != 2.0) continue;
-      facts.phases.push_back(
-          {channel.channel.name, "", line.order, line.value, line.phase_u_deg * std::numbers::pi / 180.0, {}});
+      if (line.phase_u_deg > most_phase_u_deg) continue;
+      const auto factor = spectral::integration_factor(*n, line.order * *channel.synchronous->speed_hz);
+      const double u = line.phase_u_deg * std::numbers::pi / 180.0;
+      facts.phases.push_back({channel.channel.name, "", line.order, line.value * factor, u, {}});
     }
   }
 }
@@ -201,6 +209,7 @@ machine::Facts facts_of(const SpectrumResult& spectra, const Site& site, const s
   for (const ChannelSpectrum& channel : spectra.channels) {
     const bool is_vibration = channel.channel.role == recording::Role::vibration;
     if (!is_vibration || !base::is_motion(channel.measured.quantity) || channel.measured.density.empty()) continue;
+    if (channel.measured.averaging == spectral::Averaging::peak_hold) continue;  // neither levels nor tones
     facts.channels.push_back(channel_facts(channel, spectra, site, others));
   }
   put_phases(facts, spectra);
