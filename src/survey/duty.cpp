@@ -53,7 +53,7 @@ std::string common_reference(const Survey& survey) {
     } else {
       std::vector<std::string> both;
       std::set_intersection(common.begin(), common.end(), points.begin(), points.end(), std::back_inserter(both));
-      differ = differ || both.size() < points.size();
+      differ = differ || both.size() < points.size() || both.size() < common.size();
       common = both;
     }
     is_first = false;
@@ -133,7 +133,9 @@ step::SpectrumResult steady_spectrum(const SurveyResult& result, std::size_t rec
   request.speed_hz = which.speed_hz;
   request.modes = result.modes;
   request.synchronous = synchronous_settings(which, *readers[recording]);
-  request.reference = common_reference(survey);
+  const std::vector<std::string> points = points_of(which);
+  const std::string reference = common_reference(survey);
+  if (points.size() > 1 && std::binary_search(points.begin(), points.end(), reference)) request.reference = reference;
   if (const SurveyRecording* stopped = background_of(survey, which.stage)) {
     const auto position = static_cast<std::size_t>(stopped - survey.recordings.data());
     request.background = {readers[position].get(), part_of(*stopped)};
