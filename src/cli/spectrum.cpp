@@ -19,6 +19,7 @@ namespace {
 // A speed given by hand; a range is where it lies.
 void take_speed(const std::string& text, step::SpectrumRequest& request) {
   constexpr double per_minute = 1.0 / 60.0;
+  request.runs_steadily = true;
   if (const auto range = parse_range(text)) {
     if (!request.site.machine) request.site.machine = machine::Machine{};
     request.site.machine->speed_hz = base::Interval{range->lo * per_minute, range->hi * per_minute};
@@ -50,7 +51,10 @@ step::SpectrumRequest request_from(const Session& session, const std::string& fi
   if (const auto peaks = arguments.whole("--peaks")) request.peaks = static_cast<std::size_t>(*peaks);
   if (session.survey()) {
     request.site = survey::site_of(*session.survey());
-    if (const survey::SurveyRecording* entry = session.entry(file)) request.speed_hz = entry->speed_hz;
+    if (const survey::SurveyRecording* entry = session.entry(file)) {
+      request.speed_hz = entry->speed_hz;
+      request.runs_steadily = entry->kind == survey::Kind::steady && entry->running;
+    }
   }
   if (const auto speed = arguments.text("--speed")) take_speed(*speed, request);
   request.zoom_hz = arguments.range("--zoom");

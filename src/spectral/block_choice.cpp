@@ -95,7 +95,8 @@ std::string BlockChoice::text() const {
     case BlockReason::lines_asked:
       return "as many lines as asked";
     case BlockReason::usual:
-      return fmt::format("as fine as {} averages allow, from 0.25 to 1 Hz", averages);
+      return averages > least_blocks ? fmt::format("usual lines, {} averages", averages)
+                                     : fmt::format("as fine as {} averages allow", averages);
     case BlockReason::usual_separates:
       return fmt::format("fine enough to tell apart frequencies {:.3g} Hz from one another, with {} averages",
                          told_apart, averages);

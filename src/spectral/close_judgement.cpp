@@ -67,11 +67,14 @@ double least_spacing(const CloseFit& fit) {
   return least;
 }
 
+constexpr double times = 4.0;  // phase and amplitude of a beating pair vary alike
+
+bool only_amplitude_varies(const Steadiness& s) { return times * s.phase_rad < s.amplitude; }
+
 /// True where phase and amplitude do not vary alike, as those of a beating pair do.
 bool is_modulated(const Steadiness& s) {
-  constexpr double times = 4.0;
   constexpr double deep = 0.25;  // a beat of two nearly equal tones turns the phase by half a turn at each null
-  return (s.amplitude < deep && times * s.amplitude < s.phase_rad) || times * s.phase_rad < s.amplitude;
+  return (s.amplitude < deep && times * s.amplitude < s.phase_rad) || only_amplitude_varies(s);
 }
 
 /// True where lines without any tone are more than noise: something broad stands on them.
@@ -113,10 +116,11 @@ class Judge {
     const Humps humps(lines_, noise);
     const double from = std::min(place.front(), humps.all().empty() ? 0.0 : humps.all().front().from) - beside;
     const double to = std::max(place.back(), humps.all().empty() ? 0.0 : humps.all().back().to) + beside;
-    const bool modulated = is_modulated(steadiness(lines_, from, to, noise));
+    const Steadiness steady = steadiness(lines_, from, to, noise);
+    const bool modulated = is_modulated(steady);
     constexpr double within = 1.5;  // lines: phase and amplitude of part of a beat do not tell
     const bool is_narrow = best > 1 && place.back() - place.front() < within;
-    if (!modulated && resolve(result, best)) return result;
+    if ((!modulated || has_side_bands(steady, best)) && resolve(result, best)) return result;
     if (left.is_little() && (is_narrow || !modulated)) {
       be_unresolved(result, fits_[best]);
     } else if (!be_wandering_apart(result, humps, noise)) {
@@ -126,6 +130,18 @@ class Judge {
   }
 
  private:
+  /// A carrier whose amplitude swings regularly: three tones, the outer ones as far from the middle one, and so far
+  /// that the swing repeats several times.
+  bool has_side_bands(const Steadiness& steady, std::size_t best) const {
+    constexpr double several = 10.0;  // lines: as many swings in the stretch; fewer are called swings
+    constexpr double alike = 0.1;
+    if (best != 3 || !only_amplitude_varies(steady)) return false;
+    const auto& place = fits_[best].place;
+    const double below = place[1] - place[0];
+    const double above = place[2] - place[1];
+    return std::min(below, above) >= several && std::abs(above - below) <= alike * below;
+  }
+
   CloseTone tone(const CloseFit& fit, std::size_t j, double noise) const {
     constexpr double rms = std::numbers::sqrt2;  // of a cosine whose two sides have |A| each
     const double phase = std::arg(fit.amplitude[j]) + 2.0 * std::numbers::pi * scale_.middle_turns;

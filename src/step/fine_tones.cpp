@@ -15,6 +15,7 @@ using spectral::Tone;
 using spectral::ToneCluster;
 
 constexpr std::size_t most_suspects = 6;   // of a channel, the strongest
+constexpr double swings = 0.2;             // of the amplitude: it is said before the wander of the frequency
 constexpr double least_prominence = 30.0;  // weaker ones are not worth a second look
 
 struct Suspect {
@@ -32,6 +33,9 @@ std::string note_of(const ToneCluster& cluster) {
       return text;
     }
     case Closeness::unsteady:
+      if (cluster.variation && *cluster.variation > swings) {
+        return fmt::format("its amplitude varies by {} % r.m.s.", base::rounded(*cluster.variation * 100.0, 2));
+      }
       if (cluster.wander_hz) return fmt::format("wanders by {} Hz r.m.s.", base::rounded(*cluster.wander_hz, 2));
       return "unsteady";
     case Closeness::single:

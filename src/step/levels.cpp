@@ -68,6 +68,10 @@ bool is_usable(const ChannelSpectrum& channel, const SpectrumRequest& request) {
 
 base::Answer<Severity> severity_of(const ChannelSpectrum& channel, const SpectrumRequest& request,
                                    const spectral::Spectrum& velocity, const std::optional<Estimate>& forcing_1x) {
+  if (!request.runs_steadily) {
+    return Refusal{"limit-unknown", "the recording is not of the machine running steadily",
+                   "record the running machine for a minute at its usual load"};
+  }
   if (!request.site.machine) {
     return Refusal{"limit-unknown", "nothing is said of the machine", "give --survey with [machine] and [limit]"};
   }
@@ -142,7 +146,7 @@ void judge_channel(ChannelSpectrum& channel, const SpectrumRequest& request,
     return;
   }
   if (channel.measured.averaging == spectral::Averaging::peak_hold) {
-    channel.severity = Refusal{"limit-unknown", "a peak hold is no r.m.s. level", "average the blocks: --average mean"};
+    channel.severity = Refusal{"limit-unknown", "a peak hold has no r.m.s. level", "average the mean of the squares"};
     return;
   }
   const spectral::Spectrum velocity = in_quantity(channel.measured, Quantity::velocity);
@@ -152,7 +156,7 @@ void judge_channel(ChannelSpectrum& channel, const SpectrumRequest& request,
   channel.severity = severity_of(channel, request, velocity, forcing_1x);
   const SitePoint* point = request.site.point(channel.channel.point);
   if (!channel.severity_velocity || !channel.channel.unit_known || point == nullptr) return;
-  if (!is_usable(channel, request)) return;
+  if (!request.runs_steadily || !is_usable(channel, request)) return;
   const bool wanted = request.site.standard == typical_standard || request.site.standard.empty();
   if (!channel.severity && point->on_bearing_housing && wanted) {
     channel.typical = machine::against_ranges(machine::typical_ranges(), *channel.severity_velocity);

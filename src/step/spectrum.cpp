@@ -27,7 +27,7 @@ constexpr std::int64_t full_scale_run = 3;  // samples at full scale that make a
 
 // What is known of the machine, with the speed of this recording.
 std::optional<machine::Machine> machine_of(const SpectrumRequest& request) {
-  if (!request.site.machine && !request.speed_hz) return {};
+  if (!request.runs_steadily || (!request.site.machine && !request.speed_hz)) return {};
   machine::Machine machine = request.site.machine.value_or(machine::Machine{});
   if (request.speed_hz) machine.speed_hz = Interval{*request.speed_hz, *request.speed_hz};
   return machine;
@@ -73,6 +73,9 @@ void measure(SpectrumResult& result, const recording::Reader& reader, const Spec
         each.findings = spectral::spectral_findings(
             each.measured, channel, request.site.machine ? request.site.machine->line_frequency_hz : std::nullopt);
       }
+    }
+    if (each.features.deviation == 0.0) {
+      each.findings.push_back({base::Code::no_signal, "nothing varies: there is no signal", channel.name});
     }
     if (each.features.at_full_scale.value_or(0) >= full_scale_run) {
       each.findings.push_back(
@@ -236,7 +239,7 @@ SpectrumResult spectrum(const recording::Reader& reader, const SpectrumRequest& 
   }
   if (request.zoom_hz) add_zoom(result, reader, *request.zoom_hz, context);
   if (request.synchronous) add_synchronous(result, reader, *request.synchronous, context);
-  if (request.site.machine) result.causes = diagnosed(result, request.site, request.modes);
+  if (machine && request.site.machine) result.causes = diagnosed(result, request.site, request.modes);
   for (ChannelSpectrum& each : result.channels) {
     if (each.peaks.size() > request.peaks) each.peaks.resize(request.peaks);
   }

@@ -61,6 +61,18 @@ std::string common_reference(const Survey& survey) {
   return differ && !common.empty() ? common.front() : std::string();
 }
 
+// That point where the recording has it beside another channel of motion, else none.
+std::string reference_in(const recording::Reader& reader, const std::string& point) {
+  std::size_t moving = 0;
+  bool is_there = false;
+  for (const recording::Channel& channel : reader.recording().channels) {
+    if (channel.role != recording::Role::vibration || !base::is_motion(channel.unit.quantity)) continue;
+    ++moving;
+    is_there = is_there || channel.point == point;
+  }
+  return moving > 1 && is_there ? point : std::string();
+}
+
 // The single channels of several recordings at one order of the speed.
 std::vector<step::OperatingDeflection> roved_without_reference(
     const std::vector<const step::SpectrumResult*>& recordings) {
@@ -133,9 +145,7 @@ step::SpectrumResult steady_spectrum(const SurveyResult& result, std::size_t rec
   request.speed_hz = which.speed_hz;
   request.modes = result.modes;
   request.synchronous = synchronous_settings(which, *readers[recording]);
-  const std::vector<std::string> points = points_of(which);
-  const std::string reference = common_reference(survey);
-  if (points.size() > 1 && std::binary_search(points.begin(), points.end(), reference)) request.reference = reference;
+  request.reference = reference_in(*readers[recording], common_reference(survey));
   if (const SurveyRecording* stopped = background_of(survey, which.stage)) {
     const auto position = static_cast<std::size_t>(stopped - survey.recordings.data());
     request.background = {readers[position].get(), part_of(*stopped)};

@@ -233,6 +233,19 @@ TEST_CASE("an amplitude that swings is unsteady") {
   CHECK(*c.variation == Approx(0.4 / std::numbers::sqrt2).epsilon(0.15));
 }
 
+TEST_CASE("an amplitude that swings regularly is a carrier with its side bands") {
+  auto x = noise(minute, 0.05, 92);
+  tests::add_tone(x, rate, 100.0, 1.0, 0.3);
+  for (const double side : {-1.0, 1.0}) tests::add_tone(x, rate, 100.0 + side * 0.8, 0.2, 0.3 + side * 1.1);
+  const auto found = spectral::resolve_tones(x, rate, Quantity::acceleration, about_100);
+  CHECK(found.closeness == Closeness::resolved);
+  REQUIRE(found.tones.size() == 3);
+  for (std::size_t j = 0; j < 3; ++j) {
+    CHECK(found.tones[j].frequency.value == Approx(99.2 + 0.8 * static_cast<double>(j)).margin(1e-3));
+    CHECK(found.tones[j].amplitude_rms.value == Approx(j == 1 ? 1.0 : 0.2).epsilon(0.02));
+  }
+}
+
 TEST_CASE("strong tones beside the band leave the pair as it is") {
   auto x = pair(0.6, 0.2, 0.3, 93);
   tests::add_tone(x, rate, 50.0, 20.0, 0.7);

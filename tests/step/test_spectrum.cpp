@@ -109,6 +109,28 @@ TEST_CASE("no zone where unit, recording or place do not allow one; typical rang
   CHECK(unknown.typical->place[0] == machine::Place::within);  // 0.71 to 4.5 mm/s
 }
 
+TEST_CASE("a recording that is not of the machine running steadily has spectra, but no severity and no causes") {
+  step::SpectrumRequest request;
+  request.site = two_pole_fan();
+  request.site.plant.target = 1e-3;
+  request.runs_steadily = false;
+  const auto result = analysed({{"fan-h", acceleration(20.0, {{49.7, 2e-3, 0.3}}, 0.02, 10)}}, request);
+  CHECK(result.channels.front().severity.refusal().seen.find("steadily") != std::string::npos);
+  CHECK_FALSE(result.channels.front().plant);
+  CHECK_FALSE(result.speed);
+  CHECK(result.forcing.empty());
+  CHECK(result.causes.empty());
+  REQUIRE_FALSE(result.channels.front().peaks.empty());
+  CHECK(result.channels.front().peaks.front().cause.text == machine::unexplained);
+}
+
+TEST_CASE("a signal that does not vary is said to be none") {
+  const auto result = analysed({{"dead", std::vector<double>(8192, 0.5)}}, {});
+  const auto& findings = result.channels.front().findings;
+  CHECK(std::any_of(findings.begin(), findings.end(),
+                    [](const base::Finding& each) { return each.code == base::Code::no_signal; }));
+}
+
 TEST_CASE("the support class follows from a measured natural frequency where none is declared") {
   step::SpectrumRequest request;
   request.site = two_pole_fan();

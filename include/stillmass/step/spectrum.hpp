@@ -51,6 +51,7 @@ struct SpectrumRequest {
   std::size_t peaks = 12;
   Site site;
   std::optional<double> speed_hz;  ///< known speed during the recording
+  bool runs_steadily = true;       ///< false (a hammer test, a run-up, the stopped machine): no severity, no causes
   std::vector<modal::Mode> modes;  ///< known natural frequencies: they can be causes too
   BackgroundRequest background;
   std::optional<EnvelopeRequest> envelope;  ///< absent: where the machine has bearings of known geometry
