@@ -21,41 +21,29 @@ constexpr double end_of_flat = 2.56;          // recorders' filters begin at rat
 constexpr double usual_orders[] = {1.0, 2.0};
 constexpr double most_phase_u_deg = 30.0;  // of a line of the synchronous average; above, its phase tells nothing
 
-// What of a mean square is left without tones, as r.m.s.
-std::optional<double> without(double rms, double tones_mean_square) {
-  return std::sqrt(std::max(0.0, rms * rms - tones_mean_square));
-}
-
-double velocity_of_tones(const ChannelSpectrum& channel, Interval band) {
+// What is left of a level without tones, r.m.s.: the floor between them. Tones taken off one by one would leave their
+// flanks behind where the speed sways.
+std::optional<double> noise_rms(const spectral::Spectrum& spectrum, Interval band) {
+  const auto part = held(spectrum, band);
+  if (!part) return {};
+  const std::vector<double> floor = spectral::noise_floor(spectrum);
   double sum = 0.0;
-  for (const SpectralPeak& peak : channel.velocity_peaks) {
-    if (band.contains(peak.tone.frequency.value)) sum += std::pow(peak.tone.amplitude_rms.value, 2);
+  for (std::size_t k = spectrum.first_line; k < floor.size(); ++k) {
+    if (part->contains(spectrum.frequency(k))) sum += floor[k] * spectrum.line_hz;
   }
-  return sum;
-}
-
-double acceleration_of_tones(const ChannelSpectrum& channel, Interval band) {
-  double sum = 0.0;
-  for (const SpectralPeak& peak : channel.velocity_peaks) {
-    const double f = peak.tone.frequency.value;
-    if (band.contains(f)) sum += std::pow(2.0 * std::numbers::pi * f * peak.tone.amplitude_rms.value, 2);
-  }
-  return sum;
+  return std::sqrt(sum);
 }
 
 void put_noise(machine::ChannelFacts& facts, const ChannelSpectrum& channel, const Site& site) {
   if (channel.severity_velocity) {
-    facts.noise_velocity = without(channel.severity_velocity->value, velocity_of_tones(channel, standard_band(site)));
+    facts.noise_velocity = noise_rms(in_quantity(channel.measured, Quantity::velocity), standard_band(site));
   }
   if (channel.measured.quantity != Quantity::acceleration || channel.measured.density.empty()) return;
   facts.acceleration = channel.features.deviation;
   facts.crest_factor = channel.features.crest_factor;
   facts.kurtosis = channel.features.kurtosis;
   const Interval high{high_frequency_hz, channel.measured.rate_hz / end_of_flat};
-  if (high.lo >= high.hi) return;
-  if (const auto above = level(channel.measured, high)) {
-    facts.noise_acceleration = without(above->value, acceleration_of_tones(channel, high));
-  }
+  if (high.lo < high.hi) facts.noise_acceleration = noise_rms(channel.measured, high);
 }
 
 void put_envelope(machine::ChannelFacts& facts, const ChannelSpectrum& channel) {

@@ -106,3 +106,32 @@ TEST_CASE("1x below the noise at the slow end of a run tells neither slow roll n
   CHECK_FALSE(lost->slow_roll);
   CHECK_FALSE(lost->phase_change);
 }
+
+TEST_CASE("noise is what stands between the tones, and no tone of a speed that sways") {
+  const numeric::Random random(5);
+  std::vector<double> x(static_cast<std::size_t>(60.0 * tests::rate));
+  double phase = 0.0;
+  double sway = 0.0;  // standard deviation 1, correlated over 2 s
+  for (std::size_t i = 0; i < x.size(); ++i) {
+    sway += -sway / (2.0 * tests::rate) + 0.0156 * random.normal(1, static_cast<std::uint32_t>(i));
+    phase += tests::two_pi * 24.6 * (1.0 + 0.001 * sway) / tests::rate;
+    for (int k = 1; k <= 12; ++k) x[i] += std::cos(k * phase);
+    x[i] += 3.0 * std::cos(50.0 * phase);
+    x[i] += 0.5 * random.normal(2, static_cast<std::uint32_t>(i));
+  }
+  step::SpectrumRequest request;
+  request.site = tests::two_pole_fan();
+  request.site.machine->motor_poles = 4;
+  request.site.machine->speed_hz = base::Interval{24.6, 24.6};
+  const auto spectra = tests::analysed({{"fan-h", x}}, request);
+  const machine::ChannelFacts facts = step::facts_of(spectra, request.site, {}).channels.front();
+  // White acceleration of 0.5 m/s2 r.m.s. over 2048 Hz: over 1000 to 1600 Hz, and integrated from 10 to 1000 Hz.
+  const double density = 0.25 / 2048.0;
+  const double velocity = std::sqrt(density * (1.0 / 10.0 - 1.0 / 1000.0)) / tests::two_pi;
+  REQUIRE(facts.noise_velocity);
+  CHECK(*facts.noise_velocity == Approx(velocity).epsilon(0.15));
+  REQUIRE(facts.noise_acceleration);
+  // The mesh at 1230 Hz (2.1 m/s2 r.m.s.) wanders over as many lines as the floor is taken from, and lifts it a little.
+  CHECK(*facts.noise_acceleration > 0.9 * std::sqrt(density * 600.0));
+  CHECK(*facts.noise_acceleration < 1.6 * std::sqrt(density * 600.0));
+}
