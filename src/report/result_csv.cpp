@@ -4,6 +4,8 @@
 #include <filesystem>
 #include <numbers>
 #include <optional>
+#include <set>
+#include <string_view>
 
 #include "stillmass/base/number.hpp"
 #include "stillmass/base/text.hpp"
@@ -124,6 +126,16 @@ void put_deflections(std::vector<NamedText>& files, const std::vector<step::Oper
   files.push_back({"deflections.csv", text});
 }
 
+// Channels of one name, or whose names differ in what a file name cannot hold, get files of their own.
+std::vector<NamedText> told_apart(std::vector<NamedText> files) {
+  std::set<std::string> taken;
+  for (NamedText& file : files) {
+    const std::string stem = file.name.substr(0, file.name.size() - std::string_view(".csv").size());
+    for (int i = 2; !taken.insert(file.name).second; ++i) file.name = stem + "-" + std::to_string(i) + ".csv";
+  }
+  return files;
+}
+
 void with_prefix(std::vector<NamedText>& all, const std::string& recording, std::vector<NamedText> files) {
   const std::string stem = std::filesystem::path(recording).stem().string();
   for (NamedText& file : files) all.push_back({base::safe_file_name(stem) + "-" + file.name, std::move(file.text)});
@@ -181,7 +193,7 @@ std::vector<NamedText> csv(const step::SpectrumResult& result) {
     put_waveform(files, each);
   }
   put_deflections(files, result.shapes);
-  return files;
+  return told_apart(std::move(files));
 }
 
 std::vector<NamedText> csv(const step::BumpResult& result) {
@@ -207,7 +219,7 @@ std::vector<NamedText> csv(const step::BumpResult& result) {
     }
     files.push_back({file_name("response", each.channel), text});
   }
-  return files;
+  return told_apart(std::move(files));
 }
 
 std::vector<NamedText> csv(const step::RunupResult& result) {
@@ -222,7 +234,7 @@ std::vector<NamedText> csv(const step::RunupResult& result) {
     }
     files.push_back({file_name("order-" + base::plain(track.order), track.channel), text});
   }
-  return files;
+  return told_apart(std::move(files));
 }
 
 std::vector<NamedText> csv(const step::AbsorberResult& result) {
@@ -253,7 +265,7 @@ std::vector<NamedText> csv(const survey::SurveyResult& result) {
     with_prefix(files, result.survey.recordings[index].written, csv(runup));
   for (const survey::AbsorberAim& aim : result.absorbers)
     with_prefix(files, "absorber-" + aim.site.point, csv(aim.result));
-  return files;
+  return told_apart(std::move(files));
 }
 
 }  // namespace stillmass::report

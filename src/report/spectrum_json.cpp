@@ -2,6 +2,8 @@
 
 #include <numbers>
 
+#include "report/spectrum_sentences.hpp"
+
 namespace stillmass::report {
 namespace {
 
@@ -196,10 +198,10 @@ Json spectrum(const step::SpectrumResult& result) {
   out["channels"] = Json::array();
   for (const step::ChannelSpectrum& each : result.channels) out["channels"].push_back(channel(result, each));
   out["speed"] = result.speed ? estimate(*result.speed, to_rpm, "rpm") : Json(nullptr);
-  out["resolution_hz"] = result.channels.empty() ? Json(nullptr) : number(result.channels.front().measured.line_hz);
-  out["blocks"] = result.channels.empty() ? Json(nullptr) : Json(result.channels.front().measured.blocks);
-  out["effective_averages"] =
-      result.channels.empty() ? Json(nullptr) : number(result.channels.front().measured.effective_averages);
+  const spectral::Spectrum* lines = averaged(result);
+  out["resolution_hz"] = lines == nullptr ? Json(nullptr) : number(lines->line_hz);
+  out["blocks"] = lines == nullptr ? Json(nullptr) : Json(lines->blocks);
+  out["effective_averages"] = lines == nullptr ? Json(nullptr) : number(lines->effective_averages);
   out["lines_chosen"] = {{"reason", spectral::name(result.choice.reason)}, {"text", result.choice.text()}};
   out["worst"] = result.worst ? Json(result.channels[*result.worst].channel.name) : Json(nullptr);
   out["families"] = Json::array();

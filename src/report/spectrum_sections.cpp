@@ -1,3 +1,6 @@
+#include <cctype>
+#include <utility>
+
 #include <fmt/format.h>
 
 #include "stillmass/base/number.hpp"
@@ -64,7 +67,11 @@ std::vector<Block> spectrum_blocks(const step::SpectrumResult& result, const Spe
   if (const std::string speed = speed_sentence(result); !speed.empty()) how += " Running speed " + speed + ".";
   blocks.emplace_back(Paragraph{how + " " + uncertainty_note(result)});
   for (const step::ChannelSpectrum& each : result.channels) {
-    if (!each.shown.density.empty()) add_channel(blocks, result, each, view);
+    if (!each.shown.density.empty()) {
+      add_channel(blocks, result, each, view);
+    } else {
+      for (Block& block : finding_blocks(each.findings)) blocks.push_back(std::move(block));
+    }
   }
   const auto families = family_sentences(result);
   if (!families.empty()) {

@@ -47,9 +47,17 @@ std::string numbers_text(const std::vector<spectral::FamilyMember>& members) {
 
 }  // namespace
 
+const spectral::Spectrum* averaged(const step::SpectrumResult& result) {
+  const auto most = std::max_element(result.channels.begin(), result.channels.end(), [](const auto& a, const auto& b) {
+    return a.measured.blocks < b.measured.blocks;
+  });
+  return most == result.channels.end() ? nullptr : &most->measured;
+}
+
 std::string blocks_sentence(const step::SpectrumResult& result) {
-  if (result.channels.empty()) return "";
-  const spectral::Spectrum& first = result.channels.front().measured;
+  const spectral::Spectrum* lines = averaged(result);
+  if (lines == nullptr) return "";
+  const spectral::Spectrum& first = *lines;
   std::string text = fmt::format("{} window, lines {} Hz apart, {} blocks", spectral::name(first.window),
                                  plain(first.line_hz, 3), first.blocks);
   if (first.averaging == spectral::Averaging::peak_hold) {

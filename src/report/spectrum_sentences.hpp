@@ -8,7 +8,10 @@
 // What a spectrum says in sentences and rows, for the terminal and for the page.
 namespace stillmass::report {
 
-/// "hann window, lines 0.546 Hz apart, 64 blocks worth 60.7 independent ones, r.m.s. average: why these lines".
+/// The channel of the most blocks: what is said of all of them; null without any.
+const spectral::Spectrum* averaged(const step::SpectrumResult& result);
+
+/// "hann window, lines 0.546 Hz apart, 64 blocks worth 60.7 independent ones: why these lines".
 std::string blocks_sentence(const step::SpectrumResult& result);
 /// "1478.049 +- 0.052 rpm, from 1x, 2x, 6x of 5 channels"; empty where it is not known.
 std::string speed_sentence(const step::SpectrumResult& result);

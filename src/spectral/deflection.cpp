@@ -70,15 +70,37 @@ void PairSums::merge(const PairSums& next) {
   add_to(power, next.power);
 }
 
+namespace {
+
+struct Room {
+  std::size_t lobe = 0;
+  std::size_t reach = 0;  ///< lines of the peak on each side of its middle
+  bool is_there = false;
+};
+
+Room room_for(double place, std::size_t lines, Window window, double wander) {
+  Room room;
+  room.lobe = static_cast<std::size_t>(lobe_bins(window));
+  const bool is_within = place > 0.0 && place < static_cast<double>(lines);  // not for NaN
+  room.reach = room.lobe - 1 + static_cast<std::size_t>(is_within ? std::ceil(wander * place - 1e-9) : 0.0);
+  room.is_there = is_within && place >= static_cast<double>(room.lobe + room.reach) - 0.5 &&
+                  place + static_cast<double>(room.reach) + 1.0 < static_cast<double>(lines - 1);
+  return room;
+}
+
+}  // namespace
+
+bool has_room(double frequency_hz, double rate_hz, std::size_t block_frames, const DeflectionOptions& options) {
+  const double place = frequency_hz / rate_hz * static_cast<double>(block_frames);
+  return room_for(place, block_frames / 2 + 1, options.window, options.wander).is_there;
+}
+
 PeakLines peak_lines(double frequency_hz, double line_hz, std::size_t lines, Window window, double wander) {
   constexpr std::size_t side = 6;  // lines of noise on each side
-  const auto lobe = static_cast<std::size_t>(lobe_bins(window));
   PeakLines peak{.asked_hz = frequency_hz};
   const double place = frequency_hz / line_hz;
-  const bool is_within = place > 0.0 && place < static_cast<double>(lines);  // not for NaN
-  const std::size_t reach = lobe - 1 + static_cast<std::size_t>(is_within ? std::ceil(wander * place - 1e-9) : 0.0);
-  if (!(is_within && place >= static_cast<double>(lobe + reach) - 0.5 &&
-        place + static_cast<double>(reach) + 1.0 < static_cast<double>(lines - 1))) {
+  const auto [lobe, reach, is_there] = room_for(place, lines, window, wander);
+  if (!is_there) {
     throw base::usage_error(
         {}, fmt::format("a deflection at {:.6g} Hz", frequency_hz),
         fmt::format("with lines {:.4g} Hz apart it lies between {:.4g} and {:.6g} Hz", line_hz,

@@ -6,6 +6,7 @@
 #include <numbers>
 
 #include "stillmass/machine/diagnosis.hpp"
+#include "stillmass/spectral/quantity.hpp"
 
 #include "step/levels.hpp"
 
@@ -18,42 +19,31 @@ using base::Quantity;
 constexpr double high_frequency_hz = 1000.0;  // above: noise of flow and of bearings (common practice)
 constexpr double end_of_flat = 2.56;          // recorders' filters begin at rate / 2.56 (common practice)
 constexpr double usual_orders[] = {1.0, 2.0};
+constexpr double most_phase_u_deg = 30.0;  // of a line of the synchronous average; above, its phase tells nothing
 
-// What of a mean square is left without tones, as r.m.s.
-std::optional<double> without(double rms, double tones_mean_square) {
-  return std::sqrt(std::max(0.0, rms * rms - tones_mean_square));
-}
-
-double velocity_of_tones(const ChannelSpectrum& channel, Interval band) {
+// What is left of a level without tones, r.m.s.: the floor between them. Tones taken off one by one would leave their
+// flanks behind where the speed sways.
+std::optional<double> noise_rms(const spectral::Spectrum& spectrum, Interval band) {
+  const auto part = held(spectrum, band);
+  if (!part) return {};
+  const std::vector<double> floor = spectral::noise_floor(spectrum);
   double sum = 0.0;
-  for (const SpectralPeak& peak : channel.velocity_peaks) {
-    if (band.contains(peak.tone.frequency.value)) sum += std::pow(peak.tone.amplitude_rms.value, 2);
+  for (std::size_t k = spectrum.first_line; k < floor.size(); ++k) {
+    if (part->contains(spectrum.frequency(k))) sum += floor[k] * spectrum.line_hz;
   }
-  return sum;
-}
-
-double acceleration_of_tones(const ChannelSpectrum& channel, Interval band) {
-  double sum = 0.0;
-  for (const SpectralPeak& peak : channel.velocity_peaks) {
-    const double f = peak.tone.frequency.value;
-    if (band.contains(f)) sum += std::pow(2.0 * std::numbers::pi * f * peak.tone.amplitude_rms.value, 2);
-  }
-  return sum;
+  return std::sqrt(sum);
 }
 
 void put_noise(machine::ChannelFacts& facts, const ChannelSpectrum& channel, const Site& site) {
   if (channel.severity_velocity) {
-    facts.noise_velocity = without(channel.severity_velocity->value, velocity_of_tones(channel, standard_band(site)));
+    facts.noise_velocity = noise_rms(in_quantity(channel.measured, Quantity::velocity), standard_band(site));
   }
   if (channel.measured.quantity != Quantity::acceleration || channel.measured.density.empty()) return;
   facts.acceleration = channel.features.deviation;
   facts.crest_factor = channel.features.crest_factor;
   facts.kurtosis = channel.features.kurtosis;
   const Interval high{high_frequency_hz, channel.measured.rate_hz / end_of_flat};
-  if (high.lo >= high.hi) return;
-  if (const auto above = level(channel.measured, high)) {
-    facts.noise_acceleration = without(above->value, acceleration_of_tones(channel, high));
-  }
+  if (high.lo < high.hi) facts.noise_acceleration = noise_rms(channel.measured, high);
 }
 
 void put_envelope(machine::ChannelFacts& facts, const ChannelSpectrum& channel) {
@@ -105,8 +95,9 @@ std::optional<machine::SpeedRun> run_of(const ChannelSpectrum& channel, const Ru
     const auto at = [&](std::ptrdiff_t i) { return static_cast<std::size_t>(i); };
     machine::SpeedRun out;
     const double full = moved.amplitude_rms(at(fastest));
-    if (moved.speed_hz[at(slowest)] <= slow * moved.speed_hz[at(fastest)] && full > 0.0 &&
-        moved.amplitude_rms(at(slowest)) > 2.0 * moved.noise[at(slowest)]) {
+    const auto stands_out = [&](std::ptrdiff_t i) { return moved.amplitude_rms(at(i)) > 2.0 * moved.noise[at(i)]; };
+    if (!stands_out(slowest) || !stands_out(fastest)) return out;
+    if (moved.speed_hz[at(slowest)] <= slow * moved.speed_hz[at(fastest)]) {
       out.slow_roll = moved.amplitude_rms(at(slowest)) / full;
     }
     out.phase_change = std::abs(std::arg(moved.value[at(fastest)] / moved.value[at(slowest)]));
@@ -154,7 +145,8 @@ machine::ChannelFacts channel_facts(const ChannelSpectrum& channel, const Spectr
   put_families(facts, channel, spectra);
   if (others.run != nullptr) facts.run = run_of(channel, *others.run);
   for (const OtherTests::Cut& cut : others.power_cuts) {
-    if (cut.channel == channel.channel.name) facts.power_cut = outcome(cut.result);
+    if (cut.channel != channel.channel.name || outcome(cut.result) == machine::TestOutcome::not_made) continue;
+    facts.power_cut = outcome(cut.result);
   }
   return facts;
 }
@@ -180,11 +172,15 @@ void put_phases(machine::Facts& facts, const SpectrumResult& spectra) {
     }
   }
   for (const ChannelSpectrum& channel : spectra.channels) {
-    if (!channel.synchronous) continue;
+    if (!channel.synchronous || !channel.synchronous->speed_hz) continue;
+    const auto n = spectral::integrations_between(channel.synchronous->quantity, Quantity::velocity);
+    if (!n) continue;
     for (const rotation::SynchronousLine& line : channel.synchronous->lines) {
       if (line.order != 1.0 && line.order != 2.0) continue;
-      facts.phases.push_back(
-          {channel.channel.name, "", line.order, line.value, line.phase_u_deg * std::numbers::pi / 180.0, {}});
+      if (line.phase_u_deg > most_phase_u_deg) continue;
+      const auto factor = spectral::integration_factor(*n, line.order * *channel.synchronous->speed_hz);
+      const double u = line.phase_u_deg * std::numbers::pi / 180.0;
+      facts.phases.push_back({channel.channel.name, "", line.order, line.value * factor, u, {}});
     }
   }
 }
@@ -201,6 +197,7 @@ machine::Facts facts_of(const SpectrumResult& spectra, const Site& site, const s
   for (const ChannelSpectrum& channel : spectra.channels) {
     const bool is_vibration = channel.channel.role == recording::Role::vibration;
     if (!is_vibration || !base::is_motion(channel.measured.quantity) || channel.measured.density.empty()) continue;
+    if (channel.measured.averaging == spectral::Averaging::peak_hold) continue;  // neither levels nor tones
     facts.channels.push_back(channel_facts(channel, spectra, site, others));
   }
   put_phases(facts, spectra);

@@ -8,6 +8,7 @@
 
 #include "stillmass/base/error.hpp"
 #include "stillmass/base/number.hpp"
+#include "stillmass/spectral/block_plan.hpp"
 #include "stillmass/spectral/quantity.hpp"
 
 #include "step/levels.hpp"
@@ -22,12 +23,12 @@ constexpr std::size_t most_shapes = 8;       // forcing frequencies of which the
 constexpr std::size_t most_background = 60;  // tones looked for in the background
 constexpr std::size_t most_envelope = 15;    // lines of an envelope
 
-// The channel of another recording that is the same point, else of the same name.
+// The channel of another recording that is the same point, else (where one of them has no point) of the same name.
 std::optional<std::size_t> same_channel(const recording::Recording& recording, const recording::Channel& wanted) {
   for (std::size_t c = 0; c < recording.channels.size(); ++c) {
     const recording::Channel& each = recording.channels[c];
     if (each.role != wanted.role) continue;
-    const bool by_point = !wanted.point.empty() || !each.point.empty();
+    const bool by_point = !wanted.point.empty() && !each.point.empty();
     if (by_point ? each.point == wanted.point : each.name == wanted.name) return c;
   }
   return {};
@@ -39,17 +40,18 @@ std::vector<spectral::Tone> tones_of(const std::vector<SpectralPeak>& peaks) {
   return out;
 }
 
+// Of tones that a finer look parted and the background's lines did not, the nearest alone is the background's.
 void mark(std::vector<SpectralPeak>& peaks, const std::vector<spectral::Tone>& background, double line_hz) {
-  for (const spectral::BackgroundTone& each : spectral::background_tones(tones_of(peaks), background, line_hz)) {
-    peaks[each.running].background = each;
+  const auto partners = spectral::background_tones(tones_of(peaks), background, line_hz);
+  const auto distance = [&](const spectral::BackgroundTone& each) {
+    return std::abs(peaks[each.running].tone.frequency.value - background[each.background].frequency.value);
+  };
+  for (const spectral::BackgroundTone& each : partners) {
+    const bool is_nearest = std::none_of(partners.begin(), partners.end(), [&](const spectral::BackgroundTone& other) {
+      return other.background == each.background && distance(other) < distance(each);
+    });
+    if (is_nearest) peaks[each.running].background = each;
   }
-}
-
-// Lines enough below and above a frequency for the ratios at its line and the noise beside it.
-bool has_room(double frequency_hz, const SpectrumResult& result) {
-  const double side = 2.0 * spectral::lobe_bins(result.options.window) + 2.0;
-  const double place = frequency_hz / result.choice.line_hz;
-  return place > side && place < 0.5 * static_cast<double>(result.choice.length) - side;
 }
 
 // Lines of an envelope at multiples of a bearing's frequency that stands there itself.
@@ -76,15 +78,24 @@ void add_background(SpectrumResult& result, const BackgroundRequest& request, co
   spectral::SpectrumOptions options = result.options;
   options.averaging = spectral::Averaging::mean;
   if (recording.rate_hz != result.recording.rate_hz) {
-    options.block_frames = 0;
-    options.resolution_hz = result.choice.line_hz;
+    options.block_frames = spectral::fast_length_at_least(
+        static_cast<std::size_t>(std::ceil(recording.rate_hz / result.choice.line_hz - 1e-9)));
   }
   const recording::FrameRange range = frames_of(recording, request.part);
+  if (spectral::count_blocks(recording, range, options.block_frames, options.overlap) == 0) {
+    result.refusals.push_back(
+        {"no-background",
+         fmt::format("the background is shorter than a block of {} s", base::rounded(1.0 / result.choice.line_hz)),
+         "record the stopped machine as long as the running one, or ask for coarser lines"});
+    return;
+  }
   const auto spectra = spectral::averaged_spectra(*request.reader, range, options, context);
+  bool is_compared = false;
   for (ChannelSpectrum& each : result.channels) {
     if (!base::is_motion(each.measured.quantity) || each.measured.density.empty()) continue;
     const auto at = same_channel(recording, each.channel);
     if (!at || spectra[*at].density.empty() || !base::is_motion(spectra[*at].quantity)) continue;
+    is_compared = true;
     const spectral::Spectrum shown = in_quantity(spectra[*at], each.shown.quantity);
     const double line_hz = std::max(shown.line_hz, each.shown.line_hz);
     spectral::ToneOptions tone_options;
@@ -92,7 +103,8 @@ void add_background(SpectrumResult& result, const BackgroundRequest& request, co
     const auto found = spectral::tones(shown, tone_options);
     mark(each.peaks, found, line_hz);
     mark(each.velocity_peaks, spectral::tones(in_quantity(spectra[*at], Quantity::velocity), tone_options), line_hz);
-    if (shown.density.size() == each.shown.density.size()) each.background_density = shown.density;
+    const bool same_lines = std::abs(shown.line_hz - each.shown.line_hz) <= 1e-9 * each.shown.line_hz;
+    if (same_lines && shown.density.size() == each.shown.density.size()) each.background_density = shown.density;
     const spectral::Spectrum running = in_quantity(each.measured, Quantity::velocity);
     const spectral::Spectrum stopped = in_quantity(spectra[*at], Quantity::velocity);
     const auto band = held(running, standard_band(site));
@@ -100,6 +112,10 @@ void add_background(SpectrumResult& result, const BackgroundRequest& request, co
     if (both && running.averaging == spectral::Averaging::mean) {
       each.background = spectral::without_background(running, stopped, *both);
     }
+  }
+  if (!is_compared) {
+    result.refusals.push_back({"no-background", "no channel of the background is one of this recording",
+                               "name points or channels of both recordings alike"});
   }
 }
 
@@ -146,7 +162,8 @@ void add_deflections(SpectrumResult& result, const recording::Reader& reader, co
     const bool is_near = std::any_of(frequencies.begin(), frequencies.end(), [&](double other) {
       return std::abs(other - frequency) < 4.0 * result.choice.line_hz;
     });
-    if (is_near || frequencies.size() == most_shapes || !has_room(frequency, result)) continue;
+    const bool has_room = spectral::has_room(frequency, result.recording.rate_hz, result.choice.length, options);
+    if (is_near || !has_room || frequencies.size() == most_shapes) continue;
     OperatingDeflection each;
     each.name = peak->cause.forcing ? result.forcing[*peak->cause.forcing].name
                                     : fmt::format("{} Hz", base::rounded(frequency, 4));

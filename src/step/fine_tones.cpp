@@ -47,6 +47,18 @@ std::string note_of(const ToneCluster& cluster) {
   return "";
 }
 
+// Where to look at a tone: no further than half way to the next ones, which are looked at by themselves.
+base::Interval band_of(const std::vector<Tone>& tones, std::size_t which, const spectral::Spectrum& spectrum) {
+  const double at = tones[which].frequency.value;
+  base::Interval band = spectral::band_around(tones[which], spectrum);
+  for (const Tone& other : tones) {
+    const double half_way = 0.5 * (at + other.frequency.value);
+    if (other.frequency.value < at) band.lo = std::max(band.lo, half_way);
+    if (other.frequency.value > at) band.hi = std::min(band.hi, half_way);
+  }
+  return band;
+}
+
 // A tone of a cluster in the place of the peak of the averaged spectrum.
 Tone part_of_peak(const Tone& peak, const spectral::CloseTone& close) {
   Tone tone = peak;
@@ -72,7 +84,7 @@ std::vector<std::vector<FineTone>> fine_tones(const recording::Reader& reader, r
       const Tone& tone = all[i].tones[t];
       if (tone.prominence < least_prominence || !spectral::suspect(tone)) continue;
       suspects.push_back({i, t});
-      bands.push_back({all[i].channel, spectral::band_around(tone, *spectra[i])});
+      bands.push_back({all[i].channel, band_of(all[i].tones, t, *spectra[i])});
       ++found;
     }
   }

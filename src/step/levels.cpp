@@ -61,6 +61,12 @@ base::Answer<std::optional<machine::Support>> support_of(const SpectrumRequest& 
   return std::optional(*measured);
 }
 
+bool is_usable(const ChannelSpectrum& channel, const SpectrumRequest& request) {
+  const bool judged_unusable =
+      std::find(request.unusable.begin(), request.unusable.end(), channel.channel.name) != request.unusable.end();
+  return !judged_unusable && channel.features.at_full_scale.value_or(0) < cut_samples;
+}
+
 base::Answer<Severity> severity_of(const ChannelSpectrum& channel, const SpectrumRequest& request,
                                    const spectral::Spectrum& velocity, const std::optional<Estimate>& forcing_1x) {
   if (!request.runs_steadily) {
@@ -97,9 +103,7 @@ base::Answer<Severity> severity_of(const ChannelSpectrum& channel, const Spectru
     levels.displacement_pp = peak_to_peak(channel, levels.displacement);
   }
   levels.unit_known = channel.channel.unit_known;
-  const bool judged_unusable =
-      std::find(request.unusable.begin(), request.unusable.end(), channel.channel.name) != request.unusable.end();
-  levels.usable = !judged_unusable && channel.features.at_full_scale.value_or(0) < cut_samples;
+  levels.usable = is_usable(channel, request);
   const auto verdict = machine::judge(*limits, levels);
   if (!verdict) return verdict.refusal();
   return Severity{*limits, *verdict, levels.velocity.value};
@@ -125,8 +129,9 @@ Estimate with_calibration(Estimate level, const recording::Channel& channel) {
 std::optional<Interval> held(const spectral::Spectrum& spectrum, Interval band_hz) {
   if (spectrum.density.empty()) return {};
   const Interval given{spectrum.frequency(spectrum.first_line), spectrum.rate_hz / 2.0};
-  if (!band_hz.intersects(given) || given.lo >= given.hi) return {};
-  return Interval{std::max(band_hz.lo, given.lo), std::min(band_hz.hi, given.hi)};
+  const Interval both{std::max(band_hz.lo, given.lo), std::min(band_hz.hi, given.hi)};
+  if (both.lo >= both.hi) return {};  // nor where they only touch
+  return both;
 }
 
 std::optional<Estimate> level(const spectral::Spectrum& spectrum, Interval band_hz) {
@@ -151,7 +156,7 @@ void judge_channel(ChannelSpectrum& channel, const SpectrumRequest& request,
   channel.severity = severity_of(channel, request, velocity, forcing_1x);
   const SitePoint* point = request.site.point(channel.channel.point);
   if (!channel.severity_velocity || !channel.channel.unit_known || point == nullptr) return;
-  if (!request.runs_steadily) return;
+  if (!request.runs_steadily || !is_usable(channel, request)) return;
   const bool wanted = request.site.standard == typical_standard || request.site.standard.empty();
   if (!channel.severity && point->on_bearing_housing && wanted) {
     channel.typical = machine::against_ranges(machine::typical_ranges(), *channel.severity_velocity);

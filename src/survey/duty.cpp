@@ -53,12 +53,24 @@ std::string common_reference(const Survey& survey) {
     } else {
       std::vector<std::string> both;
       std::set_intersection(common.begin(), common.end(), points.begin(), points.end(), std::back_inserter(both));
-      differ = differ || both.size() < points.size();
+      differ = differ || both.size() < points.size() || both.size() < common.size();
       common = both;
     }
     is_first = false;
   }
   return differ && !common.empty() ? common.front() : std::string();
+}
+
+// That point where the recording has it beside another channel of motion, else none.
+std::string reference_in(const recording::Reader& reader, const std::string& point) {
+  std::size_t moving = 0;
+  bool is_there = false;
+  for (const recording::Channel& channel : reader.recording().channels) {
+    if (channel.role != recording::Role::vibration || !base::is_motion(channel.unit.quantity)) continue;
+    ++moving;
+    is_there = is_there || channel.point == point;
+  }
+  return moving > 1 && is_there ? point : std::string();
 }
 
 // The single channels of several recordings at one order of the speed.
@@ -133,7 +145,7 @@ step::SpectrumResult steady_spectrum(const SurveyResult& result, std::size_t rec
   request.speed_hz = which.speed_hz;
   request.modes = result.modes;
   request.synchronous = synchronous_settings(which, *readers[recording]);
-  request.reference = common_reference(survey);
+  request.reference = reference_in(*readers[recording], common_reference(survey));
   if (const SurveyRecording* stopped = background_of(survey, which.stage)) {
     const auto position = static_cast<std::size_t>(stopped - survey.recordings.data());
     request.background = {readers[position].get(), part_of(*stopped)};

@@ -7,61 +7,25 @@
 #include "stillmass/numeric/random.hpp"
 #include "stillmass/step/spectrum.hpp"
 
+#include "step/spectrum_signals.hpp"
 #include "support/catch.hpp"
 #include "support/memory_reader.hpp"
 
 using namespace stillmass;
+using tests::acceleration;
+using tests::analysed;
+using tests::Part;
+using tests::rate;
+using tests::two_pi;
+using tests::two_pole_fan;
 
 namespace {
-
-constexpr double rate = 4096.0;
-constexpr double two_pi = 2.0 * std::numbers::pi;
-
-struct Part {
-  double frequency = 0.0;
-  double velocity = 0.0;  // r.m.s., m/s
-  double phase = 0.0;
-};
-
-// Acceleration of tones given by their velocity, in white noise of that r.m.s. acceleration.
-std::vector<double> acceleration(double seconds, const std::vector<Part>& parts, double noise, std::uint64_t which) {
-  const numeric::Random random(77);
-  std::vector<double> x(static_cast<std::size_t>(seconds * rate));
-  for (std::size_t i = 0; i < x.size(); ++i) {
-    const double t = static_cast<double>(i) / rate;
-    for (const Part& part : parts) {
-      const double omega = two_pi * part.frequency;
-      x[i] += std::numbers::sqrt2 * omega * part.velocity * std::cos(omega * t + part.phase);
-    }
-    x[i] += noise * random.normal(which, static_cast<std::uint32_t>(i));
-  }
-  return x;
-}
-
-// A 30 kW fan on the line: two poles, 2985 r/min.
-step::Site two_pole_fan() {
-  step::Site site;
-  site.machine.emplace();
-  site.machine->kind = machine::MachineKind::fan;
-  site.machine->power_w = 30e3;
-  site.machine->speed_hz = base::Interval{49.7, 49.7};
-  site.machine->line_frequency_hz = 50.0;
-  site.machine->motor_poles = 2;
-  site.machine->foundation = machine::Support::rigid;
-  site.points = {{"fan-h", "horizontal", true}, {"fan-v", "vertical", true}, {"frame", "vertical", false}};
-  return site;
-}
 
 const step::SpectralPeak* peak_of(const step::ChannelSpectrum& channel, double frequency, double within) {
   const auto at = std::find_if(channel.peaks.begin(), channel.peaks.end(), [&](const step::SpectralPeak& peak) {
     return std::abs(peak.tone.frequency.value - frequency) < within;
   });
   return at == channel.peaks.end() ? nullptr : &*at;
-}
-
-step::SpectrumResult analysed(std::vector<tests::MemoryChannel> channels, step::SpectrumRequest request) {
-  const tests::MemoryReader reader(rate, std::move(channels));
-  return step::spectrum(reader, request, {});
 }
 
 }  // namespace

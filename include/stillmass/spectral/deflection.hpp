@@ -64,6 +64,10 @@ struct DeflectionOptions {
   double least_coherence = 0.5;            ///< below, half of what is under the peak is not the reference's: not given
 };
 
+/// Whether blocks of that length leave room for a deflection at this frequency (Hz): its peak, as far as it wanders,
+/// stands clear of the window's lobe about 0 Hz and of the last line. Where not, `DeflectionConsumer` throws.
+bool has_room(double frequency_hz, double rate_hz, std::size_t block_frames, const DeflectionOptions& options);
+
 /// Deflections at given frequencies as a consumer. Every channel is transformed once a block; sums of products are held
 /// at the lines about the frequencies only, so memory depends on frequencies and channels (64 channels: about 0.3 MB a
 /// frequency), not on lines or length. Channels of motion take part; forces, tachos and unknown units are left out.
