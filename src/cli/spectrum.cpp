@@ -102,10 +102,8 @@ std::string background_file(const Session& session, const std::string& file) {
   if (!session.survey()) return {};
   const survey::SurveyRecording* entry = session.entry(file);
   if (entry == nullptr || entry->kind != survey::Kind::steady || !entry->running) return {};
-  for (const survey::SurveyRecording& each : session.survey()->recordings) {
-    if (each.kind == survey::Kind::background && each.stage == entry->stage) return each.file.string();
-  }
-  return {};
+  const survey::SurveyRecording* stopped_machine = survey::background_of(*session.survey(), entry->stage);
+  return stopped_machine != nullptr ? stopped_machine->file.string() : std::string();
 }
 
 }  // namespace

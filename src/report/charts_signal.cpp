@@ -170,7 +170,8 @@ Chart spectrum_chart(const step::SpectrumResult& result, const step::ChannelSpec
   return chart;
 }
 
-std::optional<Chart> severity_chart(const step::SpectrumResult& before, const step::SpectrumResult* after,
+std::optional<Chart> severity_chart(std::span<const step::ChannelSpectrum* const> before,
+                                    std::span<const step::ChannelSpectrum* const> after,
                                     std::optional<double> target_m_s) {
   Chart chart;
   chart.title = "How bad is it";
@@ -178,32 +179,30 @@ std::optional<Chart> severity_chart(const step::SpectrumResult& before, const st
   Panel panel;
   panel.y = {"Broad-band velocity", "mm/s r.m.s."};
   Series now;
-  now.name = after != nullptr ? "before" : "measured";
+  now.name = after.empty() ? "measured" : "before";
   now.style = Style::bars;
   now.segments.emplace_back();
   const step::Severity* severity = nullptr;
-  for (const step::ChannelSpectrum& channel : before.channels) {
-    if (!channel.severity_velocity) continue;
+  for (const step::ChannelSpectrum* channel : before) {
+    if (!channel->severity_velocity) continue;
     now.segments[0].x.push_back(static_cast<double>(chart.x.categories.size()));
-    now.segments[0].y.push_back(channel.severity_velocity->value * 1e3);
-    chart.x.categories.push_back(channel.channel.name);
-    if (channel.severity) severity = &*channel.severity;
+    now.segments[0].y.push_back(channel->severity_velocity->value * 1e3);
+    chart.x.categories.push_back(channel->channel.name);
+    if (channel->severity) severity = &*channel->severity;
   }
   if (chart.x.categories.empty()) return {};
   panel.series.push_back(std::move(now));
-  if (after != nullptr) {
-    Series later;
-    later.name = "after fitting";
-    later.style = Style::bars;
-    later.segments.emplace_back();
-    for (const step::ChannelSpectrum& channel : after->channels) {
-      const auto at = std::find(chart.x.categories.begin(), chart.x.categories.end(), channel.channel.name);
-      if (at == chart.x.categories.end() || !channel.severity_velocity) continue;
-      later.segments[0].x.push_back(static_cast<double>(at - chart.x.categories.begin()));
-      later.segments[0].y.push_back(channel.severity_velocity->value * 1e3);
-    }
-    if (!later.segments[0].x.empty()) panel.series.push_back(std::move(later));
+  Series later;
+  later.name = "after fitting";
+  later.style = Style::bars;
+  later.segments.emplace_back();
+  for (const step::ChannelSpectrum* channel : after) {
+    const auto at = std::find(chart.x.categories.begin(), chart.x.categories.end(), channel->channel.name);
+    if (at == chart.x.categories.end() || !channel->severity_velocity) continue;
+    later.segments[0].x.push_back(static_cast<double>(at - chart.x.categories.begin()));
+    later.segments[0].y.push_back(channel->severity_velocity->value * 1e3);
   }
+  if (!later.segments[0].x.empty()) panel.series.push_back(std::move(later));
   if (severity != nullptr) {
     const auto& limits = severity->limits.velocity;
     chart.caption = fmt::format("Zones of {}, {}.", severity->limits.standard, severity->limits.category);

@@ -82,7 +82,9 @@ Page page(const Envelope& envelope, const step::SpectrumResult& result, const Sp
   }
   if (result.speed) out.lines.push_back({"Speed", with_u(*result.speed, 60.0, "rpm")});
   std::vector<Block> level;
-  if (auto chart = severity_chart(result, nullptr, {})) level.emplace_back(std::move(*chart));
+  std::vector<const step::ChannelSpectrum*> channels;
+  for (const step::ChannelSpectrum& each : result.channels) channels.push_back(&each);
+  if (auto chart = severity_chart(channels, {}, {})) level.emplace_back(std::move(*chart));
   add(out, "Levels", std::move(level));
   add(out, "What drives it", cause_blocks(result.causes));
   add(out, "How it moves", deflection_blocks(result.shapes));
@@ -156,8 +158,9 @@ Page page(const Envelope& envelope, const survey::SurveyResult& result) {
   const step::SpectrumResult* after = spectra_of(survey::Stage::after);
 
   std::vector<Block> severity;
-  if (before != nullptr) {
-    if (auto chart = severity_chart(*before, after, result.target_m_s)) severity.emplace_back(std::move(*chart));
+  const auto loudest_before = survey::loudest(result, survey::Stage::before);
+  if (auto chart = severity_chart(loudest_before, survey::loudest(result, survey::Stage::after), result.target_m_s)) {
+    severity.emplace_back(std::move(*chart));
   }
   if (!result.after.empty()) {
     Table table;
@@ -234,11 +237,8 @@ Page page(const Envelope& envelope, const survey::SurveyResult& result) {
   sketch.title = result.survey.machine.name;
   for (const survey::Point& point : result.survey.points) {
     SketchPoint place{point.name, point.position_m, point.direction, "", false};
-    if (before != nullptr) {
-      for (const step::ChannelSpectrum& each : before->channels) {
-        if (each.channel.point == point.name && each.severity_velocity)
-          place.remark = velocity_text(each.severity_velocity->value);
-      }
+    for (const step::ChannelSpectrum* each : loudest_before) {
+      if (each->channel.point == point.name) place.remark = velocity_text(each->severity_velocity->value);
     }
     place.absorber = std::any_of(result.survey.absorbers.begin(), result.survey.absorbers.end(),
                                  [&](const survey::AbsorberSite& site) { return site.point == point.name; });

@@ -316,14 +316,15 @@ Section inputs_section(const Envelope& envelope) {
   Section section;
   section.heading = "Inputs";
   Table table;
-  table.header = {"file", "format", "rate", "duration", "channels", "SHA-256"};
+  table.header = {"file", "format", "rate", "duration", "channels"};
+  if (!envelope.hashes.empty()) table.header.emplace_back("SHA-256");
   for (std::size_t i = 0; i < envelope.inputs.size(); ++i) {
     const recording::Recording& recording = envelope.inputs[i];
     table.rows.push_back({recording.file.filename().string(), recording.format, base::plain(recording.rate_hz) + " Hz",
-                          base::plain(recording.duration_s(), 4) + " s", std::to_string(recording.channels.size()),
-                          i < envelope.hashes.size() ? envelope.hashes[i].substr(0, 16) : ""});
+                          base::plain(recording.duration_s(), 4) + " s", std::to_string(recording.channels.size())});
+    if (i < envelope.hashes.size()) table.rows.back().push_back(envelope.hashes[i].substr(0, 16));
   }
-  table.notes = {"The first 16 digits of the hash; the JSON result has all of them."};
+  if (!envelope.hashes.empty()) table.notes = {"The first 16 digits of the hash; the JSON result has all of them."};
   section.blocks.emplace_back(std::move(table));
   return section;
 }

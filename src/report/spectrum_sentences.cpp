@@ -147,6 +147,25 @@ std::string features_sentence(const step::ChannelSpectrum& channel) {
   return text;
 }
 
+std::string largest_line_sentence(std::span<const step::ChannelSpectrum* const> channels) {
+  const step::SpectralPeak* largest = nullptr;
+  const step::ChannelSpectrum* where = nullptr;
+  for (const step::ChannelSpectrum* channel : channels) {
+    for (const step::SpectralPeak& peak : channel->velocity_peaks) {
+      if (peak.in_background() || !channel->severity_velocity) continue;
+      if (largest != nullptr && peak.tone.amplitude_rms.value <= largest->tone.amplitude_rms.value) continue;
+      largest = &peak;
+      where = channel;
+    }
+  }
+  if (largest == nullptr) return "";
+  const double share = largest->tone.amplitude_rms.value / where->severity_velocity->value;
+  return fmt::format(
+      "no rule explains it; the largest line is {} at {} Hz: {} r.m.s. at {}, {:.0f} % of the level there",
+      largest->cause.text, rounded(largest->tone.frequency.value, 4), velocity_text(largest->tone.amplitude_rms.value),
+      where->channel.name, 100.0 * std::min(share, 1.0));
+}
+
 std::string cause_text(const step::SpectralPeak& peak) {
   std::string text = peak.cause.text;
   if (peak.background && peak.background->is_marked) {

@@ -1,5 +1,6 @@
 #pragma once
 
+#include <span>
 #include <string>
 #include <vector>
 
@@ -21,6 +22,8 @@ std::string overall_sentence(const step::SpectrumResult& result, const step::Cha
 std::vector<std::string> judgements(const step::ChannelSpectrum& channel);
 /// "as measured: r.m.s. 1.20 m/s2, peak 3.40 m/s2, crest factor 2.8, kurtosis 1.6".
 std::string features_sentence(const step::ChannelSpectrum& channel);
+/// Where no rule speaks: the line that moves a channel most, and its share of the level; empty where none stands out.
+std::string largest_line_sentence(std::span<const step::ChannelSpectrum* const> channels);
 /// The cause with what a finer look or the background says.
 std::string cause_text(const step::SpectralPeak& peak);
 /// Harmonics and side bands that were found without the speed, one sentence each.

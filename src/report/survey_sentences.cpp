@@ -7,6 +7,8 @@
 #include "stillmass/base/number.hpp"
 #include "stillmass/report/sentences.hpp"
 
+#include "report/spectrum_sentences.hpp"
+
 // What a survey says in sentences: its lines, its verdict, its cautions, the measuring plan.
 namespace stillmass::report {
 namespace {
@@ -102,7 +104,8 @@ Line cause_line(const survey::SurveyResult& result) {
     if (finding.evidence.empty()) continue;  // what is assumed on the way
     return {"Cause", cause_sentence(finding), Tone::neutral};
   }
-  return {"Cause", "no cause stands out of these recordings", Tone::caution};
+  const std::string line = largest_line_sentence(survey::loudest(result, survey::Stage::before));
+  return {"Cause", line.empty() ? "no cause stands out of these recordings" : line, Tone::caution};
 }
 
 std::string mode_text(const modal::Mode& mode) {

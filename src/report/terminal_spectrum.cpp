@@ -93,7 +93,14 @@ std::string text(const step::SpectrumResult& result, const SpectrumView& view) {
     out += "\nHow it moves (ratio to the reference, phase lead):\n" + deflection_tables(result.shapes);
     for (const std::string& each : deflection_notes(result.shapes)) out += bullet(base::printable(each));
   }
-  if (!result.causes.empty()) out += "\nWhat drives it:\n" + cause_lines(result.causes);
+  if (!result.causes.empty()) {
+    out += "\nWhat drives it:\n" + cause_lines(result.causes);
+  } else if (!result.forcing.empty()) {
+    std::vector<const step::ChannelSpectrum*> channels;
+    for (const step::ChannelSpectrum& each : result.channels) channels.push_back(&each);
+    const std::string line = largest_line_sentence(channels);
+    if (!line.empty()) out += "\nWhat drives it:\n" + bullet(base::printable(line));
+  }
   if (!result.refusals.empty()) {
     out += "\nNot answered:\n";
     for (const base::Refusal& each : result.refusals) out += bullet(base::printable(sentence(each)));

@@ -56,15 +56,19 @@ void mark(std::vector<SpectralPeak>& peaks, const std::vector<spectral::Tone>& b
 
 // Lines of an envelope at multiples of a bearing's frequency that stands there itself.
 void name_multiples(std::vector<EnvelopePeak>& peaks, const std::vector<machine::Forcing>& forcing, double line_hz) {
+  constexpr double greatest = 12.0;
   for (const EnvelopePeak& first : peaks) {
-    if (!first.cause.forcing) continue;
+    if (!first.cause.forcing continue;
     const machine::Forcing& force = forcing[*first.cause.forcing];
     if (force.kind != machine::ForcingKind::bearing || force.harmonic != 1) continue;
     for (EnvelopePeak& other : peaks) {
       if (other.cause.text != machine::unexplained) continue;
       const double number = std::round(other.tone.frequency.value / first.tone.frequency.value);
       const double off = std::abs(other.tone.frequency.value - number * first.tone.frequency.value);
-      if (number < 2.0 || off > std::max(line_hz, 3.0 * number * first.tone.frequency.u.value_or(0.0))) continue;
+      if (number < 2.0 || number > greatest ||
+          off > std::max(std::min(line_hz, 0.1 * first.tone.frequency.value),
+                         3.0 * number * first.tone.frequency.u.value_or(0.0)))
+        continue;
       other.cause.text = fmt::format("{:.0f}x {}", number, force.name);
     }
   }

@@ -98,7 +98,7 @@ std::vector<std::vector<FineTone>> fine_tones(const recording::Reader& reader, r
       const auto suspect = std::find_if(suspects.begin(), suspects.end(),
                                         [&](const Suspect& each) { return each.of == i && each.tone == t; });
       if (suspect == suspects.end()) {
-        out[i].push_back({tone, Closeness::none, {}, {}, spectra[i]->line_hz});
+        out[i].push_back({tone, Closeness::none, {}, {}, {}, spectra[i]->line_hz});
         continue;
       }
       const ToneCluster& measured = clusters[static_cast<std::size_t>(suspect - suspects.begin())];
@@ -110,12 +110,13 @@ std::vector<std::vector<FineTone>> fine_tones(const recording::Reader& reader, r
       if (cluster.closeness == Closeness::resolved) {
         for (const spectral::CloseTone& close : cluster.tones) {
           out[i].push_back(
-              {part_of_peak(tone, close), cluster.closeness, note_of(cluster), {}, cluster.least_spacing_hz});
+              {part_of_peak(tone, close), cluster.closeness, note_of(cluster), {}, {}, cluster.least_spacing_hz});
         }
       } else {
         const bool wanders = cluster.closeness == Closeness::unsteady && !cluster.tones.empty();
         out[i].push_back({wanders ? part_of_peak(tone, cluster.tones.front()) : tone, cluster.closeness,
-                          note_of(cluster), wanders ? cluster.wander_hz : std::nullopt, spectra[i]->line_hz});
+                          note_of(cluster), wanders ? cluster.wander_hz : std::nullopt,
+                          wanders ? cluster.variation : std::nullopt, spectra[i]->line_hz});
       }
     }
     std::stable_sort(out[i].begin(), out[i].end(), [](const FineTone& a, const FineTone& b) {

@@ -18,6 +18,7 @@ struct FineTone {
   spectral::Closeness closeness = spectral::Closeness::none;
   std::string note;
   std::optional<double> wander_hz{};
+  std::optional<double> variation{};
   double resolution_hz = 0.0;  ///< tones closer than this are one
 };
 

@@ -23,6 +23,7 @@ using base::Interval;
 using base::Quantity;
 
 constexpr std::size_t most_tones = 60;      // of a channel: for causes and families
+constexpr double much_wander = 0.005;       // of the speed: lines are smeared (common practice)
 constexpr double coarse = 0.25;             // of the speed: lines so far apart do not show it
 constexpr double shocks_kurtosis = 20.0;    // single blows, not a running machine (common practice)
 constexpr std::int64_t full_scale_run = 3;  // samples at full scale that make a finding (as `check` has it)
@@ -147,6 +148,7 @@ void find_peaks(SpectrumResult& result, const recording::Reader& reader, const S
       peak.closeness = found.closeness;
       peak.note = found.note;
       peak.wander_hz = found.wander_hz;
+      peak.variation = found.variation;
       each.peaks.push_back(peak);
       resolutions.back().push_back(found.resolution_hz);
       if (!base::is_motion(each.shown.quantity)) continue;
@@ -214,7 +216,6 @@ void find_families(SpectrumResult& result) {
 // here, tried on the demo). Wander beyond what a load makes is a finding.
 void account_for_wander(SpectrumResult& result) {
   constexpr double dwell = 1.0 / 3.0;
-  constexpr double much = 0.005;  // of the speed: lines are smeared (common practice)
   machine::RunningSpeed& found = *result.refined_speed;
   for (const ChannelSpectrum& channel : result.channels) {
     for (const SpectralPeak& peak : channel.velocity_peaks) {
@@ -226,7 +227,7 @@ void account_for_wander(SpectrumResult& result) {
   }
   found.speed.u = std::hypot(found.speed.u.value_or(0.0), dwell * found.wander * found.speed.value);
   result.speed = found.speed;
-  if (found.wander < much) return;
+  if (found.wander < much_wander) return;
   result.findings.push_back(
       {base::Code::speed_varies,
        fmt::format("the speed varies by {:.2g} % r.m.s. about {:.0f} r/min: the lines that follow it are "
@@ -291,16 +292,24 @@ void find_causes(SpectrumResult& result, const SpectrumRequest& request,
       peaks.push_back({peak.tone.frequency, peak.tone.amplitude_rms.value, c, peak.tone.breadth});
       if (peak.in_background()) stopped.push_back(peaks.back());
     }
+    // Lines of a shaft whose speed varies are broad and scatter too.
+    const bool varies = result.refined_speed && result.refined_speed->wander >= much_wander;
     auto causes = machine::causes_of_peaks(peaks, each.shown.line_hz, result.forcing, request.modes, stopped);
     for (std::size_t i = 0; i < each.peaks.size(); ++i) {
       SpectralPeak& peak = each.peaks[i];
-      if (is_random(peak.tone)) {  // a resonance under noise is no line of a shaft
+      if (is_random(peak.tone) && !varies) {  // a resonance under noise is no line of a shaft
         causes[i] =
             machine::cause_of_peak(peak.tone.frequency, resolutions[c][i], {}, request.modes, peak.in_background());
       }
       if (resolutions[c][i] < each.shown.line_hz) {  // parted by a finer look
         causes[i] = machine::cause_of_peak(peak.tone.frequency, resolutions[c][i], result.forcing, request.modes,
                                            peak.in_background());
+      }
+      // An amplitude that comes and goes is a resonance under noise more often than a side band.
+      constexpr double comes_and_goes = 0.2;
+      const auto& force = causes[i].forcing;
+      if (peak.variation.value_or(0.0) > comes_and_goes && force && result.forcing[*force].rank > 0) {
+        causes[i] = machine::cause_of_peak(peak.tone.frequency, resolutions[c][i], {}, request.modes);
       }
       peak.cause = std::move(causes[i]);
       if (i < each.velocity_peaks.size()) each.velocity_peaks[i].cause = peak.cause;

@@ -129,10 +129,13 @@ step::Part part_of(const SurveyRecording& recording) {
 }
 
 const SurveyRecording* background_of(const Survey& survey, Stage stage) {
-  const auto at = std::find_if(survey.recordings.begin(), survey.recordings.end(), [&](const SurveyRecording& each) {
-    return each.kind == Kind::background && each.stage == stage;
-  });
-  return at == survey.recordings.end() ? nullptr : &*at;
+  const SurveyRecording* any = nullptr;
+  for (const SurveyRecording& each : survey.recordings) {
+    if (each.kind != Kind::background) continue;
+    if (each.stage == stage) return &each;
+    if (any == nullptr) any = &each;
+  }
+  return any;
 }
 
 step::SpectrumResult steady_spectrum(const SurveyResult& result, std::size_t recording, const Readers& readers,
@@ -211,13 +214,65 @@ std::vector<step::OperatingDeflection> shapes(const SurveyResult& result) {
   return {};
 }
 
-std::vector<base::Finding> diagnosis(const SurveyResult& result, const step::SpectrumResult& spectra) {
+std::vector<base::Finding> diagnosis(const SurveyResult& result) {
   step::OtherTests others;
   for (const auto& [index, run] : result.runups) {
     if (result.survey.recordings[index].stage == Stage::before && run.runup && others.run == nullptr) others.run = &run;
   }
   for (const auto& [index, cut] : result.power_cuts) others.power_cuts.push_back(cut);
-  return step::diagnosed(spectra, site_of(result.survey), result.modes, others);
+
+  std::vector<const step::SpectrumResult*> loudest_first;
+  for (const auto& [index, spectra] : result.spectra) {
+    if (is_duty(result.survey.recordings[index])) loudest_first.push_back(&spectra);
+  }
+  const auto level_of = [](const step::SpectrumResult& spectra) {
+    double most = 0.0;
+    for (const auto& channel : spectra.channels) {
+      if (channel.severity_velocity) most = std::max(most, channel.severity_velocity->value);
+    }
+    return most;
+  };
+  std::stable_sort(loudest_first.begin(), loudest_first.end(),
+                   [&](const auto* a, const auto* b) { return level_of(*a) > level_of(*b); });
+
+  const auto about = [](const base::Finding& each) { return each.text.substr(0, each.text.find(" at ")); };
+  std::vector<base::Finding> all;
+  for (const step::SpectrumResult* spectra : loudest_first) {
+    for (base::Finding& each : step::diagnosed(*spectra, site_of(result.survey), result.modes, others)) {
+      const auto same = std::find_if(all.begin(), all.end(), [&](const base::Finding& known) {
+        return known.code == each.code && about(known) == about(each);
+      });
+      if (same == all.end()) {
+        all.push_back(std::move(each));
+      } else if (each.strength > same->strength) {
+        *same = std::move(each);
+      }
+    }
+  }
+  std::stable_sort(all.begin(), all.end(), [](const auto& a, const auto& b) { return a.strength > b.strength; });
+  return all;
+}
+
+std::vector<const step::ChannelSpectrum*> loudest(const SurveyResult& result, Stage stage) {
+  std::vector<const step::ChannelSpectrum*> out;
+  const auto place = [](const step::ChannelSpectrum& each) {
+    return each.channel.point.empty() ? each.channel.name : each.channel.point;
+  };
+  for (const auto& [index, spectra] : result.spectra) {
+    const SurveyRecording& recording = result.survey.recordings[index];
+    if (recording.stage != stage || !recording.running) continue;
+    for (const step::ChannelSpectrum& channel : spectra.channels) {
+      if (!channel.severity_velocity) continue;
+      const auto known =
+          std::find_if(out.begin(), out.end(), [&](const auto* each) { return place(*each) == place(channel); });
+      if (known == out.end()) {
+        out.push_back(&channel);
+      } else if ((*known)->severity_velocity->value < channel.severity_velocity->value) {
+        *known = &channel;
+      }
+    }
+  }
+  return out;
 }
 
 }  // namespace stillmass::survey

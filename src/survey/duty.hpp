@@ -13,9 +13,6 @@ using Readers = std::vector<std::unique_ptr<recording::Reader>>;
 
 step::Part part_of(const SurveyRecording& recording);
 
-/// The recording of the stopped machine with its neighbours running, of that stage; null where there is none.
-const SurveyRecording* background_of(const Survey& survey, Stage stage);
-
 /// The spectra of one steady recording, with the modes, the verdicts of the check and the background of its stage.
 step::SpectrumResult steady_spectrum(const SurveyResult& result, std::size_t recording, const Readers& readers,
                                      const base::Context& context);
@@ -33,7 +30,8 @@ std::vector<Of<step::OtherTests::Cut>> power_cuts(const SurveyResult& result, co
 /// that were moved without one. Empty with one recording.
 std::vector<step::OperatingDeflection> shapes(const SurveyResult& result);
 
-/// What drives the vibration, with what the run and the power cut add.
-std::vector<base::Finding> diagnosis(const SurveyResult& result, const step::SpectrumResult& spectra);
+/// What drives the vibration, with what the run and the power cut add: of every steady recording before, the loudest
+/// first; of the same finding about the same line the strongest counts.
+std::vector<base::Finding> diagnosis(const SurveyResult& result);
 
 }  // namespace stillmass::survey

@@ -289,7 +289,7 @@ SurveyResult run(const Survey& stated, const base::Context& context) {
   const step::SpectrumResult* spectra = duty(result);
   result.power_cuts = power_cuts(result, readers, part_of(context, step, steps));
   result.shapes = shapes(result);
-  if (spectra != nullptr) result.findings = diagnosis(result, *spectra);
+  result.findings = diagnosis(result);
   result.findings.insert(result.findings.end(), result.calibrations.findings.begin(),
                          result.calibrations.findings.end());
   set_target(result, spectra);

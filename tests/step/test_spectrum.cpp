@@ -131,6 +131,55 @@ TEST_CASE("a signal that does not vary is said to be none") {
                     [](const base::Finding& each) { return each.code == base::Code::no_signal; }));
 }
 
+TEST_CASE("a speed that changes is said, and so are single shocks") {
+  std::vector<double> sweep(static_cast<std::size_t>(60.0 * rate));
+  double phase = 0.0;
+  for (std::size_t i = 0; i < sweep.size(); ++i) {
+    const double t = static_cast<double>(i) / rate;
+    const double sway =
+        std::sin(two_pi * t / 17.0) + std::sin(two_pi * t / 11.3 + 1.0) + std::sin(two_pi * t / 7.7 + 2.0);
+    phase += two_pi * (50.0 + 0.5 * sway) / rate;
+    sweep[i] = std::cos(phase) + 0.3 * std::cos(2.0 * phase + 1.0);
+  }
+  step::SpectrumRequest request;
+  request.site = two_pole_fan();
+  request.site.machine->supply = machine::Supply::drive;
+  request.site.machine->speed_hz = base::Interval{45.0, 55.0};
+  const auto has = [](const std::vector<base::Finding>& findings, base::Code code) {
+    return std::any_of(findings.begin(), findings.end(), [&](const base::Finding& each) { return each.code == code; });
+  };
+  const auto swept = analysed({{"fan-h", sweep}}, request);
+  CAPTURE(swept.speed.has_value(), swept.refusals.empty() ? std::string() : swept.refusals.front().seen,
+          swept.refined_speed ? swept.refined_speed->wander : -1.0);
+  CHECK(has(swept.findings, base::Code::speed_varies));
+  const auto steady =
+      analysed({{"fan-h", acceleration(60.0, {{49.7, 1e-3, 0.0}, {99.4, 3e-4, 1.0}}, 0.02, 11)}}, request);
+  CHECK_FALSE(has(steady.findings, base::Code::speed_varies));
+  CHECK_FALSE(has(steady.channels.front().findings, base::Code::single_shocks));
+
+  auto blow = acceleration(20.0, {}, 0.01, 12);
+  for (std::size_t i = 0; i < 400; ++i)
+    blow[20000 + i] += 5.0 * std::exp(-0.02 * static_cast<double>(i)) * ((i % 20) < 10 ? 1 : -1);
+  CHECK(has(analysed({{"fan-h", blow}}, request).channels.front().findings, base::Code::single_shocks));
+}
+
+TEST_CASE("1x beside a louder neighbour is parted with the whole length of the recording") {
+  step::SpectrumRequest request;
+  request.site = two_pole_fan();
+  request.site.machine->motor_poles = 4;
+  request.site.machine->speed_hz = base::Interval{24.7, 24.7};
+  const tests::MemoryReader stopped(rate, {{"fan-h", acceleration(30.0, {{24.2, 3e-3, 0.0}}, 0.02, 13)}});
+  request.background.reader = &stopped;
+  const auto result =
+      analysed({{"fan-h", acceleration(40.0, {{24.2, 3e-3, 0.0}, {24.7, 1e-3, 0.5}}, 0.02, 14)}}, request);
+  REQUIRE(result.speed);
+  CHECK(result.speed->value == Approx(24.7).margin(0.002));
+  const auto* own = peak_of(result.channels.front(), 24.7, 0.02);
+  REQUIRE(own != nullptr);
+  CHECK(own->cause.text == "1x");
+  CHECK(own->tone.amplitude_rms.value == Approx(1e-3).epsilon(0.01));
+}
+
 TEST_CASE("the support class follows from a measured natural frequency where none is declared") {
   step::SpectrumRequest request;
   request.site = two_pole_fan();

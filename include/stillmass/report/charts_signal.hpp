@@ -1,6 +1,7 @@
 #pragma once
 
 #include <optional>
+#include <span>
 
 #include "stillmass/report/chart.hpp"
 #include "stillmass/step/check.hpp"
@@ -22,9 +23,10 @@ Chart waveform_chart(const step::ChannelSpectrum& channel);
 Chart envelope_chart(const step::SpectrumResult& result, const step::ChannelSpectrum& channel);
 Chart third_octave_chart(const step::SpectrumResult& result, const step::ChannelSpectrum& channel);
 
-/// Broad-band r.m.s. velocity of every point against the zones and the target, mm/s. `after` may be null. Nothing where
-/// no channel has a velocity.
-std::optional<Chart> severity_chart(const step::SpectrumResult& before, const step::SpectrumResult* after,
+/// Broad-band r.m.s. velocity of every channel against the zones and the target, mm/s. `after` may be empty. Nothing
+/// where no channel has a velocity.
+std::optional<Chart> severity_chart(std::span<const step::ChannelSpectrum* const> before,
+                                    std::span<const step::ChannelSpectrum* const> after,
                                     std::optional<double> target_m_s);
 
 /// The same channel before and after the absorber was fitted, r.m.s. velocity against frequency.

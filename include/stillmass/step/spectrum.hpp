@@ -73,6 +73,7 @@ struct SpectralPeak {
   machine::Cause cause;
   std::optional<spectral::BackgroundTone> background;         ///< its partner with the machine stopped
   spectral::Closeness closeness = spectral::Closeness::none;  ///< what a finer look found; `none`: none was needed
+  std::optional<double> variation;                            ///< r.m.s. of its amplitude, of a tone that is unsteady
   std::optional<double> wander_hz;                            ///< r.m.s., of a frequency that wanders
   std::string note;                                           ///< of that look, in words; may be empty
 

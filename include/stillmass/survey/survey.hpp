@@ -72,6 +72,13 @@ struct SurveyResult {
 /// rest goes on. Throws what the readers throw (a recording that cannot be read), `Stopped`, and `Error` (usage).
 SurveyResult run(const Survey& survey, const base::Context& context);
 
+/// Of every point (or channel without one) the steady recording of the running machine, in that stage, in which it
+/// moved most; in the order in which they appear.
+std::vector<const step::ChannelSpectrum*> loudest(const SurveyResult& result, Stage stage);
+
+/// The recording of the stopped machine with its neighbours running: of that stage, else the first; null without any.
+const SurveyRecording* background_of(const Survey& survey, Stage stage);
+
 /// The site of the survey as the single commands need it.
 step::Site site_of(const Survey& survey);
 
