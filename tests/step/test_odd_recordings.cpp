@@ -44,6 +44,9 @@ TEST_CASE("a logger whose half rate is where the standard's band begins gives pe
   CHECK_FALSE(result.channels.front().overall);
   CHECK_FALSE(result.channels.front().severity_velocity);
   CHECK_FALSE(result.channels.front().peaks.empty());
+  step::SpectrumRequest fast;
+  fast.speed_hz = 24.6;  // beyond half the rate
+  CHECK(step::spectrum(reader, fast, {}).speed->value == 24.6);
 }
 
 TEST_CASE("lines too coarse for a deflection at 1x leave it out") {
