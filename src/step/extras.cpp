@@ -58,7 +58,7 @@ void mark(std::vector<SpectralPeak>& peaks, const std::vector<spectral::Tone>& b
 void name_multiples(std::vector<EnvelopePeak>& peaks, const std::vector<machine::Forcing>& forcing, double line_hz) {
   constexpr double greatest = 12.0;
   for (const EnvelopePeak& first : peaks) {
-    if (!first.cause.forcing continue;
+    if (!first.cause.forcing) continue;
     const machine::Forcing& force = forcing[*first.cause.forcing];
     if (force.kind != machine::ForcingKind::bearing || force.harmonic != 1) continue;
     for (EnvelopePeak& other : peaks) {

@@ -59,6 +59,17 @@ base::Interval band_of(const std::vector<Tone>& tones, std::size_t which, const 
   return band;
 }
 
+// Without what stands on the very edge of the band: the flank of the next peak, not a tone.
+ToneCluster within_band(ToneCluster cluster) {
+  if (cluster.closeness != Closeness::resolved) return cluster;
+  std::erase_if(cluster.tones, [&](const spectral::CloseTone& tone) {
+    const double f = tone.frequency.value;
+    return std::min(f - cluster.band_hz.lo, cluster.band_hz.hi - f) < cluster.least_spacing_hz;
+  });
+  if (cluster.tones.size() < 2) cluster.closeness = Closeness::single;
+  return cluster;
+}
+
 // A tone of a cluster in the place of the peak of the averaged spectrum.
 Tone part_of_peak(const Tone& peak, const spectral::CloseTone& close) {
   Tone tone = peak;
@@ -101,7 +112,7 @@ std::vector<std::vector<FineTone>> fine_tones(const recording::Reader& reader, r
         out[i].push_back({tone, Closeness::none, {}, {}, {}, spectra[i]->line_hz});
         continue;
       }
-      const ToneCluster& measured = clusters[static_cast<std::size_t>(suspect - suspects.begin())];
+      const ToneCluster measured = within_band(clusters[static_cast<std::size_t>(suspect - suspects.begin())]);
       const ToneCluster cluster =
           base::is_motion(tone.amplitude_rms.quantity)
               ? spectral::as_quantity(measured, reader.recording().channels[all[i].channel].unit.quantity,

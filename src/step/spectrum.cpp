@@ -169,6 +169,7 @@ void look_where_the_speed_must_be(SpectrumResult& result, const recording::Reade
   const double reach = 4.0 * result.choice.line_hz;
   const Interval all{0.0, 0.5 * result.recording.rate_hz};
   const Interval band{all.clamped(possible->lo - reach), all.clamped(possible->hi + reach)};
+  if (band.lo >= band.hi) return;  // the rate is too low for this speed
   std::vector<std::size_t> whose;
   std::vector<std::size_t> channels;
   for (std::size_t c = 0; c < result.channels.size(); ++c) {
@@ -275,11 +276,15 @@ void find_speed(SpectrumResult& result, const recording::Reader& reader, const m
   if (request.speed_hz) result.speed = Estimate{*request.speed_hz, {}, {}, Quantity::speed};
 }
 
-// The blocks scatter like noise and the peak is broader than a tone's: a resonance that noise excites.
-bool is_random(const spectral::Tone& tone) {
+// The blocks scatter like noise and the peak is broader than a tone of the wandering speed: a resonance that noise
+// excites. How broad: as `machine::running_speed` takes it.
+bool is_random(const spectral::Tone& tone, const SpectrumResult& result) {
   constexpr double like_noise = 0.6;
   constexpr double broad = 1.5;
-  return tone.spread && *tone.spread > like_noise && tone.breadth > broad;
+  constexpr double lobe = 0.6;  // lines: a Hann window's lobe as a Gaussian
+  const double wander = result.refined_speed ? result.refined_speed->wander : 0.0;
+  const double of_speed = std::hypot(1.0, wander * tone.frequency.value / (lobe * result.choice.line_hz));
+  return tone.spread && *tone.spread > like_noise && tone.breadth > broad * of_speed;
 }
 
 void find_causes(SpectrumResult& result, const SpectrumRequest& request,
@@ -292,12 +297,10 @@ void find_causes(SpectrumResult& result, const SpectrumRequest& request,
       peaks.push_back({peak.tone.frequency, peak.tone.amplitude_rms.value, c, peak.tone.breadth});
       if (peak.in_background()) stopped.push_back(peaks.back());
     }
-    // Lines of a shaft whose speed varies are broad and scatter too.
-    const bool varies = result.refined_speed && result.refined_speed->wander >= much_wander;
     auto causes = machine::causes_of_peaks(peaks, each.shown.line_hz, result.forcing, request.modes, stopped);
     for (std::size_t i = 0; i < each.peaks.size(); ++i) {
       SpectralPeak& peak = each.peaks[i];
-      if (is_random(peak.tone) && !varies) {  // a resonance under noise is no line of a shaft
+      if (is_random(peak.tone, result)) {  // a resonance under noise is no line of a shaft
         causes[i] =
             machine::cause_of_peak(peak.tone.frequency, resolutions[c][i], {}, request.modes, peak.in_background());
       }

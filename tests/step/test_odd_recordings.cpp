@@ -44,6 +44,9 @@ TEST_CASE("a logger whose half rate is where the standard's band begins gives pe
   CHECK_FALSE(result.channels.front().overall);
   CHECK_FALSE(result.channels.front().severity_velocity);
   CHECK_FALSE(result.channels.front().peaks.empty());
+  step::SpectrumRequest fast;
+  fast.speed_hz = 24.6;  // beyond half the rate
+  CHECK(step::spectrum(reader, fast, {}).speed->value == 24.6);
 }
 
 TEST_CASE("lines too coarse for a deflection at 1x leave it out") {
@@ -108,6 +111,16 @@ TEST_CASE("tones that two bands of the finer look both hold are listed once") {
     CAPTURE(part.frequency);
     CHECK(peaks_near(result.channels.front(), part.frequency, 0.05).size() == 1);
   }
+}
+
+TEST_CASE("the flank of the next peak is not listed as a tone") {
+  step::SpectrumRequest request;
+  request.site = two_pole_fan();
+  const auto result =
+      analysed({{"fan-h", acceleration(60.0, {{49.7, 0.3e-3, 0.3}, {50.15, 1e-3, 1.0}}, 0.02, 9)}}, request);
+  CHECK(peaks_near(result.channels.front(), 49.925, 0.1).empty());
+  CHECK(peaks_near(result.channels.front(), 49.7, 0.01).size() == 1);
+  CHECK(peaks_near(result.channels.front(), 50.15, 0.01).size() == 1);
 }
 
 TEST_CASE("the greatest of the blocks is no level: no zone, no cause") {

@@ -285,3 +285,23 @@ TEST_CASE("blows of a flaw in a bearing's outer ring are found in the envelope a
   CHECK(std::any_of(result.causes.begin(), result.causes.end(),
                     [](const base::Finding& each) { return each.code == base::Code::bearing_damage; }));
 }
+
+TEST_CASE("lines that the speed spreads over several keep their cause") {
+  const numeric::Random random(5);
+  std::vector<double> x(static_cast<std::size_t>(60.0 * rate));
+  double phase = 0.0;
+  double sway = 0.0;  // standard deviation 1, correlated over 2 s
+  for (std::size_t i = 0; i < x.size(); ++i) {
+    sway += -sway / (2.0 * rate) + 0.0156 * random.normal(1, static_cast<std::uint32_t>(i));
+    phase += two_pi * 24.6 * (1.0 + 0.003 * sway) / rate;
+    for (const int k : {1, 2, 3, 6}) x[i] += (k == 6 ? 18.0 : 1.0) * std::cos(k * phase);
+    x[i] += 0.05 * random.normal(2, static_cast<std::uint32_t>(i));
+  }
+  step::SpectrumRequest request;
+  request.site = two_pole_fan();
+  request.site.machine->speed_hz = base::Interval{24.6, 24.6};
+  request.site.machine->motor_poles = 4;
+  request.site.machine->vanes = 6;
+  const auto result = analysed({{"fan-h", x}}, request);
+  CHECK(result.channels.front().peaks.front().cause.text == "vane pass (6x)");
+}
