@@ -56,7 +56,13 @@ double highest_of_interest(const step::SpectrumResult& result, const spectral::S
   const double half_rate = spectrum.rate_hz / 2.0;
   if (result.max_frequency_hz) return std::min(*result.max_frequency_hz, half_rate);
   double top = 200.0;
-  for (const machine::Forcing& forcing : result.forcing) top = std::max(top, 1.2 * forcing.frequency.value);
+  for (const machine::Forcing& forcing :
+       result.forcing) {  // gears, bearings and carriers reach too far to see the rest
+    const bool is_low = forcing.kind == machine::ForcingKind::rotation ||
+                        forcing.kind == machine::ForcingKind::vane_pass ||
+                        forcing.kind == machine::ForcingKind::electrical;
+    if (is_low) top = std::max(top, 1.2 * forcing.frequency.value);
+  }
   return std::min(top, half_rate);
 }
 

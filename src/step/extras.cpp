@@ -177,6 +177,9 @@ void add_deflections(SpectrumResult& result, const recording::Reader& reader, co
   }
   if (frequencies.empty()) return;
   const auto shapes = spectral::deflections(reader, result.range, frequencies, options, context);
+  if (!reference.empty() && std::none_of(shapes.begin(), shapes.end(), [](const auto& each) { return bool(each); })) {
+    result.refusals.push_back(shapes.front().refusal());
+  }
   for (std::size_t i = 0; i < shapes.size(); ++i) {
     if (!shapes[i]) continue;
     wanted[i].shape = options.reference ? *shapes[i] : spectral::over_the_greatest(*shapes[i]);

@@ -7,6 +7,7 @@
 
 #include <fmt/format.h>
 
+#include "stillmass/base/error.hpp"
 #include "stillmass/spectral/quantity.hpp"
 #include "stillmass/spectral/spectral_quality.hpp"
 #include "stillmass/step/diagnosis.hpp"
@@ -66,6 +67,12 @@ void measure(SpectrumResult& result, const recording::Reader& reader, const Spec
     if (each.shown.integrations > 0) each.low_limit_hz = each.shown.frequency(each.shown.first_line);
     each.band_hz = request.band_hz.value_or(standard_band(request.site));
     if (auto overall = level(each.shown, each.band_hz)) each.overall = with_calibration(*overall, channel);
+    if (request.band_hz && !each.shown.density.empty() && !held(each.shown, *request.band_hz)) {
+      throw base::usage_error(result.recording.file.string(),
+                              fmt::format("a band from {:.4g} to {:.4g} Hz", each.band_hz.lo, each.band_hz.hi),
+                              fmt::format("the spectrum of '{}' reaches from {:.4g} to {:.4g} Hz", channel.name,
+                                          each.shown.frequency(each.shown.first_line), 0.5 * each.shown.rate_hz));
+    }
     each.band_hz = held(each.shown, each.band_hz).value_or(each.band_hz);  // what was summed, and no more, is stated
     if (each.measured.density.empty()) {
       each.findings.push_back({base::Code::missing_values, "no block of valid samples in the part used", channel.name});
@@ -338,8 +345,10 @@ bool has_bearings(const std::optional<machine::Machine>& machine) { return machi
 
 }  // namespace
 
-SpectrumResult spectrum(const recording::Reader& reader, const SpectrumRequest& request, const base::Context& context) {
-  const auto machine = machine_of(request);
+SpectrumResult spectrum(const recording::Reader& reader, const SpectrumRequest& asked, const base::Context& context) {
+  const auto machine = machine_of(asked);
+  SpectrumRequest request = asked;
+  if (machine) request.site.machine = machine;  // with the speed of this recording, for bands and limits too
   SpectrumResult result;
   result.recording = reader.recording();
   result.range = frames_of(result.recording, request.part);

@@ -302,6 +302,7 @@ def spectrum_options():
     done = run("spectrum", duty, "--average", "synchronous")
     claim("no tacho, no synchronous average: exit 1", done.returncode == 1 and b"Not answered" in done.stdout, done)
     refused("averages without their average", 2, "spectrum", duty, "--averages", "4", text=b"exponential")
+    refused("a level's band that is not there", 2, "spectrum", duty, "--band", "3000:5000", text=b"reaches from")
     refused("two line spacings", 2, "spectrum", duty, "--lines", "400", "--resolution", "1", text=b"one of them")
     refused("a hammer test as background", 2, "spectrum", duty, *survey, "--background", recording("bump"), text=b"background")
     says(b"a peak hold is not searched", duty, *survey, "--average", "peak-hold")
