@@ -13,7 +13,7 @@
 #include "stillmass/rotation/angular_resampler.hpp"
 #include "stillmass/spectral/block_transform.hpp"
 
-#include "rotation/longest_part.hpp"
+#include "rotation/tacho_part.hpp"
 
 namespace stillmass::rotation {
 namespace {
@@ -262,27 +262,12 @@ base::Answer<std::vector<SynchronousAverage>> synchronous_averages(const recordi
 
 base::Answer<Synchronous> synchronous_average(const recording::Reader& reader, const SynchronousSettings& settings,
                                               const base::Context& context) {
-  const recording::Recording& recording = reader.recording();
-  const recording::FrameRange wanted = wanted_frames(recording, settings.time_s);
-  const recording::FrameRange range = longest_part(recording, wanted);
-  if (range.size() == 0) throw base::usage_error("time range", "no frames of the recording lie in it");
-
-  TachoOptions tacho = settings.tacho;
-  const auto channel = settings.tacho_channel ? settings.tacho_channel : tacho_channel(recording);
-  if (!channel) {
-    return base::Refusal{"no-tacho", "no channel of the recording is a tacho",
-                         "record a once-per-turn pulse, or name the tacho's channel"};
-  }
-  tacho.channel = *channel;
-  base::Answer<Pulses> pulses = find_pulses(reader, range, tacho, context);
-  if (!pulses) return pulses.refusal();
-  SpeedCurve curve(*pulses);
-  auto averages = synchronous_averages(reader, range, curve, settings.average, context);
+  auto part = tacho_part(reader, settings.time_s, settings.tacho_channel, settings.tacho, context);
+  if (!part) return part.refusal();
+  SpeedCurve curve(part->pulses);
+  auto averages = synchronous_averages(reader, part->range, curve, settings.average, context);
   if (!averages) return averages.refusal();
-  Synchronous out{std::move(*pulses), std::move(curve), std::move(*averages), {}};
-  out.findings = out.pulses.findings;
-  if (range.size() < wanted.size()) out.findings.push_back(part_used(recording, range));
-  return out;
+  return Synchronous{std::move(part->pulses), std::move(curve), std::move(*averages), std::move(part->findings)};
 }
 
 }  // namespace stillmass::rotation

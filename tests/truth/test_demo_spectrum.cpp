@@ -4,38 +4,16 @@
 #include <cmath>
 #include <complex>
 
-#include "stillmass/simulate/skid_file.hpp"
-#include "stillmass/simulate/truth.hpp"
-#include "stillmass/survey/survey.hpp"
-
-#include "support/catch.hpp"
-#include "support/demo.hpp"
+#include "truth/demo_truth.hpp"
 
 using namespace stillmass;
+using tests::point_of;
+using tests::result;
+using tests::truth;
 
 namespace {
 
-const simulate::SkidFile& skid() {
-  static const simulate::SkidFile file = simulate::read_skid_file(tests::demo_file("skid.toml"));
-  return file;
-}
-
-const simulate::Truth& truth() {
-  static const simulate::Truth exact = simulate::truth_of(skid());
-  return exact;
-}
-
-const survey::SurveyResult& result() {
-  static const survey::SurveyResult found = survey::run(survey::read_survey(tests::demo_file("survey.toml")), {});
-  return found;
-}
-
 const step::SpectrumResult& duty() { return result().spectra.front().result; }
-
-std::size_t point_of(const std::string& name) {
-  const auto& points = truth().points;
-  return static_cast<std::size_t>(std::find(points.begin(), points.end(), name) - points.begin());
-}
 
 const simulate::LineTruth& line_at(double frequency_hz) {
   return *std::min_element(truth().before.lines.begin(), truth().before.lines.end(), [&](const auto& a, const auto& b) {
