@@ -110,10 +110,10 @@ std::string text(const step::AbsorberResult& result) {
   std::string out = fmt::format(
       "Mode: {}, damping {}{}\n", with_u(result.question.mode.frequency), with_u(result.question.mode.damping_ratio),
       result.question.mode.modal_mass ? ", modal mass " + with_u(*result.question.mode.modal_mass) : "");
-  if (result.refusal) return out + wrapped("Not sized: " + sentence(*result.refusal), screen, 2) + "\n";
+  if (result.refusal) return out + wrapped("Not sized: " + sentence(*result.refusal), screen - 2, 2) + "\n";
   const absorber::Specification& found = *result.specification;
   out += wrapped(fmt::format("Recommendation: {}; {}", absorber::name(found.recommendation), sentence(found.reason)),
-                 screen, 2) +
+                 screen - 2, 2) +
          "\n";
   for (const absorber::Reason& note : found.notes) out += bullet(sentence(note));
   if (found.absorber) {

@@ -54,7 +54,7 @@ std::string cause_lines(const std::vector<base::Finding>& findings) {
     const auto add = [&](const char* label, const std::vector<std::string>& texts) {
       for (const std::string& text : texts) {
         if (text == each.text) continue;  // the finding's sentence said it
-        out += "      " + wrapped(base::printable(label + text), screen - 6, 8) + "\n";
+        out += "      " + wrapped(base::printable(label + text), screen - 8, 8) + "\n";
       }
     };
     out += headline(each);

@@ -20,7 +20,7 @@ std::string table(Rows rows) {
   return aligned(rows.header, rows.rows);
 }
 
-std::string indented(const std::string& text) { return "  " + wrapped(base::printable(text), screen - 2, 4) + "\n"; }
+std::string indented(const std::string& text) { return "  " + wrapped(base::printable(text), screen - 4, 4) + "\n"; }
 
 std::string channel_text(const step::SpectrumResult& result, const step::ChannelSpectrum& channel,
                          const SpectrumView& view) {

@@ -53,7 +53,7 @@ std::string wrapped(const std::string& text, std::size_t width, std::size_t inde
     const std::size_t size = width_of(std::string(word));
     if (at > 0 && at + 1 + size > width) {
       out += "\n" + std::string(indent, ' ');
-      at = indent;
+      at = 0;
     } else if (at > 0) {
       out += ' ';
       ++at;

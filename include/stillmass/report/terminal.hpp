@@ -29,7 +29,7 @@ std::string text(const survey::SurveyResult& result);
 /// Rows under a header, columns as wide as they must be; columns of numbers to the right.
 std::string aligned(const std::vector<std::string>& header, const std::vector<std::vector<std::string>>& rows);
 
-/// Broken at blanks so that no line is longer than `width`; lines after the first begin with `indent` blanks.
+/// Broken at blanks into lines of at most `width`; those after the first stand behind `indent` blanks more.
 std::string wrapped(const std::string& text, std::size_t width, std::size_t indent);
 
 }  // namespace stillmass::report
