@@ -3,30 +3,15 @@
 #include "stillmass/machine/forcing.hpp"
 #include "stillmass/numeric/random.hpp"
 
+#include "machine/machines.hpp"
 #include "support/catch.hpp"
 
 using namespace stillmass;
 using machine::Machine;
+using tests::hertz;
+using tests::two_pole_pump;
 
 namespace {
-
-base::Estimate hertz(double value, std::optional<double> u = {}) {
-  base::Estimate out;
-  out.value = value;
-  out.u = u;
-  out.quantity = base::Quantity::frequency;
-  return out;
-}
-
-Machine two_pole_pump() {
-  Machine out;
-  out.kind = machine::MachineKind::pump;
-  out.speed_hz = base::Interval{2960.0 / 60.0, 2960.0 / 60.0};
-  out.line_frequency_hz = 50.0;
-  out.motor_poles = 2;
-  out.vanes = 6;
-  return out;
-}
 
 modal::Mode mode_at(double frequency, double zeta) {
   modal::Mode out;

@@ -6,37 +6,22 @@
 #include "stillmass/machine/bearing.hpp"
 #include "stillmass/machine/forcing.hpp"
 
+#include "machine/machines.hpp"
 #include "support/catch.hpp"
 
 using namespace stillmass;
 using machine::Forcing;
 using machine::Machine;
 using std::numbers::pi;
+using tests::hertz;
+using tests::two_pole_pump;
 
 namespace {
-
-base::Estimate hertz(double value, std::optional<double> u = {}) {
-  base::Estimate out;
-  out.value = value;
-  out.u = u;
-  out.quantity = base::Quantity::frequency;
-  return out;
-}
 
 const Forcing& named(const std::vector<Forcing>& list, const std::string& name) {
   const auto at = std::find_if(list.begin(), list.end(), [&](const Forcing& each) { return each.name == name; });
   REQUIRE(at != list.end());
   return *at;
-}
-
-Machine two_pole_pump() {
-  Machine out;
-  out.kind = machine::MachineKind::pump;
-  out.speed_hz = base::Interval{2960.0 / 60.0, 2960.0 / 60.0};
-  out.line_frequency_hz = 50.0;
-  out.motor_poles = 2;
-  out.vanes = 6;
-  return out;
 }
 
 }  // namespace

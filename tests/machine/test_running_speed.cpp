@@ -10,6 +10,7 @@
 #include "stillmass/spectral/spectrum.hpp"
 #include "stillmass/spectral/tone.hpp"
 
+#include "machine/machines.hpp"
 #include "support/catch.hpp"
 #include "support/demo.hpp"
 #include "support/memory_reader.hpp"
@@ -18,26 +19,10 @@ using namespace stillmass;
 using machine::Machine;
 using machine::Peak;
 using std::numbers::pi;
+using tests::hertz;
+using tests::two_pole_pump;
 
 namespace {
-
-base::Estimate hertz(double value, std::optional<double> u = {}) {
-  base::Estimate out;
-  out.value = value;
-  out.u = u;
-  out.quantity = base::Quantity::frequency;
-  return out;
-}
-
-Machine two_pole_pump() {
-  Machine out;
-  out.kind = machine::MachineKind::pump;
-  out.speed_hz = base::Interval{2960.0 / 60.0, 2960.0 / 60.0};
-  out.line_frequency_hz = 50.0;
-  out.motor_poles = 2;
-  out.vanes = 6;
-  return out;
-}
 
 constexpr double line = 0.25;
 

@@ -75,6 +75,7 @@ struct SpectralPeak {
   spectral::Closeness closeness = spectral::Closeness::none;  ///< what a finer look found; `none`: none was needed
   std::optional<double> variation;                            ///< r.m.s. of its amplitude, of a tone that is unsteady
   std::optional<double> wander_hz;                            ///< r.m.s., of a frequency that wanders
+  double resolution_hz = 0.0;                                 ///< tones closer than this are one here
   std::string note;                                           ///< of that look, in words; may be empty
 
   /// The larger half of it is there with the machine stopped (common practice): the background's, not the machine's.
